@@ -1,0 +1,118 @@
+"""propdb: thermochemical data with source, range and zero attached; enthalpies moved from one datum to another.
+
+Names are loaded when they are first used, so that ``import propdb`` costs next to nothing::
+
+    import propdb
+
+    store = propdb.open()
+    print(store.enthalpy("nitrogen", phase="g", temperature="600C", datum="gas-25C"))
+
+Values are for engineering judgement. They do not replace local codes or licensed practice, and every value used
+for design must be verified against its source.
+"""
+
+from __future__ import annotations
+
+from importlib import import_module
+from typing import TYPE_CHECKING, Any
+
+from propdb._version import __version__
+
+if TYPE_CHECKING:
+    from propdb.api import Store, open
+    from propdb.errors import (
+        Ambiguous,
+        DatumError,
+        DatumMismatch,
+        EquationError,
+        FormulaError,
+        IntegrityError,
+        InvalidInput,
+        NoData,
+        NoSuchState,
+        NotFound,
+        OutOfRange,
+        PressureError,
+        PropdbError,
+        SeedError,
+        SplitError,
+        StoreBusy,
+        StoreError,
+        StoreReadOnly,
+        TemperatureError,
+        TemperatureOutOfRange,
+        Unbalanced,
+        UnitError,
+    )
+    from propdb.model.records import (
+        Answer,
+        Carrier,
+        Closure,
+        Datum,
+        Entry,
+        MaySum,
+        Source,
+        Species,
+        State,
+        Step,
+    )
+
+__all__ = [
+    "Ambiguous",
+    "Answer",
+    "Carrier",
+    "Closure",
+    "Datum",
+    "DatumError",
+    "DatumMismatch",
+    "Entry",
+    "EquationError",
+    "FormulaError",
+    "IntegrityError",
+    "InvalidInput",
+    "MaySum",
+    "NoData",
+    "NoSuchState",
+    "NotFound",
+    "OutOfRange",
+    "PressureError",
+    "PropdbError",
+    "SeedError",
+    "Source",
+    "Species",
+    "SplitError",
+    "State",
+    "Step",
+    "Store",
+    "StoreBusy",
+    "StoreError",
+    "StoreReadOnly",
+    "TemperatureError",
+    "TemperatureOutOfRange",
+    "Unbalanced",
+    "UnitError",
+    "__version__",
+    "open",
+]
+
+_RECORDS = frozenset(("Answer", "Carrier", "Closure", "Datum", "Entry", "MaySum", "Source", "Species", "State", "Step"))
+
+
+def __getattr__(name: str) -> Any:
+    """Load a public name from the module that defines it (PEP 562)."""
+    if name not in __all__:
+        raise AttributeError(f"module 'propdb' has no attribute {name!r}")
+    if name in ("Store", "open"):
+        module = "propdb.api"
+    elif name in _RECORDS:
+        module = "propdb.model.records"
+    else:
+        module = "propdb.errors"
+    value = getattr(import_module(module), name)
+    globals()[name] = value
+    return value
+
+
+def __dir__() -> list[str]:
+    """List the public names, loaded or not."""
+    return sorted({*globals(), *__all__})
