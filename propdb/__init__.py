@@ -14,11 +14,13 @@ for design must be verified against its source.
 from __future__ import annotations
 
 from importlib import import_module
-from typing import TYPE_CHECKING, Any
 
 from propdb._version import __version__
 
+TYPE_CHECKING = False  # type checkers take this name for true; the typing module would double the time of this import
 if TYPE_CHECKING:
+    from typing import Any
+
     from propdb.api import Store, open
     from propdb.errors import (
         Ambiguous,

@@ -1,0 +1,38 @@
+"""What all tests share: where the files of the project are, a store of their own, and ``--full``."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Iterator
+from pathlib import Path
+
+import pytest
+
+ROOT = Path(__file__).resolve().parent.parent
+
+
+def pytest_addoption(parser: pytest.Parser) -> None:
+    parser.addoption("--full", action="store_true", help="run the long soak, kill and fuzz tests too")
+
+
+def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item]) -> None:
+    if config.getoption("--full"):
+        return
+    for item in items:
+        if "full" in item.keywords:
+            item.add_marker(pytest.mark.skip(reason="long; runs with --full"))
+
+
+@pytest.fixture(scope="session")
+def root() -> Path:
+    """The files of the project beside the package: README, NOTICE, seeds, scripts."""
+    return ROOT
+
+
+@pytest.fixture(scope="session", autouse=True)
+def _no_user_data(tmp_path_factory: pytest.TempPathFactory) -> Iterator[None]:
+    """Keep every test away from the store of the person who runs it."""
+    with pytest.MonkeyPatch.context() as patch:
+        if "PROPDB_STORE" not in os.environ:
+            patch.setenv("PROPDB_STORE", str(tmp_path_factory.getbasetemp() / "propdb.db"))
+        yield
