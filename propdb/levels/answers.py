@@ -1,0 +1,377 @@
+"""Answers from levels: the enthalpy of a state on a datum, and a tabulated enthalpy moved to another."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+from dataclasses import replace
+from typing import Any
+
+from propdb.datum import may_sum
+from propdb.errors import PropdbError
+from propdb.levels.curves import Curve
+from propdb.levels.engine import Levels
+from propdb.levels.parts import Leg, add_parts, combined, scale
+from propdb.levels.policy import choose
+from propdb.levels.tree import Move, expand
+from propdb.model.answer import Answer
+from propdb.model.records import SAME_T, Closure, Datum, Entry, MaySum, Part, Source, Species, State, Step, Zero
+from propdb.units import EnthalpyUnit, format_number
+
+__all__ = ["Derivation", "Difference", "convert", "enthalpy", "net"]
+
+#: (coefficient, species name, state)
+Member = tuple[float, str, State]
+
+
+class Difference:
+    """Sum of coefficient x level of some states less that of others, as ways that can be read.
+
+    Where one species stands once on each side with one coefficient, the way goes straight from state to state, so no
+    formation enthalpy enters unless the path itself is a difference of two.
+    """
+
+    def __init__(self, levels: Levels, plus: Sequence[Member], minus: Sequence[Member]) -> None:
+        self.levels = levels
+        self.ways: list[tuple[float, str, list[Move]]] = []
+        names = list(dict.fromkeys(name for _, name, _ in (*minus, *plus)))
+        for name in names:
+            up = [(c, s) for c, n, s in plus if n == name]
+            down = [(c, s) for c, n, s in minus if n == name]
+            if len(up) == len(down) == 1 and up[0][0] == down[0][0]:
+                moves = levels.way(name, down[0][1], up[0][1])
+                if moves:
+                    self.ways.append((up[0][0], name, moves))
+                continue
+            self.ways += [(-c, name, levels.level_way(name, s)) for c, s in down]
+            self.ways += [(c, name, levels.level_way(name, s)) for c, s in up]
+
+    def legs(self) -> list[Leg]:
+        """Legs in the order of the ways, with zero definitions left out."""
+        legs: list[Leg] = []
+        for coefficient, _, moves in self.ways:
+            mine = expand(moves)
+            formations = [leg for leg in mine if leg.what == "formation"]
+            if len(formations) == 2:
+                note = "an implied latent heat: difference of two formation enthalpies of one species"
+                mine = [replace(leg, note=leg.note or note) if leg.what == "formation" else leg for leg in mine]
+            if coefficient < 0:
+                mine = list(reversed(mine))
+            legs += [scale(leg, coefficient) for leg in mine if not (leg.what == "definition" and leg.value == 0.0)]
+        return legs
+
+    def species(self) -> list[str]:
+        return list(dict.fromkeys(name for _, name, _ in self.ways))
+
+
+def net(levels: Levels, plus: Sequence[Member], minus: Sequence[Member]) -> Difference:
+    """See :class:`Difference`."""
+    return Difference(levels, plus, minus)
+
+
+class Derivation:
+    """Turns legs into the common fields of an answer."""
+
+    def __init__(self, levels: Levels, difference: Difference, *, per: float, unit: EnthalpyUnit) -> None:
+        self.levels = levels
+        self.difference = difference
+        self.legs = difference.legs()
+        self.per = per  # [J/mol] per unit
+        self.unit = unit
+        self.parts = add_parts(p for leg in self.legs for p in leg.parts)
+
+    def total(self) -> float:
+        """[J/mol]"""
+        return sum(leg.value for leg in self.legs)
+
+    def entries(self) -> dict[str, Entry]:
+        """Entries that the parts refer to, by id."""
+        wanted = {p.entry for p in self.parts} | {leg.entry for leg in self.legs}
+        return {e.id: e for name in self.difference.species() for e in self.levels.data.entries(name) if e.id in wanted}
+
+    def uncertainty(self) -> tuple[float | None, str]:
+        """Standard uncertainty in J/mol or None, and the sentence that says what lacks one."""
+        stated, missing = combined(self.parts)
+        entries = self.entries()
+        names = [f"{entries[i].source} [{i[:8]}]" if i in entries else i for i in missing]
+        shown = f"{format_number(stated / self.per, significant=2)} {self.unit.text}"
+        if not self.parts:
+            return 0.0, "none: the value follows from the conventions alone"
+        if not missing:
+            return stated, f"standard {shown} (one standard deviation), sensitivities to shared entries cancelled"
+        if any(p.stated for p in self.parts):
+            return None, f"not stated by {', '.join(names)}; the other entries make standard {shown}"
+        return None, f"not stated by {', '.join(names)}"
+
+    def steps(self) -> tuple[Step, ...]:
+        return tuple(
+            Step(
+                what=leg.what,
+                species=leg.species,
+                start=leg.start,
+                end=leg.end,
+                value=leg.value / self.per,
+                entry=leg.entry,
+                source=leg.source,
+                extrapolated=leg.extrapolated,
+                note=leg.note,
+            )
+            for leg in self.legs
+        )
+
+    def sources(self) -> dict[str, Source]:
+        keys = {leg.source for leg in self.legs if leg.source}
+        keys |= {e.source for e in self.entries().values()}
+        return {key: self.levels.data.source(key) for key in sorted(keys)}
+
+    def warnings(self) -> list[str]:
+        found: list[str] = []
+        entries = self.entries()
+        for leg in self.legs:
+            if leg.extrapolated:
+                found.append(f"{leg.species}: {leg.what} {leg.start} to {leg.end} is extrapolated")
+            if leg.what == "pressure along saturation" and not leg.parts:
+                found.append(f"{leg.species}: the pressure term along saturation is left out ({leg.note})")
+        for e in entries.values():
+            if e.status in ("disputed", "estimate"):
+                reason = f": {e.note}" if e.note else ""
+                found.append(f"{e.species}: {e.quantity} of {e.source} [{e.id[:8]}] is {e.status}{reason}")
+        pinned = self.levels.policy.pinned
+        if pinned:
+            off = sorted({leg.source for leg in self.legs if leg.source and leg.source not in pinned})
+            if off:
+                found.append(f"not from the pinned source: {', '.join(off)}, which alone supplies that step")
+        return list(dict.fromkeys(found))
+
+    def closures(self) -> tuple[Closure, ...]:
+        """Unused edges whose loop shares a leg with the way, and heat capacities that were not chosen."""
+        found: list[Closure] = []
+        for coefficient, name, moves in self.difference.ways:
+            edges = {id(m.edge) for m in moves if m.edge is not None}
+            tracks = {id(m.track) for m in moves if m.track is not None}
+            tree = self.levels.tree(name)
+            for edge in tree.unused:
+                loop = tree.way(edge.start, edge.end)
+                if loop is None:
+                    continue
+                shared = any(
+                    (m.edge is not None and id(m.edge) in edges) or (m.track is not None and id(m.track) in tracks)
+                    for m in loop
+                )
+                if not shared and edge.start != edge.end:
+                    continue
+                result = self.levels.closure_error(name, edge)
+                if result is None or not edge.leg.source:
+                    continue
+                error, parts = result
+                found.append(
+                    self._closure(
+                        f"{name}: {edge.leg.what} {edge.start.text()} to {edge.end.text()} by {edge.leg.source}",
+                        error,
+                        parts,
+                        edge.leg,
+                    )
+                )
+            found += self._other_curves(coefficient, name, moves)
+        unique = {(c.via, c.entry): c for c in found}
+        return tuple(unique.values())
+
+    def _closure(self, via: str, error: float, parts: Iterable[Part], leg: Leg) -> Closure:
+        total, missing = combined(add_parts(parts))
+        return Closure(via, error / self.per, None if missing else total / self.per, leg.entry, leg.source)
+
+    def _other_curves(self, coefficient: float, name: str, moves: Sequence[Move]) -> list[Closure]:
+        found = []
+        for move in moves:
+            curve = move.track
+            if not isinstance(curve, Curve) or move.start == move.end:
+                continue
+            used = {p.entry.id for p in curve.pieces}
+            others = [
+                e
+                for e in choose(self.levels.data.entries(name), self.levels.policy)
+                if e.quantity == "Cp"
+                and (e.phase, e.form) == (curve.phase, curve.form)
+                and e.equation not in ("", "iapws95")
+                and e.id not in used
+            ]
+            low, high = min(move.start, move.end), max(move.start, move.end)
+            for e in others:
+                if e.tmin is None or e.tmax is None or e.tmin > low + 0.155 or e.tmax < high - 0.155:
+                    continue
+                from propdb.cp.registry import build
+
+                try:
+                    value = float(build(e.equation, e.params).dh(move.start, move.end))
+                    chosen = sum(leg.value for leg in curve.legs(move.start, move.end) if leg.what == "heating")
+                except PropdbError:
+                    continue
+                via = f"{name}: heating {curve.phase} {move.start:.7g} to {move.end:.7g} K by {e.source}"
+                found.append(Closure(via, (value - chosen) / self.per, None, e.id, e.source))
+        return found
+
+
+def _zero_members(levels: Levels, z: Zero, species: Species, temperature: float | None) -> list[Member]:
+    members: list[Member] = []
+    for term in z.terms:
+        state = levels.resolve(term.zero, term.species, temperature=temperature)
+        members.append((float(term.coefficient), term.species, levels.check(term.species, state)))
+    return members
+
+
+def _verdict(datum: Datum, temperature: float | None) -> MaySum:
+    return may_sum(datum, temperatures=None if temperature is None else [temperature])
+
+
+def _condensed_pressure(state: State) -> list[str]:
+    if state.pressure is None:
+        return []
+    if state.phase == "g":
+        return ["the enthalpy of the ideal gas does not depend on pressure; for the real gas use --phase fluid"]
+    if state.phase in ("l", "cr", "am"):
+        return ["the effect of pressure on the condensed phase is not included: its volume is not in the store"]
+    return []
+
+
+def enthalpy(
+    levels: Levels, *, species: Species, state: State, datum: Datum, unit: EnthalpyUnit, stamp: str
+) -> Answer:
+    """Enthalpy of a state on a datum: level(state) less what the datum calls zero, plus h0.
+
+    Raises
+    ------
+    PropdbError
+        Any of OutOfRange, NoData, NotFound, Ambiguous, DatumError, as :class:`~propdb.levels.engine.Levels` says.
+    """
+    state = levels.check(species.name, state)
+    z = levels.zero_of(datum, species, phase=state.phase, temperature=state.temperature)
+    zeros = _zero_members(levels, z, species, state.temperature)
+    derived = Derivation(
+        levels, net(levels, [(1.0, species.name, state)], zeros), per=unit.scale(molar_mass=species.molar_mass), unit=unit
+    )
+    offset = levels.offset(z, species, temperature=state.temperature)
+    water_formulation = any(leg.what == "formulation" for leg in derived.legs)
+    warnings = derived.warnings() + ([] if water_formulation else _condensed_pressure(state))
+    return _answer(
+        derived,
+        species=species,
+        value=derived.total() + offset,
+        offsets=[(f"zero of {datum.name}", offset, _h0_note(z, datum))] if offset else [],
+        datum=datum,
+        verdict=_verdict(datum, state.temperature),
+        warnings=warnings + _pressure_note(datum),
+        stamp=stamp,
+        state=state.text(),
+    )
+
+
+def _h0_note(z: Zero, datum: Datum) -> str:
+    if z.internal_energy:
+        return f"{datum.name} fixes the internal energy, so its enthalpy there is p v"
+    return f"{datum.name} gives its zero state {z.h0:g} {z.h0_unit}"
+
+
+def _pressure_note(datum: Datum) -> list[str]:
+    if datum.standard_pressure == 101325.0:
+        return ["1 atm against 1 bar is no shift: the ideal gas does not depend on pressure, condensed phases by < 2 J/mol"]
+    return []
+
+
+def convert(
+    levels: Levels,
+    *,
+    species: Species,
+    value: float,
+    given: str,
+    source_datum: Datum,
+    target_datum: Datum,
+    unit: EnthalpyUnit,
+    stamp: str,
+    phase: str,
+    temperature: float | None = None,
+) -> Answer:
+    """A tabulated enthalpy ``value`` [J/mol] moved from one datum to another: H_B = H_A + Z_A - Z_B.
+
+    ``temperature`` [K] is needed by same-temperature datums only. Raises as :func:`enthalpy`.
+    """
+    z_a = levels.zero_of(source_datum, species, phase=phase, temperature=temperature)
+    z_b = levels.zero_of(target_datum, species, phase=phase, temperature=temperature)
+    plus = _zero_members(levels, z_a, species, temperature)
+    minus = _zero_members(levels, z_b, species, temperature)
+    plus, minus = _cancel(plus, minus)
+    derived = Derivation(
+        levels, net(levels, plus, minus), per=unit.scale(molar_mass=species.molar_mass), unit=unit
+    )
+    a = levels.offset(z_a, species, temperature=temperature)
+    b = levels.offset(z_b, species, temperature=temperature)
+    offsets = [("as given", value, f"the number that was typed, on {source_datum.name}")]
+    if a:
+        offsets.append((f"zero of {source_datum.name}", -a, _h0_note(z_a, source_datum)))
+    if b:
+        offsets.append((f"zero of {target_datum.name}", b, _h0_note(z_b, target_datum)))
+    return _answer(
+        derived,
+        species=species,
+        value=value - a + b + derived.total(),
+        offsets=offsets,
+        datum=target_datum,
+        verdict=_verdict(target_datum, temperature if SAME_T == target_datum.temperature else None),
+        warnings=derived.warnings() + _pressure_note(source_datum) + _pressure_note(target_datum),
+        stamp=stamp,
+        state="",
+        given=f"{given} on {source_datum.name}",
+    )
+
+
+def _cancel(plus: list[Member], minus: list[Member]) -> tuple[list[Member], list[Member]]:
+    """Members that stand alike on both sides drop out, as on two names of one zero."""
+    rest = list(minus)
+    kept = []
+    for member in plus:
+        if member in rest:
+            rest.remove(member)
+        else:
+            kept.append(member)
+    return kept, rest
+
+
+def _answer(
+    derived: Derivation,
+    *,
+    species: Species,
+    value: float,
+    offsets: Sequence[tuple[str, float, str]],
+    datum: Datum,
+    verdict: MaySum,
+    warnings: Sequence[str],
+    stamp: str,
+    state: str,
+    given: str = "",
+) -> Answer:
+    standard, note = derived.uncertainty()
+    per = derived.per
+    extra = tuple(Step(what, species.name, "", "", v / per, "", "", note=n) for what, v, n in offsets)
+    fields: dict[str, Any] = {
+        "value": value / per,
+        "unit": derived.unit.text,
+        "si": value,
+        "uncertainty": None if standard is None else standard / per,
+        "uncertainty_note": note,
+        "datum": datum.name,
+        "may_sum": verdict,
+        "steps": extra + derived.steps() if given else derived.steps() + extra,
+        "closures": derived.closures(),
+        "parts": derived.parts,
+        "warnings": tuple(dict.fromkeys(warnings)),
+        "store": stamp,
+        "sources": derived.sources(),
+    }
+    return Answer(
+        **fields,
+        species=species.name,
+        formula=species.display_formula,
+        state=state,
+        molar_mass=species.molar_mass,
+        given=given,
+    )
+
+

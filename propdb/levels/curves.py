@@ -1,0 +1,276 @@
+"""Tracks: what a state moves along without changing phase.
+
+A ``Curve`` is the composite heat-capacity curve of one phase and form, put together from the best entries over their
+ranges. ``Formulation`` is water's real fluid, liquid included. Both give the legs between two of their positions.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+from typing import Any, NamedTuple, Protocol
+
+from propdb.errors import SplitError, TemperatureOutOfRange
+from propdb.levels import residual, water
+from propdb.levels.parts import Leg
+from propdb.levels.policy import Policy, choose
+from propdb.model.records import Entry, Part, State
+
+__all__ = ["Critical", "Curve", "Formulation", "Piece", "Track", "build_curve", "celsius"]
+
+#: A range printed as 298 K is meant to hold at 298.15 K, and 373 K at 373.15 K.
+PRINTED_SLACK = 0.155
+
+
+def celsius(t: float) -> str:
+    """Temperature as an engineer reads it: ``600 °C`` or, at standard temperatures, in kelvin too."""
+    return f"{t:.7g} K"
+
+
+class Critical(NamedTuple):
+    """Critical point and acentric factor, with the entries that give them. [K], [Pa], [1]."""
+
+    tc: float
+    pc: float
+    omega: float
+    entries: tuple[str, ...]
+    source: str
+
+
+class Track(Protocol):
+    """Something with positions along which enthalpy is known."""
+
+    def legs(self, start: Any, end: Any) -> list[Leg]: ...
+
+
+@dataclass(frozen=True, slots=True)
+class Piece:
+    """One entry of a composite curve over the part of its range where it is the best."""
+
+    tmin: float
+    tmax: float
+    entry: Entry
+    equation: Any
+
+
+def range_text(ranges: Sequence[tuple[float, float]]) -> str:
+    """``200 to 6000 K and 7000 to 8000 K``."""
+    return " and ".join(f"{a:.6g} to {b:.6g} K" if a != b else f"{a:.6g} K only" for a, b in ranges)
+
+
+@dataclass(frozen=True)
+class Curve:
+    """Composite heat-capacity curve of one phase and form."""
+
+    species: str
+    phase: str
+    form: str
+    pieces: tuple[Piece, ...]
+    policy: Policy = field(repr=False)
+    boiling: float | None = None  # [K], of a liquid: above it the curve runs along saturation
+    critical: Critical | None = None
+    extrapolate: bool = False
+
+    def ranges(self) -> list[tuple[float, float]]:
+        """Merged ranges that the entries state [K]."""
+        merged: list[tuple[float, float]] = []
+        for piece in self.pieces:
+            if merged and piece.tmin <= merged[-1][1] + 1e-9:
+                merged[-1] = (merged[-1][0], max(merged[-1][1], piece.tmax))
+            else:
+                merged.append((piece.tmin, piece.tmax))
+        return merged
+
+    def covers(self, t1: float, t2: float | None = None) -> bool:
+        """Do the stated ranges cover ``t1`` (and all up to ``t2``) without a gap? [K]"""
+        low, high = (t1, t1) if t2 is None else (min(t1, t2), max(t1, t2))
+        return any(a - PRINTED_SLACK <= low and high <= b + PRINTED_SLACK for a, b in self.ranges())
+
+    def legs(self, start: float, end: float) -> list[Leg]:
+        """Legs from ``start`` to ``end`` [K].
+
+        Raises TemperatureOutOfRange outside the ranges unless the curve was built to extrapolate.
+        """
+        if start == end:
+            return []
+        covered = self.covers(start, end)
+        if not covered and not self.extrapolate:
+            raise self.out_of_range(start if not self.covers(start) else end)
+        low, high = min(start, end), max(start, end)
+        legs = [self._leg(piece, a, b) for piece, a, b in self._cuts(low, high)]
+        if self.phase == "l" and self.boiling is not None and high > self.boiling + 1e-9:
+            legs.append(self._saturation_leg(max(low, self.boiling), high))
+        if end > start:
+            return legs
+        from propdb.levels.parts import scale
+
+        return [scale(leg, -1.0) for leg in reversed(legs)]
+
+    def out_of_range(self, t: float) -> TemperatureOutOfRange:
+        name = f"{self.phase} ({self.form})" if self.form else self.phase
+        return TemperatureOutOfRange(
+            f"{self.species}, {name}: the heat capacity does not reach {t:.7g} K",
+            hint=f"it covers {range_text(self.ranges())}; --extrapolate allows it, and marks it",
+            ranges=self.ranges(),
+        )
+
+    def _cuts(self, low: float, high: float) -> list[tuple[Piece, float, float]]:
+        """Which piece serves which stretch; gaps and ends go to the nearest piece."""
+        cuts: list[tuple[Piece, float, float]] = []
+        for i, piece in enumerate(self.pieces):
+            a = low if i == 0 else self._border(i - 1)
+            b = high if i == len(self.pieces) - 1 else self._border(i)
+            a, b = max(a, low), min(b, high)
+            if b > a:
+                cuts.append((piece, a, b))
+        return cuts
+
+    def _border(self, i: int) -> float:
+        left, right = self.pieces[i], self.pieces[i + 1]
+        return left.tmax if right.tmin <= left.tmax else 0.5 * (left.tmax + right.tmin)
+
+    def _leg(self, piece: Piece, a: float, b: float) -> Leg:
+        entry = piece.entry
+        try:
+            value = float(piece.equation.dh(a, b))
+        except SplitError as error:
+            raise SplitError(
+                f"{self.species}, {self.phase}: {error.problem}", hint=error.hint, **error.fields
+            ) from None
+        size, unit, stated = self.policy.standard(entry)
+        coefficient = value if unit == "%" else b - a
+        outside = a < piece.tmin - PRINTED_SLACK or b > piece.tmax + PRINTED_SLACK
+        phase = f"{self.phase} ({self.form})" if self.form else self.phase
+        note = ""
+        if outside:
+            note = f"extrapolated: {piece.entry.source} covers {range_text([(piece.tmin, piece.tmax)])}"
+        return Leg(
+            what="heating",
+            species=self.species,
+            start=f"{phase}, {celsius(a)}",
+            end=f"{phase}, {celsius(b)}",
+            value=value,
+            parts=(Part(entry.id, coefficient, size, stated),),
+            entry=entry.id,
+            source=entry.source,
+            extrapolated=outside,
+            note=note,
+        )
+
+    def _saturation_leg(self, a: float, b: float) -> Leg:
+        """The pressure rises along saturation: the integral of a heat capacity is not by itself an enthalpy."""
+        if self.critical is None:
+            return Leg(
+                what="pressure along saturation",
+                species=self.species,
+                start=f"l, {celsius(a)}",
+                end=f"l, {celsius(b)}",
+                value=0.0,
+                note="not computed: needs Tc, Pc and omega",
+            )
+        isobaric = "saturat" not in self.pieces[-1].entry.conditions
+        c = self.critical
+        value = residual.liquid_pressure_term(
+            start=a, end=min(b, 0.995 * c.tc), tc=c.tc, pc=c.pc, omega=c.omega, isobaric=isobaric
+        )
+        return Leg(
+            what="pressure along saturation",
+            species=self.species,
+            start=f"l, {celsius(a)}",
+            end=f"l, {celsius(b)}",
+            value=value,
+            parts=(Part(f"model:saturation:{self.species}", value, 0.3, True),),
+            source=c.source,
+            note="integral of v(1 - aT) dp, Yamada-Gunn volume and Lee-Kesler pressure: a model, standard uncertainty 30 %",
+        )
+
+
+def build_curve(
+    species: str,
+    phase: str,
+    form: str,
+    entries: Sequence[Entry],
+    policy: Policy,
+    *,
+    extrapolate: bool = False,
+    boiling: float | None = None,
+    critical: Critical | None = None,
+) -> Curve | None:
+    """The composite curve: at each temperature the best usable entry whose range covers it. None where there is none.
+
+    A heat capacity given at one temperature only is a curve of no length: it serves when extrapolation is asked for.
+    """
+    usable = [e for e in choose(entries, policy) if e.equation and e.equation != "iapws95"]
+    spans = [(e, float(e.tmin), float(e.tmax)) for e in usable if e.tmin is not None and e.tmax is not None]
+    if not spans and extrapolate:
+        points = [e for e in choose(entries, policy) if not e.equation and e.value is not None]
+        spans = [(e, e.temperature or 298.15, e.temperature or 298.15) for e in points[:1]]
+    if not spans:
+        return None
+    marks = sorted({t for _, a, b in spans for t in (a, b)})
+    pieces: list[Piece] = []
+    stretches = list(zip(marks, marks[1:], strict=False)) or [(marks[0], marks[0])]
+    for a, b in stretches:
+        best = next((e for e, low, high in spans if low <= a and b <= high), None)
+        if best is None:
+            continue
+        if pieces and pieces[-1].entry.id == best.id and pieces[-1].tmax == a:
+            pieces[-1] = Piece(pieces[-1].tmin, b, best, pieces[-1].equation)
+        else:
+            pieces.append(Piece(a, b, best, _equation(best)))
+    return Curve(
+        species, phase, form, tuple(pieces), policy, boiling=boiling, critical=critical, extrapolate=extrapolate
+    )
+
+
+def _equation(entry: Entry) -> Any:
+    from propdb.cp.registry import build
+
+    if entry.equation:
+        return build(entry.equation, entry.params)
+    at = entry.temperature or 298.15
+    return build("constant", {"value": entry.value, "tmin": at, "tmax": at})
+
+
+@dataclass(frozen=True)
+class Formulation:
+    """Water's liquid and real fluid by IAPWS-95. Positions are states (``l``, or ``fluid``), or the ideal gas ``g``."""
+
+    species: str
+    entry: Entry
+    policy: Policy = field(repr=False)
+
+    def h(self, state: State) -> float:
+        """Enthalpy of a state on the formulation's own zero [J/mol]."""
+        t = state.temperature
+        if t is None:
+            if state.pressure is None:
+                raise TemperatureOutOfRange("the state of water has neither temperature nor pressure")
+            t = water.saturation_temperature(pressure=state.pressure)
+        if state.phase == "g":
+            return water.gas_enthalpy(temperature=t)
+        if state.phase == "l" and not state.saturated and state.pressure is None:
+            return water.liquid_enthalpy(temperature=t)
+        if state.phase == "l" and state.saturated != "liquid" and state.pressure is not None:
+            p = state.pressure
+            return water.enthalpy(temperature=t, pressure=p)
+        return water.enthalpy(temperature=t, pressure=state.pressure, saturated=state.saturated)
+
+    def legs(self, start: State, end: State) -> list[Leg]:
+        """One leg, the difference of two values of the formulation."""
+        if start == end:
+            return []
+        value = self.h(end) - self.h(start)
+        size, unit, stated = self.policy.standard(self.entry)
+        return [
+            Leg(
+                what="formulation",
+                species=self.species,
+                start=start.text(),
+                end=end.text(),
+                value=value,
+                parts=(Part(self.entry.id, value if unit == "%" else 1.0, size, stated),),
+                entry=self.entry.id,
+                source=self.entry.source,
+            )
+        ]

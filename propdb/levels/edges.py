@@ -1,0 +1,245 @@
+"""Anchor nodes of one species, and the edges that its entries draw between them."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass, replace
+from typing import NamedTuple
+
+from propdb.errors import PropdbError
+from propdb.levels import residual
+from propdb.levels.curves import Critical, Curve, Formulation, celsius
+from propdb.levels.parts import Leg, add_parts, ranking_uncertainty
+from propdb.levels.policy import Policy, choose
+from propdb.model.records import T_STANDARD, USABLE_STATUSES, Entry, Part, State
+
+__all__ = ["ROOT", "Edge", "Node", "collect", "vapour_of"]
+
+
+class Node(NamedTuple):
+    """A state that entries refer to. ``saturated`` is "vapour" for the real vapour (phase ``fluid``), else ""."""
+
+    phase: str
+    form: str
+    temperature: float
+    saturated: str = ""
+
+    def text(self) -> str:
+        if self == ROOT:
+            return "elements at 298.15 K"
+        phase = f"{self.phase} ({self.form})" if self.form else self.phase
+        return f"{'saturated vapour' if self.saturated else phase}, {celsius(self.temperature)}"
+
+
+#: The elements in their reference forms at 298.15 K, 1 bar: zero of the internal scale.
+ROOT = Node("elements", "", T_STANDARD)
+
+_PHASE_ORDER = ("elements", "cr", "am", "l", "fluid", "g", "aq")
+
+
+@dataclass(frozen=True, slots=True)
+class Edge:
+    """H(end) - H(start), with the leg that says it."""
+
+    start: Node
+    end: Node
+    leg: Leg
+    kind: str  # definition | heating | formation | transition | increment | residual | formulation
+    status: int = 0  # index into USABLE_STATUSES
+    pin: int = 0
+    rank: int = 0
+
+    def key(self) -> tuple[object, ...]:
+        """Best first. Heating over a covered range always leads, so that a level is continuous in T.
+
+        Then pinned sources, status, and the variance (class defaults where none is stated).
+        """
+        return (
+            self.leg.extrapolated,
+            self.kind not in ("definition", "heating"),
+            self.pin,
+            self.status,
+            round(ranking_uncertainty(self.leg.parts), 9),
+            self.rank,
+            _PHASE_ORDER.index(self.end.phase),
+            self.end,
+            self.leg.entry,
+        )
+
+
+def entry_edge(entry: Entry, start: Node, end: Node, value: float, what: str, kind: str, policy: Policy) -> Edge:
+    """An edge that one constant states; ``value`` = H(end) - H(start) [J/mol]."""
+    size, unit, stated = policy.standard(entry)
+    part = Part(entry.id, value if unit == "%" else 1.0, size, stated)
+    leg = Leg(
+        what=what,
+        species=entry.species,
+        start=start.text(),
+        end=end.text(),
+        value=value,
+        parts=(part,),
+        entry=entry.id,
+        source=entry.source,
+    )
+    pin = 0 if not policy.pinned or entry.source in policy.pinned else 1
+    return Edge(start, end, leg, kind, USABLE_STATUSES.index(entry.status), pin, policy.rank(entry))
+
+
+def vapour_of(entry: Entry, temperature: float) -> Node:
+    """Where a latent heat ends: at the real vapour, unless it says that it means the ideal gas."""
+    if "ideal gas" in entry.conditions or "standard" in entry.conditions or "monomer" in entry.conditions:
+        return Node("g", "", temperature)
+    return Node("fluid", "", temperature, "vapour")
+
+
+def collect(
+    *,
+    species: str,
+    entries: Iterable[Entry],
+    policy: Policy,
+    zero_nodes: Iterable[Node],
+    foreign_zero: Callable[[Entry, Node], tuple[float, tuple[Part, ...]]],
+    boiling: float | None,
+    melting: float | None,
+    critical: Critical | None,
+    associating: bool,
+    formulation: Formulation | None,
+) -> list[Edge]:
+    """All edges of a species but the heating ones, the chosen entry of each pair of nodes first.
+
+    ``foreign_zero`` gives the level of zero of an entry's datum where that is not the internal scale.
+    """
+    by_quantity: dict[str, list[Entry]] = {}
+    for e in choose(entries, policy):
+        by_quantity.setdefault(e.quantity, []).append(e)
+    edges: list[Edge] = []
+    for node in zero_nodes:
+        leg = Leg("definition", species, ROOT.text(), node.text(), 0.0, note="element in its reference form: 0 by definition")
+        edges.append(Edge(ROOT, node, leg, "definition"))
+    for e in by_quantity.get("Hf", ()):
+        if e.value is None:
+            continue
+        node = Node(e.phase, e.form, e.temperature if e.temperature is not None else T_STANDARD)
+        if any(edge.kind == "definition" and edge.end == node for edge in edges):
+            continue
+        edge = entry_edge(e, ROOT, node, e.value, "formation", "formation", policy)
+        try:
+            shift, parts = foreign_zero(e, node)
+        except PropdbError:
+            continue
+        if shift or parts:
+            parts = add_parts(edge.leg.parts + parts)
+            edge = replace(edge, leg=replace(edge.leg, value=e.value + shift, parts=parts, note=f"given on {e.datum}"))
+        edges.append(edge)
+    for e in by_quantity.get("dH0", ()):
+        if e.value is not None:
+            start, end = Node(e.phase, e.form, 0.0), Node(e.phase, e.form, T_STANDARD)
+            edges.append(entry_edge(e, start, end, e.value, "increment H(298.15) - H(0)", "increment", policy))
+    edges += _latent_edges(by_quantity, policy, boiling, melting)
+    vapours = {n for edge in edges for n in (edge.start, edge.end) if n.saturated}
+    if formulation is not None:
+        edges += _formulation_edges(formulation, vapours)
+    elif critical is not None and not associating:
+        edges += [_residual_edge(species, n, critical) for n in sorted(vapours) if n.temperature < critical.tc]
+    return edges
+
+
+def _latent_edges(
+    by_quantity: dict[str, list[Entry]], policy: Policy, boiling: float | None, melting: float | None
+) -> list[Edge]:
+    edges: list[Edge] = []
+    for e in by_quantity.get("Hvap", ()):
+        if e.equation:
+            from propdb.cp.registry import build
+
+            equation = build(e.equation, e.params)
+            low = e.tmin if e.tmin is not None else 0.0
+            high = e.tmax if e.tmax is not None else float("inf")
+            points = [(t, float(equation.dh(t))) for t in (T_STANDARD, boiling) if t is not None and low <= t <= high]
+        elif e.value is not None:
+            at = e.temperature if e.temperature is not None else boiling
+            points = [] if at is None else [(at, e.value)]
+        else:  # pragma: no cover - the store refuses such an entry
+            points = []
+        for t, value in points:
+            edges.append(entry_edge(e, Node("l", "", t), vapour_of(e, t), value, "vaporisation", "transition", policy))
+    for e in by_quantity.get("Hsub", ()):
+        if e.value is not None:
+            t = e.temperature if e.temperature is not None else T_STANDARD
+            edges.append(
+                entry_edge(e, Node("cr", e.form, t), vapour_of(e, t), e.value, "sublimation", "transition", policy)
+            )
+    for e in by_quantity.get("Hfus", ()):
+        t_m = e.temperature if e.temperature is not None else melting
+        if e.value is not None and t_m is not None:
+            edges.append(
+                entry_edge(e, Node("cr", e.form, t_m), Node("l", "", t_m), e.value, "fusion", "transition", policy)
+            )
+    for e in by_quantity.get("Htr", ()):
+        if e.value is not None and e.temperature is not None and e.to:
+            phase, _, form = e.to.partition(":")
+            edges.append(
+                entry_edge(
+                    e,
+                    Node(e.phase, e.form, e.temperature),
+                    Node(phase, form, e.temperature),
+                    e.value,
+                    "transition",
+                    "transition",
+                    policy,
+                )
+            )
+    return edges
+
+
+def _residual_edge(species: str, vapour: Node, c: Critical) -> Edge:
+    value, pressure, _ = residual.enthalpy(temperature=vapour.temperature, tc=c.tc, pc=c.pc, omega=c.omega)
+    gas = Node("g", "", vapour.temperature)
+    leg = Leg(
+        what="residual enthalpy",
+        species=species,
+        start=vapour.text(),
+        end=gas.text(),
+        value=-value,
+        parts=(Part(f"model:residual:{species}", -value, residual.standard(value) / max(abs(value), 1e-9), True),),
+        source=c.source,
+        note=f"{residual.EOS_NOTE}; saturated at {pressure / 1e5:.4g} bar",
+    )
+    return Edge(vapour, gas, leg, "residual", status=USABLE_STATUSES.index("base"))
+
+
+def _formulation_edges(formulation: Formulation, vapours: set[Node]) -> list[Edge]:
+    """Real liquid to ideal gas at zero density, at 298.15 K; and to the real vapour wherever a latent heat meets it."""
+    liquid, gas = Node("l", "", T_STANDARD), Node("g", "", T_STANDARD)
+    pairs = [(liquid, gas, State("g", T_STANDARD))]
+    pairs += [(liquid, n, State("fluid", n.temperature, saturated="vapour")) for n in sorted(vapours)]
+    edges = []
+    for start, end, state in pairs:
+        leg = formulation.legs(State("l", T_STANDARD), state)[0]
+        if end.phase == "g":
+            leg = replace(leg, end=f"{end.text()} (zero density)")
+        edges.append(Edge(start, end, leg, "formulation", USABLE_STATUSES.index(formulation.entry.status)))
+    return edges
+
+
+def heating_edges(
+    nodes: Iterable[Node], curve: Curve | Formulation, extrapolate: bool, position: Callable[[Node], object]
+) -> list[Edge]:
+    """Edges along a track between consecutive nodes of one phase and form."""
+    chain = sorted(nodes, key=lambda n: n.temperature)
+    edges = []
+    for a, b in zip(chain, chain[1:], strict=False):
+        try:
+            legs = curve.legs(position(a), position(b))  # type: ignore[arg-type]
+        except PropdbError:
+            continue
+        if not legs:
+            continue
+        outside = any(leg.extrapolated for leg in legs)
+        if outside and not extrapolate:
+            continue
+        total = sum(leg.value for leg in legs)
+        parts = add_parts(p for leg in legs for p in leg.parts)
+        leg = Leg("heating", legs[0].species, a.text(), b.text(), total, parts, legs[0].entry, legs[0].source, outside)
+        edges.append(Edge(a, b, leg, "heating"))
+    return edges

@@ -1,0 +1,501 @@
+"""The level of a state, the difference of two, and what a datum calls zero.
+
+``Levels`` holds one tree per species for one store, policy and choice of extrapolation.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import replace
+from fractions import Fraction
+
+from propdb.datum import may_sum, zero
+from propdb.errors import (
+    Ambiguous,
+    DatumError,
+    NoData,
+    NoSuchState,
+    NotFound,
+    PropdbError,
+    TemperatureOutOfRange,
+)
+from propdb.levels import residual, water
+from propdb.levels.curves import Critical, Curve, Formulation, build_curve, range_text
+from propdb.levels.edges import ROOT, Edge, Node, collect
+from propdb.levels.parts import Leg, add_parts, scale
+from propdb.levels.policy import Data, Policy, choose
+from propdb.levels.tree import Move, SpeciesTree, expand, join
+from propdb.model.records import (
+    BOILING,
+    SAME_T,
+    T_STANDARD,
+    Datum,
+    Entry,
+    Part,
+    Source,
+    Species,
+    State,
+    Zero,
+    ZeroState,
+)
+
+__all__ = ["INTERNAL", "Levels", "Way", "may_sum"]
+
+#: The datum whose zero states are the zero of the internal scale.
+INTERNAL = "elements-298K"
+
+#: A liquid is taken to exist down to this much below its melting point: tables differ by that.
+MELTING_SLACK = 0.05
+
+Way = list[tuple[float, str, list[Move]]]  # (coefficient, species, moves)
+
+
+class Levels:
+    """Levels of every species of a store. Not thread-safe; build one per thread.
+
+    Parameters
+    ----------
+    data : Data
+        Species, entries, sources, datums and policy.
+    policy : Policy
+        Ranks, class defaults, pinned sources.
+    extrapolate : bool
+        Allow heat capacities beyond their ranges, and phases where they are not stable; marked in each leg.
+    """
+
+    def __init__(self, data: Data, policy: Policy, *, extrapolate: bool = False) -> None:
+        self.data = data
+        self.policy = policy
+        self.extrapolate = extrapolate
+        self._trees: dict[str, SpeciesTree] = {}
+        self._points: dict[tuple[str, str], Entry | None] = {}
+
+    # -- constants of a species -----------------------------------------------------------------------------------
+
+    def point(self, species: str, quantity: str) -> Entry | None:
+        """Best usable entry of a single-valued quantity (Tb, Tm, Tc, Pc, omega), or None."""
+        key = (species, quantity)
+        if key not in self._points:
+            found = choose((e for e in self.data.entries(species) if e.quantity == quantity), self.policy)
+            self._points[key] = found[0] if found else None
+        return self._points[key]
+
+    def value(self, species: str, quantity: str) -> float | None:
+        """Its value in SI, or None."""
+        entry = self.point(species, quantity)
+        return None if entry is None else entry.value
+
+    def critical(self, species: str) -> Critical | None:
+        """Critical constants and acentric factor, where all three are known."""
+        found = [self.point(species, q) for q in ("Tc", "Pc", "omega")]
+        if any(e is None or e.value is None for e in found):
+            return None
+        entries = [e for e in found if e is not None]
+        tc, pc, omega = (float(e.value) for e in entries if e.value is not None)
+        return Critical(tc, pc, omega, tuple(e.id for e in entries), entries[0].source)
+
+    def boiling(self, species: str) -> float | None:
+        """Normal boiling point [K]; None where it is not known or the species sublimes."""
+        entry = self.point(species, "Tb")
+        return entry.value if entry is not None and entry.phase != "cr" else None
+
+    # -- trees ----------------------------------------------------------------------------------------------------
+
+    def tree(self, species: str) -> SpeciesTree:
+        """The tree of a species, built once."""
+        if species not in self._trees:
+            self._trees[species] = self._build(species)
+        return self._trees[species]
+
+    def _build(self, species: str) -> SpeciesTree:
+        record = self.data.species(species)
+        entries = self.data.entries(species)
+        boiling, critical = self.boiling(species), self.critical(species)
+        found = [e for e in choose(entries, self.policy) if e.quantity == "Cp" and e.equation == "iapws95"]
+        formulation = Formulation(species, found[0], self.policy) if found else None
+        tree = SpeciesTree()
+        for phase, form in sorted({(e.phase, e.form) for e in entries if e.quantity == "Cp"}):
+            if phase == "fluid" or (phase == "l" and formulation is not None):
+                continue
+            mine = [e for e in entries if e.quantity == "Cp" and (e.phase, e.form) == (phase, form)]
+            curve = build_curve(
+                species,
+                phase,
+                form,
+                mine,
+                self.policy,
+                extrapolate=self.extrapolate,
+                boiling=boiling if phase == "l" else None,
+                critical=critical if phase == "l" else None,
+            )
+            if curve is not None:
+                tree.tracks[(phase, form)] = curve
+        if formulation is not None:
+            tree.tracks[("l", "")] = formulation
+            tree.position = lambda node: State("l", node.temperature) if node.phase == "l" else node.temperature
+        edges = collect(
+            species=species,
+            entries=entries,
+            policy=self.policy,
+            zero_nodes=self._zero_nodes(record),
+            foreign_zero=self._foreign_zero(record),
+            boiling=boiling,
+            melting=self.value(species, "Tm"),
+            critical=critical,
+            associating=record.vapour == "associating",
+            formulation=formulation,
+        )
+        tree.grow(edges, extrapolate=self.extrapolate)
+        return tree
+
+    def _zero_nodes(self, record: Species) -> list[Node]:
+        """Nodes of this species that have level 0 by definition: it is an element in its reference form."""
+        nodes = []
+        for stages in self.data.datum(INTERNAL).schedule.values():
+            z = stages[0][1]
+            if z.species == record.name:
+                nodes.append(Node(z.phase, z.form, T_STANDARD))
+        return nodes
+
+    def _foreign_zero(self, record: Species):  # type: ignore[no-untyped-def]
+        def shift(entry: Entry, node: Node) -> tuple[float, tuple[Part, ...]]:
+            if entry.datum in ("", INTERNAL):
+                return 0.0, ()
+            z = self.zero_of(self.data.datum(entry.datum), record, phase=node.phase, temperature=node.temperature)
+            internal = {(n.phase, n.form, n.temperature) for n in self._zero_nodes(record)}
+            total, parts = 0.0, []
+            for term in z.terms:
+                state = self.resolve(term.zero, term.species, temperature=node.temperature)
+                if term.species == record.name and (state.phase, state.form, state.temperature) not in internal:
+                    raise DatumError(f"the zero of {entry.datum} would be measured by itself")
+                for leg in self.level(term.species, state):
+                    total += float(term.coefficient) * leg.value
+                    parts += scale(leg, float(term.coefficient)).parts
+            return total, add_parts(parts)
+
+        return shift
+
+    # -- states ---------------------------------------------------------------------------------------------------
+
+    def forms(self, species: str, phase: str) -> list[str]:
+        """Forms of a phase that the data know."""
+        tree = self.tree(species)
+        known = {n.form for n in tree.nodes if n.phase == phase} | {f for p, f in tree.tracks if p == phase}
+        return sorted(known)
+
+    def phases(self, species: str) -> list[str]:
+        """Phases that the data know, with forms in brackets."""
+        tree = self.tree(species)
+        pairs = {(n.phase, n.form) for n in tree.nodes if n != ROOT} | set(tree.tracks)
+        return [f"{p} ({f})" if f else p for p, f in sorted(pairs)]
+
+    def check(self, species: str, state: State) -> State:
+        """The state with its form filled in, or an error that says why it cannot exist.
+
+        Raises
+        ------
+        NotFound
+            The data know no such phase or form.
+        Ambiguous
+            Several forms, none named.
+        NoSuchState
+            A liquid above its critical point or below its melting point, a crystal above it.
+        """
+        if state.phase == "fluid":
+            return state
+        forms = self.forms(species, state.phase)
+        if not forms:
+            known = [p for p in self.phases(species) if not p.startswith("fluid")]
+            raise NotFound(
+                f"no data for {species} as {state.phase}",
+                hint=f"the store knows it as {', '.join(known) or 'nothing yet'}",
+                phases=known,
+            )
+        if state.form not in forms:
+            if state.form:
+                raise NotFound(
+                    f"no form {state.form!r} of {species} ({state.phase})",
+                    hint=f"it has {', '.join(f or '(no form named)' for f in forms)}",
+                    candidates=forms,
+                )
+            if len(forms) > 1:
+                named = [f for f in forms if f]
+                raise Ambiguous(
+                    f"{species} has several forms as {state.phase}: {', '.join(named)}",
+                    hint=f"name one, e.g. --form {named[0]}",
+                    candidates=named,
+                )
+            state = replace(state, form=forms[0])
+        t = state.temperature
+        if t is not None:
+            self._stable(species, state, t)
+        return state
+
+    def _stable(self, species: str, state: State, t: float) -> None:
+        tc, tm = self.value(species, "Tc"), self.value(species, "Tm")
+        if state.phase == "l" and tc is not None and t > tc:
+            raise NoSuchState(
+                f"{species} is no liquid at {t:.7g} K: its critical temperature is {tc:.7g} K",
+                hint="use --phase g for the ideal gas, or --phase fluid with --pressure",
+            )
+        if tm is None or self.extrapolate:
+            return
+        if state.phase == "l" and t < tm - MELTING_SLACK:
+            raise NoSuchState(
+                f"{species} is solid at {t:.7g} K: it melts at {tm:.7g} K",
+                hint="use --phase cr, or --extrapolate for the supercooled liquid",
+            )
+
+    def resolve(self, z: ZeroState, species: str, *, temperature: float | None = None) -> State:
+        """A datum's symbolic state made definite for a species.
+
+        Raises NoData where the boiling or melting point that decides it is missing, NoSuchState where it cannot exist.
+        """
+        t: float | None
+        if z.temperature == SAME_T:
+            t = temperature
+        elif z.temperature == BOILING:
+            t = self.boiling(species)
+            if t is None:
+                raise NoData(f"no boiling point of {species} in the store", hint="its zero on this datum needs one")
+        else:
+            t = float(z.temperature)
+        if t is None:
+            raise NoData("the datum has its zero at the temperature of the state", hint="give --temperature")
+        phase, form = z.phase, z.form
+        if phase == "stable":
+            phase, form = self.stable_phase(species, t)
+        saturated = z.saturated
+        return State(phase, t, form, z.pressure, saturated)
+
+    def stable_phase(self, species: str, t: float) -> tuple[str, str]:
+        """Phase (and form) stable at a temperature [K] and 1 atm, by the melting and boiling points of the store."""
+        tb = self.point(species, "Tb")
+        if tb is not None and tb.value is not None and t >= tb.value:
+            return "g", ""
+        sublimes = tb is not None and tb.phase == "cr"
+        tm = self.value(species, "Tm")
+        if tb is None and tm is not None and t >= tm and self.forms(species, "l"):
+            raise NoData(
+                f"no boiling point of {species} in the store",
+                hint=f"name the phase: e.g. own:l@{t:.7g}K or own:g@{t:.7g}K",
+            )
+        if tm is not None and t >= tm and not sublimes:
+            return "l", ""
+        if tm is not None or sublimes:
+            forms = self.forms(species, "cr")
+            zero_forms = [n.form for n in self._zero_nodes(self.data.species(species)) if n.phase == "cr"]
+            if len(forms) == 1:
+                return "cr", forms[0]
+            if zero_forms:
+                return "cr", zero_forms[0]
+            raise NoData(
+                f"which crystal form of {species} is stable at {t:.7g} K is not stated in the store",
+                hint=f"it knows {', '.join(f for f in forms if f) or 'no crystal'}; name one, e.g. own:cr:FORM@25C",
+            )
+        zeros = self._zero_nodes(self.data.species(species))
+        if zeros and t == T_STANDARD:
+            return zeros[0].phase, zeros[0].form
+        raise NoData(
+            f"which phase of {species} is stable at {t:.7g} K is not known: no melting or boiling point in the store",
+            hint="name the phase: e.g. own:g@25C",
+        )
+
+    # -- ways -----------------------------------------------------------------------------------------------------
+
+    def attach(self, species: str, state: State) -> tuple[Node, list[Move]]:
+        """The anchor node of a state, and the moves from it to the state.
+
+        Raises
+        ------
+        TemperatureOutOfRange
+            Outside every range; names the ranges.
+        NoData
+            No entry leads to this phase.
+        """
+        tree = self.tree(species)
+        formulation = tree.tracks.get(("l", ""))
+        if isinstance(formulation, Formulation) and state.phase in ("l", "fluid"):
+            start = State("l", T_STANDARD)
+            return Node("l", "", T_STANDARD), [Move(track=formulation, start=start, end=state)]
+        if state.phase == "fluid":
+            return self._attach_fluid(species, state)
+        t = state.temperature
+        if t is None:
+            raise NoData(f"the temperature of {species} is missing", hint="give --temperature")
+        node = Node(state.phase, state.form, t)
+        track = tree.tracks.get((state.phase, state.form))
+        anchor = tree.anchor(state.phase, state.form, t)
+        if track is None or anchor is None:
+            if node in tree.nodes:
+                return node, []
+            if anchor is None:
+                raise NoData(
+                    f"no entry ties {species} as {state.phase} to anything else",
+                    hint="it needs a formation enthalpy, a latent heat or an increment to 0 K",
+                )
+            raise TemperatureOutOfRange(
+                f"{species}, {state.phase}: no heat capacity in the store, so {t:.7g} K cannot be reached",
+                hint=f"known at {', '.join(f'{x:.7g} K' for x in self._temperatures(tree, state))} only",
+                ranges=[],
+            )
+        if isinstance(track, Curve) and not track.covers(t, anchor.temperature):
+            if node in tree.nodes:
+                return node, []
+            if not track.extrapolate:
+                if not track.covers(t):
+                    raise track.out_of_range(t)
+                raise TemperatureOutOfRange(
+                    f"{species}, {state.phase}: {t:.7g} K lies in a range that no anchor reaches",
+                    hint=f"the heat capacity covers {range_text(track.ranges())}, the anchor is at "
+                    f"{anchor.temperature:.7g} K; --extrapolate bridges the gap, and marks it",
+                    ranges=track.ranges(),
+                )
+        return anchor, [Move(track=track, start=anchor.temperature, end=t)]
+
+    @staticmethod
+    def _temperatures(tree: SpeciesTree, state: State) -> list[float]:
+        return sorted(n.temperature for n in tree.nodes if (n.phase, n.form) == (state.phase, state.form))
+
+    def _attach_fluid(self, species: str, state: State) -> tuple[Node, list[Move]]:
+        """The real fluid of a species without a formulation: ideal gas plus the residual by an equation of state."""
+        critical = self.critical(species)
+        if critical is None:
+            missing = [q for q in ("Tc", "Pc", "omega") if self.value(species, q) is None]
+            raise NoData(
+                f"the real fluid of {species} needs {', '.join(missing)}, which the store does not hold",
+                hint="use --phase g for the ideal gas",
+            )
+        if self.data.species(species).vapour == "associating":
+            raise NoData(
+                f"the vapour of {species} associates, and no cubic equation of state describes that",
+                hint="use --phase g for the monomer ideal gas",
+            )
+        c, t, p = critical, state.temperature, state.pressure
+        if t is None:
+            if p is None:
+                raise NoSuchState(f"the real fluid of {species} needs a temperature or a pressure", hint="give one")
+            t = residual.saturation_temperature(pressure=p, tc=c.tc, pc=c.pc, omega=c.omega)
+        if state.saturated == "liquid":
+            return self.attach(species, State("l", t))
+        if not state.saturated and p is None:
+            raise NoSuchState(
+                f"the real fluid of {species} needs a pressure", hint="give --pressure, or --saturated liquid|vapour"
+            )
+        value, p_used, root = residual.enthalpy(
+            temperature=t,
+            pressure=None if state.saturated else p,
+            tc=c.tc,
+            pc=c.pc,
+            omega=c.omega,
+            root="vapour" if state.saturated else "stable",
+        )
+        if root == "liquid":
+            return self.attach(species, State("l", t, pressure=p))
+        node, moves = self.attach(species, State("g", t))
+        shown = replace(state, temperature=t, pressure=p_used)
+        part = Part(
+            f"model:residual:{species}", value, residual.standard(value) / max(abs(value), 1e-9), True
+        )
+        leg = Leg(
+            what="residual enthalpy",
+            species=species,
+            start=f"g, {t:.7g} K",
+            end=shown.text(),
+            value=value,
+            parts=(part,),
+            source=c.source,
+            note=residual.EOS_NOTE,
+        )
+        edge = Edge(Node("g", "", t), Node("fluid", "", t, "vapour"), leg, "residual")
+        return node, [*moves, Move(edge=edge)]
+
+    def way(self, species: str, start: State, end: State) -> list[Move]:
+        """The way from one state of a species to another, shortened.
+
+        Raises NoData where nothing connects them.
+        """
+        node_a, moves_a = self.attach(species, start)
+        node_b, moves_b = self.attach(species, end)
+        between = self.tree(species).way(node_a, node_b)
+        if between is None:
+            raise NoData(
+                f"nothing in the store connects {species} {node_a.text()} with {node_b.text()}",
+                hint=self._what_would_connect(node_a, node_b),
+            )
+        return join([*(m.reversed() for m in reversed(moves_a)), *between, *moves_b])
+
+    @staticmethod
+    def _what_would_connect(a: Node, b: Node) -> str:
+        pair = {a.phase, b.phase}
+        need = {
+            frozenset(("l", "g")): "a latent heat (Hvap) or Hf of both phases",
+            frozenset(("cr", "l")): "an enthalpy of fusion (Hfus) or Hf of both phases",
+            frozenset(("cr", "g")): "an enthalpy of sublimation (Hsub), Hfus with Hvap, or Hf of both phases",
+        }.get(frozenset(pair), "a formation enthalpy or a heat capacity that spans both")
+        return f"it needs {need}"
+
+    def level_way(self, species: str, state: State) -> list[Move]:
+        """The way from the elements at 298.15 K to a state.
+
+        Raises NoData, naming the missing formation enthalpy, where the species is not tied to the elements.
+        """
+        node, moves = self.attach(species, state)
+        between = self.tree(species).way(ROOT, node) if ROOT in self.tree(species).nodes else None
+        if between is None:
+            raise NoData(
+                f"no formation enthalpy of {species} in the store",
+                hint="elements and basis datums need one; an own-state datum such as gas-25C or own:l@25C does not",
+                species=species,
+                quantity="Hf",
+            )
+        return join([*between, *moves])
+
+    def level(self, species: str, state: State) -> list[Leg]:
+        """Legs from the elements at 298.15 K to a state; their sum is its level [J/mol]."""
+        return expand(self.level_way(species, state))
+
+    # -- datums ---------------------------------------------------------------------------------------------------
+
+    def zero_of(self, datum: Datum, species: Species, *, phase: str, temperature: float | None) -> Zero:
+        """What a datum calls zero for a species (see :func:`propdb.datum.zero`)."""
+        return zero(datum, species, phase=phase, composition=self._composition, temperature=temperature)
+
+    def _composition(self, name: str) -> tuple[Mapping[str, int | Fraction], int]:
+        record = self.data.species(name)
+        return dict(record.composition), record.charge
+
+    def source(self, key: str) -> Source:
+        return self.data.source(key)
+
+    def offset(self, z: Zero, species: Species, *, temperature: float | None) -> float:
+        """h0 of a zero in J/mol, with p v where the convention fixes the internal energy."""
+        h0 = z.h0 * (species.molar_mass if z.h0_unit == "J/kg" else 1.0)
+        if not z.internal_energy:
+            return h0
+        state = self.resolve(z.terms[0].zero, species.name, temperature=temperature)
+        track = self.tree(species.name).tracks.get(("l", ""))
+        if not isinstance(track, Formulation) or state.temperature is None or not state.saturated:
+            raise NoData(
+                f"this datum fixes the internal energy of {species.name}, and its molar volume is not known",
+                hint="use a datum that fixes the enthalpy, e.g. own:l@0C",
+            )
+        kind = "liquid" if state.saturated == "liquid" else "vapour"
+        p = water.saturation(temperature=state.temperature)[0]
+        return h0 + p * water.volume(temperature=state.temperature, saturated=kind)  # type: ignore[arg-type]
+
+    def closures_of(self, species: str) -> list[Edge]:
+        """Edges that the tree of a species does not use."""
+        return self.tree(species).unused
+
+    def closure_error(self, species: str, edge: Edge) -> tuple[float, list[Part]] | None:
+        """What an unused edge says less what the tree says [J/mol], with the sensitivities of both."""
+        moves = self.tree(species).way(edge.start, edge.end)
+        if moves is None:
+            return None
+        try:
+            legs = expand(moves)
+        except PropdbError:
+            return None
+        parts = list(edge.leg.parts) + [p for leg in legs for p in scale(leg, -1.0).parts]
+        return edge.leg.value - sum(leg.value for leg in legs), parts

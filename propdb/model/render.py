@@ -1,0 +1,136 @@
+"""Answers as text an engineer can read and file."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import TYPE_CHECKING
+
+from propdb.model.answer import CAUTION, Answer, ReactionAnswer, _Derived
+from propdb.units import enthalpy_decimals, format_number, parse_unit
+
+if TYPE_CHECKING:
+    from propdb.model.records import Step
+
+__all__ = ["columns", "explain", "headline", "reaction_headline"]
+
+
+def columns(rows: Sequence[Sequence[str]], *, right: Sequence[int] = (), indent: str = "  ", gap: str = "  ") -> list[str]:
+    """Align rows in columns; columns in ``right`` to the right. Trailing blanks are cut."""
+    if not rows:
+        return []
+    widths = [max(len(row[i]) for row in rows) for i in range(len(rows[0]))]
+    lines = []
+    for row in rows:
+        cells = [c.rjust(w) if i in right else c.ljust(w) for i, (c, w) in enumerate(zip(row, widths, strict=True))]
+        lines.append((indent + gap.join(cells)).rstrip())
+    return lines
+
+
+def _number(value: float, unit: str, *, sign: bool = False) -> str:
+    text = format_number(value, decimals=enthalpy_decimals(parse_unit(unit)))
+    return text if not sign or text.startswith("-") or not text.strip("0.") else f"+{text}"
+
+
+def _value(answer: _Derived) -> str:
+    if answer.uncertainty:
+        decimals = enthalpy_decimals(parse_unit(answer.unit))
+        if answer.uncertainty >= 0.5 * 10.0**-decimals:
+            return f"{_number(answer.value, answer.unit)} ± {_number(answer.uncertainty, answer.unit)} {answer.unit}"
+    return f"{_number(answer.value, answer.unit)} {answer.unit}"
+
+
+def headline(answer: Answer) -> str:
+    """One line: what, value, standard uncertainty where every entry states one, datum."""
+    who = f"{answer.species} ({answer.formula})" if answer.formula and answer.formula != answer.species else answer.species
+    if answer.given:
+        return f"{who}: {answer.given} = {_value(answer)} on {answer.datum}"
+    return f"{who}, {answer.state}: {_value(answer)} on {answer.datum}"
+
+
+def reaction_headline(answer: ReactionAnswer) -> str:
+    """One line: equation, temperature, enthalpy of reaction."""
+    return f"{answer.equation} at {answer.temperature:.7g} K: {_value(answer)}"
+
+
+def explain(answer: _Derived) -> str:
+    """The whole derivation."""
+    lines = [str(answer), ""]
+    if isinstance(answer, ReactionAnswer):
+        lines += _routes(answer)
+    lines += _steps(answer)
+    lines += ["", f"Uncertainty   {answer.uncertainty_note}", f"May be summed {answer.may_sum.why}"]
+    if answer.closures:
+        lines += ["", f"Closures: what unused data say, less the path above [{answer.unit}]"]
+        rows = [
+            (
+                c.via,
+                _number(c.difference, answer.unit, sign=True),
+                f"combined standard uncertainty {_number(c.uncertainty, answer.unit)}"
+                if c.uncertainty is not None
+                else "no uncertainty stated",
+                f"[{c.entry[:8]}]" if c.entry else "",
+            )
+            for c in answer.closures
+        ]
+        lines += columns(rows, right=(1,))
+    if answer.warnings:
+        lines += ["", "Mind"]
+        lines += [f"  - {w}" for w in answer.warnings]
+    if answer.sources:
+        lines += ["", "Sources"]
+        from propdb.model.cite import text
+
+        lines += columns([(key, text(answer.sources[key])) for key in sorted(answer.sources)])
+    lines += ["", f"Store {answer.store}", CAUTION]
+    return "\n".join(lines)
+
+
+def _routes(answer: ReactionAnswer) -> list[str]:
+    unit = answer.unit
+    head = ("", "species", "state", f"level at T [{unit}]", "at 298.15 K", "sensible heat", "from")
+    rows = [head]
+    rows += [
+        (
+            t.coefficient,
+            f"{t.species}",
+            t.state,
+            _number(t.formation, unit),
+            _number(t.standard, unit),
+            _number(t.sensible, unit, sign=True),
+            t.start,
+        )
+        for t in answer.terms
+    ]
+    lines = columns(rows, right=(0, 3, 4, 5))
+    lines.append("")
+    lines += columns(
+        [
+            ("Route 1, formation at T", "sum of coefficient x level at T", _number(answer.formation_route, unit, sign=True)),
+            ("Route 2, by 298.15 K", "heat of reaction at 298.15 K", _number(answer.reaction_standard, unit, sign=True)),
+            ("", "+ sensible heats, products less reactants", _number(answer.sensible, unit, sign=True)),
+            ("", "=", _number(answer.sensible_route, unit, sign=True)),
+            ("The routes differ by", "", _number(answer.disagreement, unit)),
+        ],
+        right=(2,),
+    )
+    lines.append("")
+    return lines
+
+
+def _steps(answer: _Derived) -> list[str]:
+    unit = answer.unit
+    head = ("step", "from", "to", unit, "source", "entry")
+    rows: list[tuple[str, ...]] = [head]
+    several = len({s.species for s in answer.steps}) > 1
+    for s in answer.steps:
+        rows.append((_what(s, several), s.start, s.end, _number(s.value, unit, sign=True), s.source, f"[{s.entry[:8]}]" if s.entry else ""))
+    total = sum(s.value for s in answer.steps)
+    rows.append(("sum", "", "", _number(total, unit), "", ""))
+    lines = columns(rows, right=(3,))
+    notes = [f"  {_what(s, several)}: {s.note}" for s in answer.steps if s.note]
+    return lines + list(dict.fromkeys(notes))
+
+
+def _what(step: Step, several: bool) -> str:
+    mark = " (extrapolated)" if step.extrapolated else ""
+    return f"{step.species}: {step.what}{mark}" if several and step.species else f"{step.what}{mark}"
