@@ -46,8 +46,8 @@ if TYPE_CHECKING:
         Unbalanced,
         UnitError,
     )
+    from propdb.model.answer import Answer, ReactionAnswer, ReactionTerm
     from propdb.model.records import (
-        Answer,
         Carrier,
         Closure,
         Datum,
@@ -79,6 +79,8 @@ __all__ = [
     "OutOfRange",
     "PressureError",
     "PropdbError",
+    "ReactionAnswer",
+    "ReactionTerm",
     "SeedError",
     "Source",
     "Species",
@@ -97,19 +99,28 @@ __all__ = [
     "open",
 ]
 
-_RECORDS = frozenset(("Answer", "Carrier", "Closure", "Datum", "Entry", "MaySum", "Source", "Species", "State", "Step"))
+_MODULES = {
+    "propdb.api": ("Store", "open"),
+    "propdb.model.answer": ("Answer", "ReactionAnswer", "ReactionTerm"),
+    "propdb.model.records": (
+        "Carrier",
+        "Closure",
+        "Datum",
+        "Entry",
+        "MaySum",
+        "Source",
+        "Species",
+        "State",
+        "Step",
+    ),
+}
 
 
 def __getattr__(name: str) -> Any:
     """Load a public name from the module that defines it (PEP 562)."""
     if name not in __all__:
         raise AttributeError(f"module 'propdb' has no attribute {name!r}")
-    if name in ("Store", "open"):
-        module = "propdb.api"
-    elif name in _RECORDS:
-        module = "propdb.model.records"
-    else:
-        module = "propdb.errors"
+    module = next((module for module, names in _MODULES.items() if name in names), "propdb.errors")
     value = getattr(import_module(module), name)
     globals()[name] = value
     return value

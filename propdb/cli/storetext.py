@@ -1,0 +1,44 @@
+"""What a store says about itself, as text."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import Any
+
+from propdb.cli.text import columns, pairs
+
+
+def info_text(found: Any) -> str:
+    """Names and values, one a line; a list of like rows as a table."""
+    if isinstance(found, str):
+        return found
+    if not isinstance(found, Mapping):
+        return "\n".join(str(item) for item in found)
+    lines = pairs((_words(name), _text(value)) for name, value in found.items() if not _is_table(value))
+    for name, value in found.items():
+        if _is_table(value):
+            heading = tuple(_words(key) for key in value[0])
+            rows = [heading, *(tuple(_text(cell) for cell in row.values()) for row in value)]
+            numbers = [index for index, cell in enumerate(value[0].values()) if isinstance(cell, (int, float))]
+            lines += ["", _words(name), *columns(rows, right=numbers, indent=2)]
+    return "\n".join(lines)
+
+
+def _is_table(value: Any) -> bool:
+    return isinstance(value, (list, tuple)) and bool(value) and all(isinstance(row, Mapping) for row in value)
+
+
+def _words(name: Any) -> str:
+    return str(name).replace("_", " ")
+
+
+def _text(value: Any) -> str:
+    if value is None:
+        return ""
+    if isinstance(value, bool):
+        return "yes" if value else "no"
+    if isinstance(value, Mapping):
+        return "\n".join(pairs((_words(key), _text(item)) for key, item in value.items()))
+    if isinstance(value, (list, tuple)):
+        return "\n".join(_text(item) for item in value)
+    return str(value)

@@ -1,0 +1,45 @@
+"""Aligned plain text."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+
+
+def columns(rows: Iterable[Sequence[str]], *, right: Iterable[int] = (), indent: int = 0, gap: int = 2) -> list[str]:
+    """Align rows of cells into lines.
+
+    Parameters
+    ----------
+    rows
+        Cells of each row; all rows have the same number of cells. Columns that are empty in every row but the first
+        (the heading) are left out.
+    right
+        Columns that are aligned to the right.
+    indent, gap
+        Spaces before each line and between columns.
+    """
+    table = [[cell.replace("\n", " ") for cell in row] for row in rows]
+    if not table:
+        return []
+    used = [index for index in range(len(table[0])) if any(row[index] for row in (table[1:] or table))]
+    widths = {index: max(len(row[index]) for row in table) for index in used}
+    rightward = set(right)
+    lines = []
+    for row in table:
+        cells = [
+            row[index].rjust(widths[index]) if index in rightward else row[index].ljust(widths[index]) for index in used
+        ]
+        lines.append((" " * indent + (" " * gap).join(cells)).rstrip())
+    return lines
+
+
+def pairs(items: Iterable[tuple[str, str]], *, indent: int = 0) -> list[str]:
+    """Align names and what they are; items with nothing to say are left out."""
+    kept = [(name, text) for name, text in items if text]
+    width = max((len(name) for name, _ in kept), default=0)
+    lines = []
+    for name, text in kept:
+        first, *more = text.splitlines()
+        lines.append(f"{' ' * indent}{name.ljust(width)}  {first}")
+        lines += [f"{' ' * (indent + width)}  {line}" for line in more]
+    return lines
