@@ -75,7 +75,7 @@ class Call:
 
 
 class _Plain:
-    """Coercion of an argument that is text or a whole number.
+    """Coercion of an argument that is text, a flag or a whole number.
 
     Typer builds a pydantic validator for each argument, and loading pydantic takes longer than all else that a
     look-up does.
@@ -102,16 +102,25 @@ class _Plain:
             raise typer.BadParameter(f"{value!r} is not a whole number", ctx=ctx, param=param) from None
 
 
+def _made_plain(params: list[Any]) -> list[Any]:
+    """Give parameters of text, flags and whole numbers the coercion above, unless typer has changed beneath."""
+    for param in params:
+        annotation = getattr(getattr(param, "type_descriptor", None), "annotation", None)
+        if annotation in (str, bool, int, list[str]) and hasattr(param, "_runtime_param"):
+            param._runtime_param = _Plain(annotation)
+    return params
+
+
 class VerbCommand(TyperCommand):
     """A command without start-up cost, with examples at the end of its help."""
 
     def __init__(self, *args: Any, **attributes: Any) -> None:
         super().__init__(*args, **attributes)
         self.examples: tuple[str, ...] = getattr(self.callback, "examples", ())
-        for param in self.params:
-            annotation = getattr(getattr(param, "type_descriptor", None), "annotation", None)
-            if annotation in (str, int, list[str]) and hasattr(param, "_runtime_param"):
-                param._runtime_param = _Plain(annotation)
+
+    def get_params(self, ctx: Any) -> list[Any]:
+        """Parameters, ``--help`` among them."""
+        return _made_plain(super().get_params(ctx))
 
     def format_epilog(self, ctx: Any, formatter: Any) -> None:
         """Write the examples, one a line."""
@@ -129,6 +138,10 @@ class VerbGroup(TyperGroup):
     """
 
     table: Mapping[str, tuple[str, str]] = {}
+
+    def get_params(self, ctx: Any) -> list[Any]:
+        """Parameters, ``--help`` among them."""
+        return _made_plain(super().get_params(ctx))
 
     def list_commands(self, ctx: Any) -> list[str]:
         """Verbs in the order of the table."""
