@@ -17,7 +17,7 @@ from propdb.model.answer import Answer
 from propdb.model.records import SAME_T, Closure, Datum, Entry, MaySum, Part, Source, Species, State, Step, Zero
 from propdb.units import EnthalpyUnit, format_number
 
-__all__ = ["Derivation", "Difference", "convert", "enthalpy", "net"]
+__all__ = ["Derivation", "Difference", "convert", "enthalpy", "net", "zero_members"]
 
 #: (coefficient, species name, state)
 Member = tuple[float, str, State]
@@ -210,7 +210,15 @@ class Derivation:
         return found
 
 
-def _zero_members(levels: Levels, z: Zero, species: Species, temperature: float | None) -> list[Member]:
+def zero_members(
+    levels: Levels, datum: Datum, species: Species, *, phase: str, temperature: float | None
+) -> list[Member]:
+    """The states that a datum calls zero for a species, made definite, with their coefficients."""
+    z = levels.zero_of(datum, species, phase=phase, temperature=temperature)
+    return _members(levels, z, species, temperature)
+
+
+def _members(levels: Levels, z: Zero, species: Species, temperature: float | None) -> list[Member]:
     members: list[Member] = []
     for term in z.terms:
         state = levels.resolve(term.zero, term.species, temperature=temperature)
@@ -232,9 +240,7 @@ def _condensed_pressure(state: State) -> list[str]:
     return []
 
 
-def enthalpy(
-    levels: Levels, *, species: Species, state: State, datum: Datum, unit: EnthalpyUnit, stamp: str
-) -> Answer:
+def enthalpy(levels: Levels, *, species: Species, state: State, datum: Datum, unit: EnthalpyUnit, stamp: str) -> Answer:
     """Enthalpy of a state on a datum: level(state) less what the datum calls zero, plus h0.
 
     Raises
@@ -244,9 +250,12 @@ def enthalpy(
     """
     state = levels.check(species.name, state)
     z = levels.zero_of(datum, species, phase=state.phase, temperature=state.temperature)
-    zeros = _zero_members(levels, z, species, state.temperature)
+    zeros = _members(levels, z, species, state.temperature)
     derived = Derivation(
-        levels, net(levels, [(1.0, species.name, state)], zeros), per=unit.scale(molar_mass=species.molar_mass), unit=unit
+        levels,
+        net(levels, [(1.0, species.name, state)], zeros),
+        per=unit.scale(molar_mass=species.molar_mass),
+        unit=unit,
     )
     offset = levels.offset(z, species, temperature=state.temperature)
     water_formulation = any(leg.what == "formulation" for leg in derived.legs)
@@ -272,7 +281,9 @@ def _h0_note(z: Zero, datum: Datum) -> str:
 
 def _pressure_note(datum: Datum) -> list[str]:
     if datum.standard_pressure == 101325.0:
-        return ["1 atm against 1 bar is no shift: the ideal gas does not depend on pressure, condensed phases by < 2 J/mol"]
+        return [
+            "1 atm against 1 bar is no shift: the ideal gas does not depend on pressure, condensed phases by < 2 J/mol"
+        ]
     return []
 
 
@@ -295,12 +306,10 @@ def convert(
     """
     z_a = levels.zero_of(source_datum, species, phase=phase, temperature=temperature)
     z_b = levels.zero_of(target_datum, species, phase=phase, temperature=temperature)
-    plus = _zero_members(levels, z_a, species, temperature)
-    minus = _zero_members(levels, z_b, species, temperature)
+    plus = _members(levels, z_a, species, temperature)
+    minus = _members(levels, z_b, species, temperature)
     plus, minus = _cancel(plus, minus)
-    derived = Derivation(
-        levels, net(levels, plus, minus), per=unit.scale(molar_mass=species.molar_mass), unit=unit
-    )
+    derived = Derivation(levels, net(levels, plus, minus), per=unit.scale(molar_mass=species.molar_mass), unit=unit)
     a = levels.offset(z_a, species, temperature=temperature)
     b = levels.offset(z_b, species, temperature=temperature)
     offsets = [("as given", value, f"the number that was typed, on {source_datum.name}")]
@@ -314,7 +323,7 @@ def convert(
         value=value - a + b + derived.total(),
         offsets=offsets,
         datum=target_datum,
-        verdict=_verdict(target_datum, temperature if SAME_T == target_datum.temperature else None),
+        verdict=_verdict(target_datum, temperature if target_datum.temperature == SAME_T else None),
         warnings=derived.warnings() + _pressure_note(source_datum) + _pressure_note(target_datum),
         stamp=stamp,
         state="",
@@ -373,5 +382,3 @@ def _answer(
         molar_mass=species.molar_mass,
         given=given,
     )
-
-

@@ -181,7 +181,7 @@ class Curve:
             value=value,
             parts=(Part(f"model:saturation:{self.species}", value, 0.3, True),),
             source=c.source,
-            note="integral of v(1 - aT) dp, Yamada-Gunn volume and Lee-Kesler pressure: a model, standard uncertainty 30 %",
+            note="integral of v(1 - aT) dp, volume by Yamada-Gunn, pressure by Lee-Kesler: a model, standard uncertainty 30 %",
         )
 
 

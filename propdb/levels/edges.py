@@ -114,7 +114,9 @@ def collect(
         by_quantity.setdefault(e.quantity, []).append(e)
     edges: list[Edge] = []
     for node in zero_nodes:
-        leg = Leg("definition", species, ROOT.text(), node.text(), 0.0, note="element in its reference form: 0 by definition")
+        leg = Leg(
+            "definition", species, ROOT.text(), node.text(), 0.0, note="element in its reference form: 0 by definition"
+        )
         edges.append(Edge(ROOT, node, leg, "definition"))
     for e in by_quantity.get("Hf", ()):
         if e.value is None:

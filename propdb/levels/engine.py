@@ -5,7 +5,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import replace
 from fractions import Fraction
 
@@ -157,13 +157,14 @@ class Levels:
                 nodes.append(Node(z.phase, z.form, T_STANDARD))
         return nodes
 
-    def _foreign_zero(self, record: Species):  # type: ignore[no-untyped-def]
+    def _foreign_zero(self, record: Species) -> Callable[[Entry, Node], tuple[float, tuple[Part, ...]]]:
         def shift(entry: Entry, node: Node) -> tuple[float, tuple[Part, ...]]:
             if entry.datum in ("", INTERNAL):
                 return 0.0, ()
             z = self.zero_of(self.data.datum(entry.datum), record, phase=node.phase, temperature=node.temperature)
             internal = {(n.phase, n.form, n.temperature) for n in self._zero_nodes(record)}
-            total, parts = 0.0, []
+            total = 0.0
+            parts: list[Part] = []
             for term in z.terms:
                 state = self.resolve(term.zero, term.species, temperature=node.temperature)
                 if term.species == record.name and (state.phase, state.form, state.temperature) not in internal:
@@ -394,9 +395,7 @@ class Levels:
             return self.attach(species, State("l", t, pressure=p))
         node, moves = self.attach(species, State("g", t))
         shown = replace(state, temperature=t, pressure=p_used)
-        part = Part(
-            f"model:residual:{species}", value, residual.standard(value) / max(abs(value), 1e-9), True
-        )
+        part = Part(f"model:residual:{species}", value, residual.standard(value) / max(abs(value), 1e-9), True)
         leg = Leg(
             what="residual enthalpy",
             species=species,

@@ -51,7 +51,7 @@ class Policy:
         return 1000 + (classes.index(cls) if cls in classes else len(classes))
 
     def default_standard(self, entry: Entry) -> tuple[float, str]:
-        """Class default of a standard uncertainty: ``(value, unit)`` with unit "" (SI of the entry) or "%" (a fraction).
+        """Class default of a standard uncertainty: ``(value, unit)``, unit "" (SI of the entry) or "%" (a fraction).
 
         For ranking only; never shown as stated.
         """

@@ -44,7 +44,8 @@ def saturation_temperature(*, pressure: float, tc: float, pc: float, omega: floa
     """Saturation temperature [K] of the equation of state at a pressure [Pa] below ``pc`` [Pa]."""
     if pressure >= pc:
         raise NoSuchState(
-            f"there is no saturated vapour at {pressure / 1e5:.6g} bar", hint=f"the critical pressure is {pc / 1e5:.6g} bar"
+            f"there is no saturated vapour at {pressure / 1e5:.6g} bar",
+            hint=f"the critical pressure is {pc / 1e5:.6g} bar",
         )
     from scipy.optimize import brentq
 
@@ -52,7 +53,8 @@ def saturation_temperature(*, pressure: float, tc: float, pc: float, omega: floa
     low = 0.3 * tc
     if eos.Psat(low) > pressure:
         raise NoSuchState(
-            f"saturation at {pressure / 1e5:.3g} bar lies below the equation of state's range", hint="give --temperature"
+            f"saturation at {pressure / 1e5:.3g} bar lies below the equation of state's range",
+            hint="give --temperature",
         )
     return float(brentq(lambda t: eos.Psat(t) - pressure, low, tc * (1.0 - 1e-9), xtol=1e-9))
 
@@ -97,9 +99,9 @@ def enthalpy(
 def liquid_pressure_term(
     *, start: float, end: float, tc: float, pc: float, omega: float, isobaric: bool = True
 ) -> float:
-    """Integral of v(1 - aT) dp along saturation between two temperatures [K], in J/mol (without aT where not ``isobaric``).
+    """Integral of v(1 - aT) dp along saturation between two temperatures [K], in J/mol; without aT if not ``isobaric``.
 
-    dH(sat)/dT = Cp + v(1 - aT) dp/dT = C(sat) + v dp/dT (Hoge 1946; Reid, Prausnitz, Poling 1987, section 5-8). Liquid
+    dH(sat)/dT = Cp + v(1 - aT) dp/dT = C(sat) + v dp/dT (Reid, Prausnitz, Poling 1987). Liquid
     volume by Yamada and Gunn (1973), vapour pressure by Lee and Kesler (1975), both through ``chemicals``.
     """
     import numpy as np

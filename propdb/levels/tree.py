@@ -97,9 +97,10 @@ class SpeciesTree:
         self._walk()
 
     def _one_per_pair(self, edges: list[Edge]) -> list[Edge]:
-        """Among entries that state one quantity between the same two nodes the chosen one leads; the rest are closures."""
+        """Among entries for one quantity between the same two nodes the chosen one leads; the rest are closures."""
         seen: set[tuple[Node, Node, str]] = set()
-        winners, losers = [], []
+        winners: list[Edge] = []
+        losers: list[Edge] = []
         for edge in edges:  # entries come best first
             pair = (edge.start, edge.end, edge.leg.what)
             (losers if pair in seen else winners).append(edge)
@@ -158,7 +159,7 @@ class SpeciesTree:
         return Move(edge=edge, forward=forward)
 
     def anchor(self, phase: str, form: str, temperature: float) -> Node | None:
-        """The node from which a track of this phase and form is measured: 298.15 K if it is one, else the nearest to it.
+        """The node from which a track of this phase and form is measured: 298.15 K if it is one, else the nearest.
 
         The same for every temperature, so that each state has one level. Nodes tied to the elements come first.
         """

@@ -1,4 +1,4 @@
-"""Water's real fluid by the IAPWS-95 formulation (IAPWS R6-95(2018)), through the Helmholtz derivatives of ``chemicals.iapws``.
+"""Water's real fluid by IAPWS-95 (IAPWS R6-95(2018)), through the Helmholtz derivatives of ``chemicals.iapws``.
 
 The saturation curve is taken from ``iapws95_rhol_sat`` and ``iapws95_rhog_sat``: the library's own iteration
 (``iapws95_saturation``) does not converge near the triple point. Enthalpies are on the formulation's own zero
@@ -76,7 +76,7 @@ def saturation(*, temperature: float) -> tuple[float, float, float, float, float
 
 
 def _coexistence(temperature: float, rho_l: float, rho_g: float) -> tuple[float, float]:
-    """Polish the library's saturation densities to equal pressure and Gibbs energy (Maxwell criterion, R6-95 section 6)."""
+    """Polish the library's saturation densities to equal pressure and Gibbs energy (Maxwell criterion)."""
     from math import log
 
     from chemicals import iapws

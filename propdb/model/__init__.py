@@ -1,1 +1,1 @@
-"""Frozen records: what a species, a source, an entry, a datum, a state, a step and an answer are. No behaviour beyond display."""
+"""Frozen records: species, source, entry, datum, state, step, answer. No behaviour beyond display."""

@@ -126,7 +126,7 @@ class ReactionTerm:
     species: str
     formula: str
     state: str
-    formation: float  # level of the state: enthalpy on elements-298K
+    formation: float  # enthalpy of the state at T on the datum of the answer
     standard: float  # enthalpy of formation of the phase that the sensible heat starts from, at 298.15 K
     sensible: float  # from there to the state
     start: str = ""  # where the sensible heat starts
@@ -139,7 +139,7 @@ class ReactionAnswer(_Derived):
     equation: str = ""
     temperature: float = 0.0  # [K]
     terms: tuple[ReactionTerm, ...] = ()
-    formation_route: float = 0.0  # sum of coefficients x level at T
+    formation_route: float = 0.0  # sum of coefficients x enthalpy at T on the datum
     reaction_standard: float = 0.0  # sum of coefficients x formation enthalpy at 298.15 K
     sensible: float = 0.0  # sum of coefficients x sensible heat
     sensible_route: float = 0.0  # heat of reaction at 298.15 K plus sensible heats

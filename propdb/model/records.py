@@ -110,7 +110,7 @@ class Entry:
     carriers: tuple[Carrier, ...] = ()
 
     def standard_uncertainty(self) -> float | None:
-        """Uncertainty brought to one standard deviation (GUM, JCGM 100:2008, 4.3): 95 % halves, a maximum error is rectangular."""
+        """As one standard deviation (JCGM 100:2008, 4.3): 95 % halves, a maximum error is rectangular."""
         if self.uncertainty is None:
             return None
         return self.uncertainty * KIND_TO_STANDARD[self.uncertainty_kind]

@@ -14,7 +14,9 @@ if TYPE_CHECKING:
 __all__ = ["columns", "explain", "headline", "reaction_headline"]
 
 
-def columns(rows: Sequence[Sequence[str]], *, right: Sequence[int] = (), indent: str = "  ", gap: str = "  ") -> list[str]:
+def columns(
+    rows: Sequence[Sequence[str]], *, right: Sequence[int] = (), indent: str = "  ", gap: str = "  "
+) -> list[str]:
     """Align rows in columns; columns in ``right`` to the right. Trailing blanks are cut."""
     if not rows:
         return []
@@ -41,7 +43,11 @@ def _value(answer: _Derived) -> str:
 
 def headline(answer: Answer) -> str:
     """One line: what, value, standard uncertainty where every entry states one, datum."""
-    who = f"{answer.species} ({answer.formula})" if answer.formula and answer.formula != answer.species else answer.species
+    who = (
+        f"{answer.species} ({answer.formula})"
+        if answer.formula and answer.formula != answer.species
+        else answer.species
+    )
     if answer.given:
         return f"{who}: {answer.given} = {_value(answer)} on {answer.datum}"
     return f"{who}, {answer.state}: {_value(answer)} on {answer.datum}"
@@ -87,7 +93,7 @@ def explain(answer: _Derived) -> str:
 
 def _routes(answer: ReactionAnswer) -> list[str]:
     unit = answer.unit
-    head = ("", "species", "state", f"level at T [{unit}]", "at 298.15 K", "sensible heat", "from")
+    head = ("", "species", "state", f"H at T [{unit}]", "Hf at 298.15 K", "sensible heat", "from")
     rows = [head]
     rows += [
         (
@@ -105,8 +111,16 @@ def _routes(answer: ReactionAnswer) -> list[str]:
     lines.append("")
     lines += columns(
         [
-            ("Route 1, formation at T", "sum of coefficient x level at T", _number(answer.formation_route, unit, sign=True)),
-            ("Route 2, by 298.15 K", "heat of reaction at 298.15 K", _number(answer.reaction_standard, unit, sign=True)),
+            (
+                "Route 1, formation at T",
+                f"sum of coefficient x H at T on {answer.datum}",
+                _number(answer.formation_route, unit, sign=True),
+            ),
+            (
+                "Route 2, by 298.15 K",
+                "heat of reaction at 298.15 K",
+                _number(answer.reaction_standard, unit, sign=True),
+            ),
             ("", "+ sensible heats, products less reactants", _number(answer.sensible, unit, sign=True)),
             ("", "=", _number(answer.sensible_route, unit, sign=True)),
             ("The routes differ by", "", _number(answer.disagreement, unit)),
@@ -123,7 +137,8 @@ def _steps(answer: _Derived) -> list[str]:
     rows: list[tuple[str, ...]] = [head]
     several = len({s.species for s in answer.steps}) > 1
     for s in answer.steps:
-        rows.append((_what(s, several), s.start, s.end, _number(s.value, unit, sign=True), s.source, f"[{s.entry[:8]}]" if s.entry else ""))
+        entry = f"[{s.entry[:8]}]" if s.entry else ""
+        rows.append((_what(s, several), s.start, s.end, _number(s.value, unit, sign=True), s.source, entry))
     total = sum(s.value for s in answer.steps)
     rows.append(("sum", "", "", _number(total, unit), "", ""))
     lines = columns(rows, right=(3,))
