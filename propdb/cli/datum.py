@@ -7,7 +7,7 @@ from typing import Annotated
 
 import typer
 
-from propdb.cli.app import Call, family, verb
+from propdb.cli.app import Call, family, note, verb
 
 app = family("List, show and add datums.")
 
@@ -39,8 +39,4 @@ def add(
     file: Annotated[str, typer.Argument(metavar="FILE", help="TOML, as propdb datum show prints it.")],
 ) -> None:
     """Add datums of your own from a TOML file."""
-    from propdb.cli.app import note
-
-    added = call.store.datum_add(Path(file))
-    names = [getattr(datum, "name", datum) for datum in (added if isinstance(added, (list, tuple)) else [added])]
-    note("added " + ", ".join(str(name) for name in names))
+    note("added " + ", ".join(call.store.datum_add(Path(file))))

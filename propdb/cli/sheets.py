@@ -12,8 +12,9 @@ from propdb.model.cite import text as reference
 from propdb.units import format_number, format_pressure, format_temperature, parse_heat_capacity_unit, parse_unit
 
 if TYPE_CHECKING:
-    from propdb.api import Match, SpeciesSheet
     from propdb.model.records import Datum, Entry, Source, Species, ZeroState
+    from propdb.model.sheet import SpeciesSheet
+    from propdb.store.search import Match
 
 #: What each quantity is called.
 QUANTITY_WORDS: Final[Mapping[str, str]] = MappingProxyType(
@@ -93,15 +94,10 @@ def sheet_text(sheet: SpeciesSheet) -> str:
         lines.append(line)
         lines += [f"      {text}" for text in coefficient_lines(entry)]
     used = {entry.source for entry in sheet.entries}
-    cited = [source for source in _sources(sheet.sources) if source.key in used]
+    cited = [source for source in sheet.sources.values() if source.key in used]
     if cited:
         lines += ["", "Sources", *pairs(((source.key, reference(source)) for source in cited), indent=2)]
     return "\n".join(lines)
-
-
-def _sources(sources: Any) -> Iterable[Source]:
-    found: Iterable[Source] = sources.values() if isinstance(sources, Mapping) else sources
-    return found
 
 
 def _row(entry: Entry) -> tuple[str, ...]:

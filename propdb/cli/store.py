@@ -46,9 +46,7 @@ def rebuild(call: Call) -> None:
     """Bring in the data of this version again; what you added or decided stays."""
     from propdb.cli.storetext import info_text
 
-    found = call.store.store_rebuild(note)
-    if found is not None:
-        write(info_text(found))
+    write(info_text(call.store.store_rebuild(note)))
 
 
 @verb(app, "propdb store backup my-backup.db", without=("as_of", "json"))

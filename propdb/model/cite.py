@@ -8,7 +8,7 @@ from typing import Any, Final
 from propdb.errors import InvalidInput
 from propdb.model.records import Source
 
-__all__ = ["FORMATS", "bibtex", "cite", "csl", "text"]
+__all__ = ["FORMATS", "bibtex", "cite", "csl", "csl_json", "text"]
 
 FORMATS: Final = ("text", "bibtex", "csl-json")
 
@@ -61,7 +61,7 @@ def cite(source: Source, format: str = "text") -> str:
     if format == "bibtex":
         return bibtex(source)
     if format == "csl-json":
-        return json.dumps([csl(source)], indent=2, ensure_ascii=False)
+        return csl_json(source)
     raise InvalidInput(f"there is no citation format {format!r}", hint=f"choose one of {', '.join(FORMATS)}")
 
 
@@ -114,6 +114,11 @@ def bibtex(source: Source) -> str:
     }
     body = "".join(f"  {key} = {{{value}}},\n" for key, value in rows.items() if value)
     return f"@{kind}{{{source.key},\n{body}}}"
+
+
+def csl_json(source: Source) -> str:
+    """Write a CSL-JSON bibliography of one item."""
+    return json.dumps([csl(source)], indent=2, ensure_ascii=False)
 
 
 def csl(source: Source) -> dict[str, Any]:
