@@ -1,0 +1,169 @@
+"""What people add: own entries, species, sources, datums and policy."""
+
+# ruff: noqa: S608 - what is put into SQL texts here are constants of this package; every value is bound
+from __future__ import annotations
+
+import os
+import sqlite3
+from collections.abc import Iterator, Mapping, Sequence
+from contextlib import closing, contextmanager
+from dataclasses import replace
+from typing import Any
+
+from propdb.errors import InvalidInput, NotFound
+from propdb.model.records import Carrier, Entry, Source, Species
+from propdb.store import log
+from propdb.store.content import Member, canonical, entry_id, hashed_row, identity, row_id, validate_entry
+from propdb.store.migrate import immediate
+from propdb.store.open import mapped, open_store, path_of
+from propdb.store.rows import species_of, species_row
+from propdb.store.write import insert_species, put_bodies, put_entries, put_sources, set_names, settle_species
+
+__all__ = ["add_own", "add_own_all", "put_own"]
+
+Target = sqlite3.Connection | str | os.PathLike[str]
+
+
+@contextmanager
+def _writing(target: Target) -> Iterator[sqlite3.Connection]:
+    """One IMMEDIATE transaction on an open connection or on the store at a path."""
+    if isinstance(target, sqlite3.Connection):
+        with mapped(path_of(target)), immediate(target):
+            yield target
+    else:
+        with closing(open_store(target, write=True)) as conn, mapped(target), immediate(conn):
+            yield conn
+
+
+def add_own(target: Target, entry: Entry, carrier: Carrier, who: str, *, comment: str = "") -> str:
+    """Add one own entry, with a ``created`` event; its status is draft until another event. Its id.
+
+    As :func:`add_own_all`.
+    """
+    return add_own_all(target, [(entry, carrier)], who, comment=comment)[0]
+
+
+def add_own_all(
+    target: Target,
+    entries: Sequence[tuple[Entry, Carrier]],
+    who: str,
+    *,
+    species: Sequence[Species] = (),
+    sources: Sequence[Source] = (),
+    comment: str = "",
+) -> tuple[str, ...]:
+    """Add own entries, and the species and sources that they need: all or nothing.
+
+    Parameters
+    ----------
+    target : connection or path
+        A connection opened for writing; its open transaction is joined.
+    entries : sequence of (Entry, Carrier)
+        ``entry.id`` may be "" (it is set here); ``species`` a primary name; ``status`` is ignored.
+    who : str
+        Who adds them.
+    species, sources : sequences
+        Own ones, added or replaced first.
+    comment : str
+        For the ``created`` events.
+
+    Returns
+    -------
+    tuple of str
+        Entry ids. An entry that is there already as own is left as it is, without a further event.
+
+    Raises
+    ------
+    NotFound
+        No such species or source.
+    InvalidInput
+        As :func:`propdb.store.content.validate_entry`.
+    StoreError, StoreBusy, StoreReadOnly
+    """
+    with _writing(target) as conn:
+        _put(conn, species, sources, {}, {})
+        ids = []
+        for entry, carrier in entries:
+            number, one = _species_row(conn, entry.species)
+            entry = replace(entry, status="draft", id=entry.id or entry_id(entry, one))
+            validate_entry(entry, one)
+            if (
+                conn.execute("SELECT 1 FROM source WHERE key = ? AND (own OR active)", (entry.source,)).fetchone()
+                is None
+            ):
+                hint = "add the source first"
+                raise NotFound(f"no source {entry.source!r}", where=f"entry of {entry.species}", hint=hint)
+            ids.append(_add(conn, number, one, entry, carrier, who, comment))
+    return tuple(ids)
+
+
+def _add(
+    conn: sqlite3.Connection, number: int, species: Species, entry: Entry, carrier: Carrier, who: str, comment: str
+) -> str:
+    if entry.id != row_id(identity(species), hashed_row(entry)):  # pragma: no cover - validate_entry has refused it
+        raise InvalidInput("the id is not that of its fields", where=f"entry {entry.id}")
+    member = Member(entry, "draft", entry.note, entry.printed, list(dict.fromkeys((*entry.carriers, carrier))))
+    row = put_entries(conn, [member], {species.name: species})[entry.id]
+    if conn.execute("SELECT 1 FROM base_entry WHERE entry = ? AND own = 1", (row,)).fetchone() is None:
+        event = log.append(conn, "created", entry=entry.id, who=who, comment=comment)
+        conn.execute(
+            "INSERT INTO base_entry (species, base, entry, own, status, note, printed)"
+            " VALUES (?, ?, ?, 1, 'draft', ?, ?)",
+            (number, event.seq, row, entry.note, int(entry.printed)),
+        )
+    return entry.id
+
+
+def _species_row(conn: sqlite3.Connection, name: str) -> tuple[int, Species]:
+    found = next(species_of(conn, "name = ? AND (own = 1 OR active = 1)", (name,)), None)
+    if found is None:
+        raise NotFound(f"no species {name!r}", hint="give the primary name, or add the species first")
+    return found
+
+
+def put_own(
+    target: Target,
+    *,
+    species: Sequence[Species] = (),
+    sources: Sequence[Source] = (),
+    datums: Mapping[str, Mapping[str, Any]] | None = None,
+    policy: Mapping[str, Any] | None = None,
+) -> None:
+    """Add or replace own species, sources, datums and policy. They stand before the base's of the same name or key.
+
+    Raises
+    ------
+    InvalidInput, StoreError, StoreBusy, StoreReadOnly
+    """
+    with _writing(target) as conn:
+        _put(conn, species, sources, datums or {}, policy or {})
+
+
+def _put(
+    conn: sqlite3.Connection,
+    species: Sequence[Species],
+    sources: Sequence[Source],
+    datums: Mapping[str, Mapping[str, Any]],
+    policy: Mapping[str, Any],
+) -> None:
+    if not (species or sources or datums or policy):
+        return
+    from sqlite_utils import Database
+
+    db = Database(conn, execute_plugins=False)
+    put_sources(db, sources, own=1)
+    put_bodies(db, "datum", "name", "body", {name: canonical(body) for name, body in datums.items()}, own=1)
+    put_bodies(db, "policy", "key", "value", {key: canonical(value) for key, value in policy.items()}, own=1)
+    for one in species:
+        row = species_row(one)
+        old = conn.execute(
+            "SELECT id FROM species WHERE own = 1 AND (identity = ? OR name = ?)", (row["identity"], one.name)
+        ).fetchone()
+        if old is None:
+            insert_species(db, [(one, row)], own=1)
+        else:
+            sets = ", ".join(f"{column} = :{column}" for column in row)
+            conn.execute(f"UPDATE species SET {sets} WHERE id = :id", {**row, "id": old[0]})
+            set_names(conn, [(old[0], one)])
+    if species:
+        settle_species(conn)

@@ -1,0 +1,322 @@
+"""Building the base of a store: one IMMEDIATE transaction that adds and never takes away."""
+
+# ruff: noqa: S608 - what is put into SQL texts here are constants of this package; every value is bound
+from __future__ import annotations
+
+import os
+import sqlite3
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
+from contextlib import closing
+from dataclasses import dataclass
+from itertools import islice
+from typing import TYPE_CHECKING, Any
+
+from propdb.model.records import Carrier, Source, Species
+from propdb.store import log
+from propdb.store.content import (
+    HASHED,
+    Content,
+    Member,
+    canonical,
+    content_hash,
+    entry_id,
+    hashed_row,
+    identity,
+    members,
+    validate,
+    with_id,
+)
+from propdb.store.migrate import immediate
+from propdb.store.open import mapped, open_store
+from propdb.store.rows import name_rows, source_row, species_row
+
+if TYPE_CHECKING:
+    from sqlite_utils import Database
+
+__all__ = ["BuildReport", "Content", "build", "content_hash", "entry_id", "members", "with_id"]
+
+Progress = Callable[[str, int, int], None]
+
+_CHUNK = 5000
+
+
+@dataclass(frozen=True, slots=True)
+class BuildReport:
+    """What a build did."""
+
+    changed: bool  # False: the store held this content already
+    content_hash: str
+    base: int  # seq of the base event
+    entries: int  # in the base
+    entries_added: int
+    entries_inactive: int  # in the base before, and not in this one
+    species: int
+    species_added: int
+    species_changed: int
+    sources_changed: int  # added or changed
+
+
+def build(
+    path: str | os.PathLike[str],
+    content: Content,
+    *,
+    versions: Mapping[str, str],
+    progress: Progress | None = None,
+    timeout: float = 60.0,
+) -> BuildReport:
+    """Make ``content`` the base of the store at ``path``, which is created where there is none.
+
+    Adds missing species, sources and entries, replaces rows of the base that changed, records which entries the base
+    holds and appends one ``base`` event. No entry, event or own data is deleted or altered; entries that the base
+    lacks become inactive. Nothing at all is changed where the store holds this content already. All in one
+    transaction: a kill at any point leaves the store as it was, and two builds at once follow each other.
+
+    Parameters
+    ----------
+    path : path
+    content : Content
+    versions : mapping
+        Package to version, kept in the base event.
+    progress : callable, optional
+        Called with (what, done, total).
+    timeout : float
+        How long to wait for another writer [s].
+
+    Raises
+    ------
+    InvalidInput, NotFound
+        A content that contradicts itself; nothing has been written.
+    StoreError, StoreBusy, StoreReadOnly
+    """
+    tell: Progress = progress or (lambda what, done, total: None)
+    tell("checking", 0, len(content.entries))
+    held = validate(content)
+    digest = content_hash(content)
+    with closing(open_store(path, write=True, create=True, timeout=timeout)) as conn, mapped(path):
+        with immediate(conn):
+            before = log.last_base(conn)
+            if before is not None and before.payload.get("content_hash") == digest:
+                return BuildReport(False, digest, before.seq, len(held), 0, 0, len(content.species), 0, 0, 0)
+            report = _write(conn, content, held, digest, versions, before, tell)
+        conn.execute("PRAGMA optimize")
+        tell("writing", len(held), len(held))
+    return report
+
+
+def _write(
+    conn: sqlite3.Connection,
+    content: Content,
+    held: Mapping[str, Member],
+    digest: str,
+    versions: Mapping[str, str],
+    before: log.Event | None,
+    tell: Progress,
+) -> BuildReport:
+    from sqlite_utils import Database
+
+    db = Database(conn, execute_plugins=False)
+    sources_changed = put_sources(db, content.sources, own=0)
+    put_bodies(db, "datum", "name", "body", {name: canonical(body) for name, body in content.datums.items()}, own=0)
+    put_bodies(db, "policy", "key", "value", {key: canonical(value) for key, value in content.policy.items()}, own=0)
+    rows, added, changed = _put_base_species(db, content.species)
+    entries_before = conn.execute("SELECT count(*) FROM entry").fetchone()[0]
+    numbers = put_entries(conn, list(held.values()), {s.name: s for s in content.species}, tell)
+    payload = {
+        "content_hash": digest,
+        "versions": dict(versions),
+        "entries": len(held),
+        "species": len(content.species),
+    }
+    event = log.append(conn, "base", who="propdb", payload=payload)
+    conn.executemany(
+        "INSERT INTO base_entry (species, base, entry, own, status, note, printed) VALUES (?, ?, ?, 0, ?, ?, ?)",
+        sorted(
+            (rows[m.entry.species], event.seq, numbers[number], m.status, m.note, int(m.printed))
+            for number, m in held.items()
+        ),
+    )
+    inactive = 0
+    if before is not None:
+        inactive = conn.execute(
+            "SELECT count(*) FROM base_entry b WHERE b.base = ? AND NOT EXISTS"
+            " (SELECT 1 FROM base_entry c WHERE c.entry = b.entry AND c.base = ?)",
+            (before.seq, event.seq),
+        ).fetchone()[0]
+    entries_added = conn.execute("SELECT count(*) FROM entry").fetchone()[0] - entries_before
+    return BuildReport(
+        True,
+        digest,
+        event.seq,
+        len(held),
+        entries_added,
+        inactive,
+        len(content.species),
+        added,
+        changed,
+        sources_changed,
+    )
+
+
+def put_sources(db: Database, sources: Sequence[Source], *, own: int) -> int:
+    """Insert or replace sources; with ``own=0`` those that are not listed become inactive. How many changed."""
+    old = {source.key: source_row(source) | {"lineage": source.lineage} for source in _stored_sources(db.conn, own)}
+    changed = [s for s in sources if old.get(s.key) != source_row(s) | {"lineage": tuple(map(tuple, s.lineage))}]
+    db.table("source_key").insert_all(({"key": s.key} for s in sources), ignore=True)
+    if changed:
+        db.table("source").upsert_all([{**source_row(s), "own": own, "active": 1} for s in changed], pk=("key", "own"))
+    for source in changed:
+        db.table("lineage").delete_where("source = ? AND own = ?", [source.key, own])
+        db.table("lineage").insert_all(
+            {"source": source.key, "own": own, "position": i, "copies": copies, "evidence": evidence}
+            for i, (copies, evidence) in enumerate(source.lineage)
+        )
+    if not own:
+        _deactivate(db, "source", "key", {s.key for s in sources})
+    return len(changed)
+
+
+def _stored_sources(conn: sqlite3.Connection, own: int) -> Iterator[Source]:
+    from propdb.store.rows import sources_of
+
+    return sources_of(conn, "own = ? AND active = 1", (own,))
+
+
+def put_bodies(db: Database, table: str, key: str, body: str, texts: Mapping[str, str], *, own: int) -> None:
+    """Insert or replace datums or policy; with ``own=0`` those that are not listed become inactive."""
+    old = dict(db.conn.execute(f"SELECT {key}, {body} FROM {table} WHERE own = ? AND active = 1", (own,)))
+    rows = [{key: k, "own": own, "active": 1, body: text} for k, text in texts.items() if old.get(k) != text]
+    if rows:
+        db.table(table).upsert_all(rows, pk=(key, "own"))
+    if not own:
+        _deactivate(db, table, key, set(texts))
+
+
+def _deactivate(db: Database, table: str, key: str, kept: set[str]) -> None:
+    present = {row[0] for row in db.conn.execute(f"SELECT {key} FROM {table} WHERE own = 0 AND active = 1")}
+    db.conn.executemany(
+        f"UPDATE {table} SET active = 0 WHERE own = 0 AND {key} = ?", [(k,) for k in sorted(present - kept)]
+    )
+
+
+def _put_base_species(db: Database, species: Sequence[Species]) -> tuple[dict[str, int], int, int]:
+    """Bring the base's species up to ``species``: (name to row id, how many are new, how many changed).
+
+    A row is the same species by identity; failing that by name, when the identity that it had is gone (a CAS RN was
+    added or corrected), so that own entries stay with it.
+    """
+    conn = db.conn
+    columns = [*species_row(species[0]), "active"] if species else ["identity", "name", "active"]
+    stored = {
+        row[0]: dict(zip(columns, row[1:], strict=True))
+        for row in conn.execute(f"SELECT id, {', '.join(columns)} FROM species WHERE own = 0")
+    }
+    by_identity = {row["identity"]: number for number, row in stored.items()}
+    wanted = [(s, species_row(s) | {"active": 1}) for s in species]
+    identities = {row["identity"] for _, row in wanted}
+    free = {row["name"]: number for number, row in stored.items() if row["identity"] not in identities}
+
+    rows: dict[str, int] = {}
+    new: list[tuple[Species, dict[str, Any]]] = []
+    changed: list[tuple[int, Species, dict[str, Any]]] = []
+    for one, row in wanted:
+        number = by_identity.get(row["identity"])
+        if number is None:
+            number = free.pop(one.name, None)
+        if number is None:
+            new.append((one, row))
+            continue
+        rows[one.name] = number
+        if stored[number] != row:
+            changed.append((number, one, row))
+    gone = [number for number, row in stored.items() if row["active"] and number not in set(rows.values())]
+    # Names may move from one species to another: set all aside before any is set anew.
+    aside = [(number,) for number in (*gone, *(number for number, _, _ in changed))]
+    conn.executemany("UPDATE species SET active = 0 WHERE id = ?", aside)
+    conn.executemany(
+        "UPDATE species SET identity = 'aside ' || id WHERE id = ?", [(number,) for number, _, _ in changed]
+    )
+    if changed:
+        sets = ", ".join(f"{column} = :{column}" for column in columns)
+        conn.executemany(
+            f"UPDATE species SET {sets} WHERE id = :id", [{**row, "id": number} for number, _, row in changed]
+        )
+    rows |= insert_species(db, new, own=0)
+    set_names(conn, [(number, one) for number, one, _ in changed])
+    settle_species(conn)
+    return rows, len(new), len(changed)
+
+
+def insert_species(db: Database, new: Sequence[tuple[Species, Mapping[str, Any]]], *, own: int) -> dict[str, int]:
+    """Insert species with their names: name to row id."""
+    conn = db.conn
+    start = conn.execute("SELECT coalesce(max(id), 0) + 1 FROM species").fetchone()[0]
+    rows = {one.name: start + i for i, (one, _) in enumerate(new)}
+    db.table("species").insert_all(
+        {"id": rows[one.name], "canon": rows[one.name], "own": own, "active": 1, **row} for one, row in new
+    )
+    _insert_names(conn, ((rows[one.name], *name) for one, _ in new for name in sorted(name_rows(one))))
+    return rows
+
+
+def _insert_names(conn: sqlite3.Connection, rows: Iterable[tuple[int, str, str, str]]) -> None:
+    conn.executemany("INSERT INTO name (species, kind, folded, text) VALUES (?, ?, ?, ?)", rows)
+
+
+def set_names(conn: sqlite3.Connection, species: Iterable[tuple[int, Species]]) -> None:
+    """Make the names of species what their records say."""
+    for number, one in species:
+        sql = "SELECT kind, folded, text, num FROM name WHERE species = ?"
+        old = {row[:3]: row[3] for row in conn.execute(sql, (number,))}
+        new = name_rows(one)
+        conn.executemany("DELETE FROM name WHERE num = ?", [(num,) for row, num in old.items() if row not in new])
+        _insert_names(conn, ((number, *row) for row in sorted(new - old.keys())))
+
+
+def settle_species(conn: sqlite3.Connection) -> None:
+    """Say for each row of ``species`` which row stands for it.
+
+    The user's row stands for the base's rows with its identity or name; the base's present row stands for one that the
+    base no longer holds, where they share the name.
+    """
+    conn.execute("UPDATE species SET canon = id WHERE canon <> id")
+    same = "FROM species t WHERE t.id <> species.id AND (t.identity = species.identity OR t.name = species.name)"
+    conn.execute(
+        f"UPDATE species SET canon = (SELECT t.id {same} AND t.active = 1 ORDER BY t.id LIMIT 1)"
+        f" WHERE own = 0 AND active = 0 AND EXISTS (SELECT 1 {same} AND t.active = 1)"
+    )
+    for number, mark, name in conn.execute(
+        "SELECT id, identity, name FROM species WHERE own = 1 ORDER BY id"
+    ).fetchall():
+        conn.execute("UPDATE species SET canon = ? WHERE own = 0 AND (identity = ? OR name = ?)", (number, mark, name))
+
+
+def put_entries(
+    conn: sqlite3.Connection, held: Sequence[Member], species: Mapping[str, Species], tell: Progress | None = None
+) -> dict[str, int]:
+    """Insert entries that are missing, and carriers: entry id to row number."""
+    columns = ("id", "identity", *(f'"{name}"' for name in HASHED))
+    sql = f"INSERT OR IGNORE INTO entry ({', '.join(columns)}) VALUES ({', '.join('?' * len(columns))})"
+    marks = {name: identity(one) for name, one in species.items()}
+    done = 0
+    todo = iter(held)
+    while chunk := list(islice(todo, _CHUNK)):
+        conn.executemany(sql, ((m.entry.id, marks[m.entry.species], *hashed_row(m.entry)) for m in chunk))
+        done += len(chunk)
+        if tell is not None:
+            tell("writing", done, len(held))
+    numbers: dict[str, int]
+    if len(held) < 100:
+        find = "SELECT num FROM entry WHERE id = ?"
+        numbers = {m.entry.id: conn.execute(find, (m.entry.id,)).fetchone()[0] for m in held}
+    else:
+        numbers = dict(conn.execute("SELECT id, num FROM entry"))
+    conn.executemany(
+        "INSERT OR IGNORE INTO carrier (entry, package, version, file, row, how) VALUES (?, ?, ?, ?, ?, ?)",
+        (_carrier_row(numbers[m.entry.id], carrier) for m in held for carrier in m.carriers),
+    )
+    return numbers
+
+
+def _carrier_row(number: int, carrier: Carrier) -> tuple[Any, ...]:
+    row = -1 if carrier.row is None else carrier.row
+    return (number, carrier.package, carrier.version, carrier.file, row, carrier.how)
