@@ -15,7 +15,7 @@ app = family("List, show and add datums.")
 @verb(app, "propdb datum list", name="list")
 def list_(call: Call) -> None:
     """List the datums: what each calls zero."""
-    from propdb.cli.sheets import datum_dict, datums_text
+    from propdb.cli.datumtext import datum_dict, datums_text
 
     found = call.store.datum_list()
     call.show(lambda: {"datums": [datum_dict(datum) for datum in found]}, lambda: datums_text(found))
@@ -27,7 +27,7 @@ def show(
     name: Annotated[str, typer.Argument(metavar="DATUM", help="Name, or in place: own:l@65C.", show_default=False)],
 ) -> None:
     """Show what a datum calls zero, in plain words and in full."""
-    from propdb.cli.sheets import datum_dict, datum_text
+    from propdb.cli.datumtext import datum_dict, datum_text
 
     datum = call.store.datum_show(name)
     call.show(lambda: datum_dict(datum), lambda: datum_text(datum))

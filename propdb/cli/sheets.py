@@ -2,17 +2,18 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from types import MappingProxyType
 from typing import TYPE_CHECKING, Any, Final
 
-from propdb.cli.text import columns, pairs
+from propdb.cli.equationtext import equation_lines
+from propdb.cli.text import columns, kelvin, pairs
 from propdb.errors import UnitError
 from propdb.model.cite import text as reference
-from propdb.units import format_number, format_pressure, format_temperature, parse_heat_capacity_unit, parse_unit
+from propdb.units import format_number, parse_heat_capacity_unit, parse_unit
 
 if TYPE_CHECKING:
-    from propdb.model.records import Datum, Entry, Source, Species, ZeroState
+    from propdb.model.records import Entry, Species
     from propdb.model.sheet import SpeciesSheet
     from propdb.store.search import Match
 
@@ -92,7 +93,7 @@ def sheet_text(sheet: SpeciesSheet) -> str:
             shown = entry.quantity
             lines += ["", f"{shown}: {QUANTITY_WORDS.get(shown, shown)}"]
         lines.append(line)
-        lines += [f"      {text}" for text in coefficient_lines(entry)]
+        lines += [f"      {text}" for text in _equation(entry)]
     used = {entry.source for entry in sheet.entries}
     cited = [source for source in sheet.sources.values() if source.key in used]
     if cited:
@@ -126,14 +127,10 @@ def phase_text(entry: Entry) -> str:
 def at_text(entry: Entry) -> str:
     """Temperature of a constant, range of an equation."""
     if entry.equation and entry.tmin is not None and entry.tmax is not None:
-        return f"{_kelvin(entry.tmin)} to {_kelvin(entry.tmax)} K"
+        return f"{kelvin(entry.tmin)} to {kelvin(entry.tmax)} K"
     if entry.temperature is not None:
-        return f"{_kelvin(entry.temperature)} K"
+        return f"{kelvin(entry.temperature)} K"
     return ""
-
-
-def _kelvin(temperature: float) -> str:
-    return format_temperature(temperature, decimals=3).removesuffix(" K")
 
 
 def uncertainty_text(entry: Entry) -> str:
@@ -173,21 +170,8 @@ def _factor(entry: Entry) -> float | None:
     return None
 
 
-def coefficient_lines(entry: Entry) -> list[str]:
-    """The coefficients of an equation, as they stand in the store."""
-    if not entry.equation:
-        return []
-    return [f"{name}: {_value(value)}" for name, value in entry.params.items()]
-
-
-def _value(value: Any) -> str:
-    if isinstance(value, float):
-        return f"{value:.12g}"
-    if isinstance(value, Mapping):
-        return ", ".join(f"{key} {_value(item)}" for key, item in value.items())
-    if isinstance(value, (list, tuple)):
-        return " ".join(_value(item) for item in value)
-    return str(value)
+def _equation(entry: Entry, *, full: bool = False) -> list[str]:
+    return equation_lines(entry.equation, entry.params, full=full) if entry.equation else []
 
 
 def entry_dict(entry: Entry) -> dict[str, Any]:
@@ -272,7 +256,7 @@ def entry_text(entry: Entry) -> str:
         ("at", at_text(entry)),
         ("as printed" if entry.printed else "as carried", carried),
         ("value", value),
-        ("coefficients", "\n".join(coefficient_lines(entry))),
+        ("coefficients", "\n".join(_equation(entry, full=True))),
         ("uncertainty", uncertainty_text(entry)),
         ("datum", entry.datum),
         ("conditions", entry.conditions),
@@ -283,145 +267,3 @@ def entry_text(entry: Entry) -> str:
         ("note", entry.note),
     ]
     return "\n".join(pairs(rows))
-
-
-def source_dict(source: Source) -> dict[str, Any]:
-    """A source as data."""
-    return {
-        "key": source.key,
-        "title": source.title,
-        "authors": source.authors,
-        "year": source.year,
-        "kind": source.kind,
-        "class": source.cls,
-        **{name: text for name, text in source.fields.items() if text},
-        "terms": source.terms,
-        "carrier": source.carrier,
-        "standard_pressure": source.standard_pressure,
-        "note": source.note,
-        "lineage": [{"copies": copies, "evidence": evidence} for copies, evidence in source.lineage],
-    }
-
-
-def sources_text(sources: Iterable[Source]) -> str:
-    """Sources, one a line."""
-    rows = [("key", "class", "year", "title")]
-    rows += [(source.key, source.cls, str(source.year or ""), source.title) for source in sources]
-    return "\n".join(columns(rows))
-
-
-def source_text(source: Source) -> str:
-    """One source in full."""
-    rows = [
-        ("source", source.key),
-        ("reference", reference(source)),
-        ("kind", source.kind),
-        ("class", source.cls),
-        ("standard pressure", format_pressure(source.standard_pressure)),
-        ("terms", source.terms),
-        ("carrier", source.carrier),
-        ("copies", "\n".join(f"{copies}: {evidence}" for copies, evidence in source.lineage)),
-        ("note", source.note),
-    ]
-    return "\n".join(pairs(rows))
-
-
-def datum_dict(datum: Datum) -> dict[str, Any]:
-    """A datum as data."""
-    own = datum.kind == "own"
-    found: dict[str, Any] = {
-        "name": datum.name,
-        "kind": datum.kind,
-        "sentence": datum.sentence,
-        "source": datum.source,
-        "temperature": datum.temperature,
-        "standard_pressure": datum.standard_pressure,
-        "inline": datum.inline,
-        "note": datum.note,
-    }
-    if own:
-        found |= {
-            "zero": datum.zero,
-            "species": datum.per_species,
-            "only_these_species": datum.only,
-            "h0": datum.h0,
-            "h0_unit": datum.h0_unit,
-            "internal_energy": datum.internal_energy,
-        }
-    elif datum.kind == "elements":
-        found["forms"] = {
-            element: [{"up_to": None if upper == float("inf") else upper, "zero": zero} for upper, zero in schedule]
-            for element, schedule in datum.schedule.items()
-        }
-    else:
-        found["basis"] = datum.basis
-    return found
-
-
-_KIND_WORDS: Final = {
-    "own": "own state: the species itself is zero",
-    "elements": "elements: each element is zero",
-    "basis": "basis species: each of them is zero",
-}
-
-
-def datums_text(datums: Iterable[Datum]) -> str:
-    """Datums by kind, one a line with its sentence."""
-    found = list(datums)
-    lines: list[str] = []
-    for kind, words in _KIND_WORDS.items():
-        members = [(datum.name, datum.sentence) for datum in found if datum.kind == kind]
-        if members:
-            lines += ["", words, *pairs(members, indent=2)]
-    return "\n".join(lines[1:])
-
-
-def datum_text(datum: Datum) -> str:
-    """One datum in full."""
-    fixed = "internal energy" if datum.internal_energy else "enthalpy"
-    own = datum.kind == "own"
-    rows = [
-        ("datum", datum.name),
-        ("says", datum.sentence),
-        ("kind", _KIND_WORDS[datum.kind]),
-        ("zero", zero_text(datum.zero) if datum.zero is not None and not datum.only else ""),
-        (fixed if own else "", f"{datum.h0:g} {datum.h0_unit} in that state" if own else ""),
-        ("only for" if datum.only else "except", _zeros((name, zero) for name, zero in datum.per_species.items())),
-        ("forms", "\n".join(_schedule(datum)) if datum.kind == "elements" else ""),
-        ("basis species", _zeros((zero.species, zero) for zero in datum.basis)),
-        ("standard pressure", "" if own else format_pressure(datum.standard_pressure)),
-        ("source", datum.source),
-        ("note", datum.note),
-    ]
-    return "\n".join(pairs(rows))
-
-
-def _zeros(states: Iterable[tuple[str, ZeroState]]) -> str:
-    return "\n".join(f"{name}: {zero_text(zero)}" for name, zero in states)
-
-
-def _schedule(datum: Datum) -> list[str]:
-    lines = []
-    for element, schedule in datum.schedule.items():
-        spans = []
-        for upper, zero in schedule:
-            where = f" up to {_kelvin(upper)} K" if upper != float("inf") else ""
-            spans.append(f"{zero.species} {zero.phase}{f' ({zero.form})' if zero.form else ''}{where}")
-        lines.append(f"{element}: {', then '.join(spans)}")
-    return lines
-
-
-def zero_text(zero: ZeroState) -> str:
-    """A state named by a datum in words."""
-    parts = [f"{zero.phase} ({zero.form})" if zero.form else zero.phase]
-    if zero.saturated:
-        parts.append(f"saturated {zero.saturated}")
-    if zero.temperature == "same":
-        parts.append("the temperature of the state")
-    elif zero.temperature == "boiling":
-        parts.append("its normal boiling point")
-    else:
-        parts.append(f"{_kelvin(zero.temperature)} K")
-    if zero.pressure is not None:
-        parts.append(format_pressure(zero.pressure))
-    return ", ".join(parts)

@@ -15,7 +15,7 @@ Key = Annotated[str, typer.Argument(metavar="KEY", help="Key of the source; prop
 @verb(app, "propdb source list", name="list")
 def list_(call: Call) -> None:
     """List the sources with their keys."""
-    from propdb.cli.sheets import source_dict, sources_text
+    from propdb.cli.sourcetext import source_dict, sources_text
 
     found = call.store.source_list()
     call.show(lambda: {"sources": [source_dict(source) for source in found]}, lambda: sources_text(found))
@@ -24,7 +24,7 @@ def list_(call: Call) -> None:
 @verb(app, "propdb source show codata-1989")
 def show(call: Call, key: Key) -> None:
     """Show a source: what it is, its terms, how its numbers reached us, what it copies."""
-    from propdb.cli.sheets import source_dict, source_text
+    from propdb.cli.sourcetext import source_dict, source_text
 
     source = call.store.source_show(key)
     call.show(lambda: source_dict(source), lambda: source_text(source))

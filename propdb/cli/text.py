@@ -43,3 +43,9 @@ def pairs(items: Iterable[tuple[str, str]], *, indent: int = 0) -> list[str]:
         lines.append(f"{' ' * indent}{name.ljust(width)}  {first}")
         lines += [f"{' ' * (indent + width)}  {line}" for line in more]
     return lines
+
+
+def kelvin(temperature: float) -> str:
+    """A temperature [K] without its unit, to a thousandth at most: ``298.15``, ``1000``."""
+    text = f"{temperature:.3f}"
+    return text.rstrip("0").rstrip(".")
