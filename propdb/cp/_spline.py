@@ -1,0 +1,239 @@
+"""The formula of a tabulated heat capacity: a cubic between neighbouring temperatures, integrated in closed form.
+
+Finding the interval of an unsorted temperature by bisection costs more than all the arithmetic. The range is
+therefore also cut into equal cells, each holding its own cubic and quartic; the few cells that a node cuts in two are
+marked with NaN and their temperatures go through bisection.
+"""
+
+from __future__ import annotations
+
+import math
+from bisect import bisect_left
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from propdb.cp._blocks import CP, FloatArray, H, Kind, S, Scratch
+
+__all__ = ["SplineKernel"]
+
+_MAX_CELLS = 512
+# Below this relative width the integral of cp/T is summed as a series: the closed form with its logarithm would lose
+# (width)^-3 to cancellation. 20 terms reach 1e-17 at the limit.
+_SERIES_WIDTH = 1.0 / 16.0
+_SERIES_TERMS = 20
+
+
+class SplineKernel:
+    """Piecewise cubic cp with its integrals; see `Kernel` for the methods.
+
+    Parameters
+    ----------
+    edges : ndarray, shape (n + 1,)
+        Ends of the intervals, increasing [K].
+    cubics : ndarray, shape (n, 4)
+        cp = sum(c_k (T - lower edge)^k) [J/mol/K].
+    steps : mapping of edge number to float
+        Enthalpy added at an edge, going up [J/mol].
+    breaks : set of edge numbers
+        Edges where cp or h is discontinuous.
+    h0, s0 : float
+        h [J/mol] and s [J/mol/K] at the first edge.
+    """
+
+    __slots__ = ("_args", "_cell_rows", "_cells", "_edges", "_h", "_inner", "_inverse", "_limit", "_rows", "_s")
+
+    def __init__(
+        self,
+        edges: NDArray[np.float64],
+        cubics: NDArray[np.float64],
+        steps: dict[int, float],
+        breaks: frozenset[int],
+        h0: float = 0.0,
+        s0: float = 0.0,
+    ) -> None:
+        self._args = (edges, cubics, steps, breaks, h0, s0)
+        count = len(cubics)
+        self._edges = edges
+        self._inner = edges[1:-1].tolist()
+        self._h = np.zeros((count, 5))  # quartics of h, constant first
+        self._h[:, 1:] = cubics / np.arange(1.0, 5.0)
+        self._s = _entropy_rows(edges, cubics)
+        widths = np.diff(edges)
+        h, s = h0, s0
+        for i in range(count):
+            step = steps.get(i, 0.0)
+            h, s = h + step, s + step / edges[i]
+            self._h[i, 0] = h
+            self._s[i, 0] = s
+            h = _horner(self._h[i].tolist(), float(widths[i]))
+            s = _entropy(self._s[i].tolist(), float(edges[i]), float(widths[i]))
+        self._rows: tuple[list[list[float]], ...] = (cubics.tolist(), self._h.tolist(), self._s.tolist())
+        self._make_cells(breaks)
+
+    def _make_cells(self, breaks: frozenset[int]) -> None:
+        edges, (_, cubics, *_) = self._edges, self._args
+        width = _cell_width(edges)
+        self._inverse = 1.0 / width
+        count = math.ceil(edges[-1] / width) + 1
+        self._limit = float(count) * width
+        by_kind = []
+        for rows in (cubics, self._h):
+            cells = np.full((count, rows.shape[1]), np.nan)
+            for number in range(count):
+                left, right = number * width, (number + 1) * width
+                slack = 1e-12 * right
+                i = int(np.searchsorted(edges, left + slack, side="right")) - 1
+                whole = 0 <= i < len(rows) and right <= edges[i + 1] + slack
+                if whole and not _touches_break(edges, breaks, i, left, right, slack):
+                    cells[number] = _about(rows[i].tolist(), left - float(edges[i]), width)
+            by_kind.append(cells)
+        self._cell_rows: tuple[list[list[float]], ...] = tuple(cells.tolist() for cells in by_kind)
+        # Coefficients in pairs: one look-up of 16 bytes costs what one of 8 bytes does.
+        cp, h = by_kind
+        self._cells = (_pairs(cp), _pairs(h[:, :4])), np.ascontiguousarray(h[:, 4])
+
+    def value(self, kind: Kind, t: float) -> float:
+        if kind != S and t < self._limit:
+            scaled = t * self._inverse
+            number = int(scaled)
+            value = _horner(self._cell_rows[kind][number], scaled - number)
+            if value == value:
+                return value
+        i = bisect_left(self._inner, t)
+        edge = float(self._edges[i])
+        if kind == S:
+            return _entropy(self._rows[S][i], edge, t - edge)
+        return _horner(self._rows[kind][i], t - edge)
+
+    def fill(self, kind: Kind, x: FloatArray, out: FloatArray, scratch: Scratch) -> None:
+        if kind == S or x.size == 0 or float(np.maximum.reduce(x)) >= self._limit:
+            out[...] = self._by_bisection(kind, x)
+            return
+        n = x.size
+        number, top, paired = scratch.gather(n)
+        u, whole = scratch.a(n), scratch.b(n)
+        np.multiply(x, self._inverse, u)
+        np.floor(u, whole)
+        np.copyto(number, whole, casting="unsafe")
+        np.subtract(u, whole, u)
+        ((first, second), quartic) = self._cells[0][kind], self._cells[1]
+        np.take(second, number, out=paired, mode="clip")
+        total = whole
+        if kind == H:
+            np.take(quartic, number, out=top, mode="clip")
+            np.multiply(top, u, total)
+            np.add(total, paired.imag, total)
+            np.multiply(total, u, total)
+        else:
+            np.multiply(paired.imag, u, total)
+        np.add(total, paired.real, total)
+        np.multiply(total, u, total)
+        np.take(first, number, out=paired, mode="clip")
+        np.add(total, paired.imag, total)
+        np.multiply(total, u, total)
+        np.add(total, paired.real, out)
+        (cut,) = np.isnan(out).nonzero()
+        if cut.size:
+            out[cut] = self._by_bisection(kind, x[cut])
+
+    def _by_bisection(self, kind: Kind, x: FloatArray) -> FloatArray:
+        i = np.searchsorted(self._edges[1:-1], x, side="left")
+        edge = self._edges[i]
+        u = x - edge
+        if kind != S:
+            rows = self._args[1] if kind == CP else self._h
+            total = rows[i, -1] * u
+            for column in range(rows.shape[1] - 2, 0, -1):
+                total = (total + rows[i, column]) * u
+            return np.asarray(total + rows[i, 0])
+        rows = self._s
+        total = rows[i, -1] * u
+        for column in range(rows.shape[1] - 2, 1, -1):
+            total = (total + rows[i, column]) * u
+        return np.asarray(rows[i, 0] + rows[i, 1] * np.log1p(u / edge) + total)
+
+    def divides(self, kind: Kind) -> bool:
+        return False
+
+    def shifted(self, dh: float, ds: float) -> SplineKernel:
+        edges, cubics, steps, breaks, h0, s0 = self._args
+        return SplineKernel(edges, cubics, steps, breaks, h0 + dh, s0 + ds)
+
+    def __reduce__(self) -> tuple[Any, ...]:
+        return (SplineKernel, self._args)
+
+
+def _horner(row: list[float], u: float) -> float:
+    total = row[-1]
+    for c in row[-2::-1]:
+        total = total * u + c
+    return total
+
+
+def _entropy(row: list[float], edge: float, u: float) -> float:
+    constant, log_coefficient, *series = row
+    total = series[-1] * u
+    for c in series[-2::-1]:
+        total = (total + c) * u
+    return constant + log_coefficient * float(np.log1p(u / edge)) + total
+
+
+def _entropy_rows(edges: FloatArray, cubics: FloatArray) -> FloatArray:
+    """Rows for the integral of p(u)/(edge + u): constant (0), that of ln(1 + u/edge), those of u, u^2 ..."""
+    rows = np.zeros((len(cubics), 2 + _SERIES_TERMS))
+    for i, cubic in enumerate(cubics.tolist()):
+        edge = float(edges[i])
+        inside = 0 < i < len(cubics) - 1  # the end intervals are also extrapolated, where a series need not converge
+        if inside and (edges[i + 1] - edge) / edge < _SERIES_WIDTH:
+            quotient = 0.0  # power series of p(u)/(edge + u)
+            for k in range(_SERIES_TERMS):
+                quotient = ((cubic[k] if k < 4 else 0.0) - quotient) / edge
+                rows[i, 2 + k] = quotient / (k + 1)
+        else:
+            remainder = 0.0  # p(u) = (u + edge) q(u) + p(-edge)
+            for k in (3, 2, 1):
+                remainder = cubic[k] - edge * remainder
+                rows[i, 1 + k] = remainder / k
+            rows[i, 1] = cubic[0] - edge * remainder
+    return rows
+
+
+def _cell_width(edges: FloatArray) -> float:
+    """The width [K] for which nodes cut the smallest share of the cells."""
+    spacing = np.diff(edges)
+    candidates = {float(edges[-1]) / _MAX_CELLS}
+    for base in (float(np.median(spacing)), float(spacing.min()), float(spacing.max())):
+        candidates |= {base / parts for parts in (1, 2, 4, 5, 8, 10)}
+    best, best_share = math.inf, math.inf
+    for width in sorted(candidates, reverse=True):
+        if edges[-1] / width > _MAX_CELLS:
+            continue
+        place = edges[1:-1] / width
+        cut = np.unique(np.floor(place[np.abs(place - np.round(place)) > 1e-9])).size
+        share = cut * width
+        if share < best_share:
+            best, best_share = width, share
+    return best
+
+
+def _touches_break(edges: FloatArray, breaks: frozenset[int], i: int, left: float, right: float, slack: float) -> bool:
+    # Rounding may put a temperature next to a cell's edge into the neighbouring cell. That is harmless where the
+    # curve is continuous, and wrong at a split.
+    return (i in breaks and left - edges[i] <= slack) or (i + 1 in breaks and edges[i + 1] - right <= slack)
+
+
+def _about(row: list[float], shift: float, width: float) -> list[float]:
+    """Coefficients of the same polynomial in (u - shift)/width."""
+    row = list(row)
+    last = len(row) - 1
+    for k in range(last):
+        for j in range(last - 1, k - 1, -1):
+            row[j] += shift * row[j + 1]
+    return [c * width**k for k, c in enumerate(row)]
+
+
+def _pairs(rows: FloatArray) -> tuple[NDArray[np.complex128], NDArray[np.complex128]]:
+    """Columns 0 and 1, and 2 and 3, as real and imaginary parts."""
+    return rows[:, 0] + 1j * rows[:, 1], rows[:, 2] + 1j * rows[:, 3]

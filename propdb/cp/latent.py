@@ -1,0 +1,269 @@
+"""Latent heats as functions of temperature."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass
+from typing import Any, ClassVar, Protocol, Self, overload, runtime_checkable
+
+import numpy as np
+
+from propdb.cp._base import set_field
+from propdb.cp._blocks import FloatArray, Temperatures, not_a_temperature, refuse, temperatures
+from propdb.cp._params import number, only
+from propdb.errors import EquationError, TemperatureOutOfRange
+
+__all__ = ["ConstantLatent", "LatentHeat", "Watson"]
+
+
+@runtime_checkable
+class LatentHeat(Protocol):
+    """Enthalpy of a transition at the temperatures where both phases are in equilibrium."""
+
+    @property
+    def name(self) -> str:
+        """The name under which the equation is registered."""
+
+    @property
+    def tmin(self) -> float:
+        """Lower end of the range [K]."""
+
+    @property
+    def tmax(self) -> float:
+        """Upper end of the range [K]."""
+
+    def params(self) -> dict[str, Any]:
+        """The stored form, ready for JSON."""
+
+    def covers(self, T: Any) -> Any:
+        """Whether `T` [K] lies in the range, ends included."""
+
+    def dh(self, T: Any) -> Any:
+        """Enthalpy of the transition [J/mol]."""
+
+    def ddh_dT(self, T: Any) -> Any:
+        """Its slope [J/mol/K]."""
+
+
+def _checked(T: float | Temperatures) -> float | FloatArray:
+    if isinstance(T, (int, float)):
+        t = float(T)
+        if not 0.0 < t < math.inf:
+            raise not_a_temperature(t)
+        return t
+    x = temperatures(T)
+    if not np.all((x > 0.0) & (x < math.inf)):
+        refuse(x)
+    return x
+
+
+class _Range:
+    """Range test shared by both equations."""
+
+    __slots__ = ()
+    tmin: float
+    tmax: float
+
+    def covers(self, T: float | Temperatures) -> Any:
+        """Whether `T` [K] lies in the range, ends included; a bool, or an array of the shape of `T`.
+
+        Raises
+        ------
+        TemperatureError
+            If `T` does not hold real numbers.
+        """
+        if isinstance(T, (int, float)):
+            return self.tmin <= T <= self.tmax
+        x = temperatures(T)
+        return (x >= self.tmin) & (x <= self.tmax)
+
+
+@dataclass(frozen=True, slots=True)
+class ConstantLatent(_Range):
+    """The enthalpy of a transition known at one temperature only.
+
+    Parameters
+    ----------
+    value : float
+        Enthalpy of the transition [J/mol].
+    T : float
+        Where it was measured [K]; the range is this temperature alone.
+
+    Raises
+    ------
+    EquationError
+        If a number is not finite or `T` not above 0 K.
+    """
+
+    value: float
+    T: float
+
+    name: ClassVar[str] = "constant-latent"
+
+    def __post_init__(self) -> None:
+        value, t = number(self.value, "dh"), number(self.T, "T")
+        if not t > 0.0:
+            raise EquationError(f"T must be above 0 K, not {t!r}")
+        set_field(self, value=value, T=t)
+
+    @property
+    def tmin(self) -> float:  # type: ignore[override]
+        """Lower end of the range [K]."""
+        return self.T
+
+    @property
+    def tmax(self) -> float:  # type: ignore[override]
+        """Upper end of the range [K]."""
+        return self.T
+
+    @overload
+    def dh(self, T: float) -> float: ...
+    @overload
+    def dh(self, T: Temperatures) -> FloatArray: ...
+    def dh(self, T: float | Temperatures) -> float | FloatArray:
+        """Enthalpy of the transition [J/mol], the same at every `T` [K].
+
+        Raises
+        ------
+        TemperatureError
+            If a temperature is not a finite number above 0 K.
+        """
+        t = _checked(T)
+        return self.value if isinstance(t, float) else np.full(t.shape, self.value)
+
+    @overload
+    def ddh_dT(self, T: float) -> float: ...
+    @overload
+    def ddh_dT(self, T: Temperatures) -> FloatArray: ...
+    def ddh_dT(self, T: float | Temperatures) -> float | FloatArray:
+        """Its slope: 0 [J/mol/K] at every `T` [K].
+
+        Raises
+        ------
+        TemperatureError
+            If a temperature is not a finite number above 0 K.
+        """
+        t = _checked(T)
+        return 0.0 if isinstance(t, float) else np.zeros(t.shape)
+
+    @classmethod
+    def from_params(cls, params: Mapping[str, Any]) -> Self:
+        """From the stored form `{"dh", "T"}`."""
+        only(params, ("dh", "T"))
+        return cls(params["dh"], params["T"])
+
+    def params(self) -> dict[str, Any]:
+        """The stored form, ready for JSON."""
+        return {"dh": self.value, "T": self.T}
+
+
+@dataclass(frozen=True, slots=True)
+class Watson(_Range):
+    """Enthalpy of vaporisation from one known value: dh = dh1 ((Tc - T)/(Tc - T1))^exponent.
+
+    K. M. Watson, Ind. Eng. Chem. 35 (1943).
+
+    Parameters
+    ----------
+    dh1 : float
+        Enthalpy of vaporisation at `T1` [J/mol].
+    T1 : float
+        Where it is known [K].
+    Tc : float
+        Critical temperature [K].
+    exponent : float
+        Watson's 0.38 unless fitted.
+
+    Raises
+    ------
+    EquationError
+        If a number is not finite, 0 < T1 < Tc does not hold, or the exponent is not positive.
+    """
+
+    dh1: float
+    T1: float
+    Tc: float
+    exponent: float = 0.38
+
+    name: ClassVar[str] = "watson"
+
+    def __post_init__(self) -> None:
+        dh1, t1, tc = number(self.dh1, "dh"), number(self.T1, "T1"), number(self.Tc, "Tc")
+        exponent = number(self.exponent, "exponent")
+        if not 0.0 < t1 < tc:
+            raise EquationError(f"T1 = {t1!r} K must lie between 0 K and Tc = {tc!r} K")
+        if not exponent > 0.0:
+            raise EquationError(f"the exponent must be positive, not {exponent!r}")
+        set_field(self, dh1=dh1, T1=t1, Tc=tc, exponent=exponent)
+
+    @property
+    def tmin(self) -> float:  # type: ignore[override]
+        """Lower end of the range [K]: none but zero."""
+        return 0.0
+
+    @property
+    def tmax(self) -> float:  # type: ignore[override]
+        """Upper end of the range [K]: the critical temperature."""
+        return self.Tc
+
+    def _reduced(self, T: float | Temperatures, *, below: bool) -> float | FloatArray:
+        t = _checked(T)
+        gap = (self.Tc - t) / (self.Tc - self.T1)
+        low = float(np.min(gap)) if np.size(gap) else 1.0
+        if low < 0.0 or (below and low == 0.0):
+            hottest = float(np.max(t))
+            raise TemperatureOutOfRange(
+                f"{hottest!r} K is {'at or ' if below else ''}above the critical temperature {self.Tc!r} K",
+                ranges=[(0.0, self.Tc)],
+            )
+        return gap
+
+    @overload
+    def dh(self, T: float) -> float: ...
+    @overload
+    def dh(self, T: Temperatures) -> FloatArray: ...
+    def dh(self, T: float | Temperatures) -> float | FloatArray:
+        """Enthalpy of vaporisation [J/mol] at `T` [K], shape of `T`; 0 at the critical temperature.
+
+        Raises
+        ------
+        TemperatureError
+            If a temperature is not a finite number above 0 K.
+        TemperatureOutOfRange
+            Above the critical temperature.
+        """
+        return self._power(self._reduced(T, below=False), self.dh1, self.exponent)
+
+    @overload
+    def ddh_dT(self, T: float) -> float: ...
+    @overload
+    def ddh_dT(self, T: Temperatures) -> FloatArray: ...
+    def ddh_dT(self, T: float | Temperatures) -> float | FloatArray:
+        """Its slope [J/mol/K] at `T` [K], shape of `T`.
+
+        Raises
+        ------
+        TemperatureError
+            If a temperature is not a finite number above 0 K.
+        TemperatureOutOfRange
+            At or above the critical temperature, where the slope is infinite.
+        """
+        slope = -self.dh1 * self.exponent / (self.Tc - self.T1)
+        return self._power(self._reduced(T, below=True), slope, self.exponent - 1.0)
+
+    @staticmethod
+    def _power(gap: float | FloatArray, factor: float, exponent: float) -> float | FloatArray:
+        # numpy's power for single numbers too, so that both paths agree in every bit.
+        result = factor * np.power(gap, exponent)
+        return float(result) if isinstance(gap, float) else result
+
+    @classmethod
+    def from_params(cls, params: Mapping[str, Any]) -> Self:
+        """From the stored form `{"dh", "T1", "Tc"}`, `"exponent"` if not 0.38."""
+        only(params, ("dh", "T1", "Tc"), ("exponent",))
+        return cls(params["dh"], params["T1"], params["Tc"], params.get("exponent", 0.38))
+
+    def params(self) -> dict[str, Any]:
+        """The stored form, ready for JSON."""
+        return {"dh": self.dh1, "T1": self.T1, "Tc": self.Tc, "exponent": self.exponent}
