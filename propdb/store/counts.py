@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any, Final
 
 from propdb.model.records import USABLE_STATUSES
 from propdb.store.open import SCHEMA
-from propdb.store.read import _LOGGED, _MEMBER
+from propdb.store.view import LOGGED, MEMBER
 
 if TYPE_CHECKING:
     from propdb.store.read import Reader
@@ -20,9 +20,9 @@ __all__ = ["coverage", "info"]
 #: Active entries with their present status, each once (a base's word goes before the user's).
 _ACTIVE: Final = f"""
     SELECT e.num, s.canon AS species, e.quantity, e.phase, e.equation, e.temperature, e.source,
-           coalesce({_LOGGED}, b.status) AS status, min(b.own) AS own
+           coalesce({LOGGED}, b.status) AS status, min(b.own) AS own
     FROM base_entry b JOIN entry e ON e.num = b.entry JOIN species s ON s.id = b.species
-    WHERE {_MEMBER} GROUP BY e.num
+    WHERE {MEMBER} GROUP BY e.num
 """
 _USABLE: Final = ", ".join(f"'{status}'" for status in USABLE_STATUSES)
 

@@ -53,7 +53,7 @@ _TRIGGERS: Final = frozenset(
 
 @dataclass(frozen=True, slots=True)
 class Event:
-    """One line of the log. ``hash`` covers every other field; ``prev`` is that of the event before, "" for the first."""
+    """One line of the log. ``hash`` covers every other field; ``prev`` is that of the one before, "" for the first."""
 
     seq: int
     utc: str  # ISO 8601, UTC, microseconds

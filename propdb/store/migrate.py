@@ -18,7 +18,7 @@ __all__ = ["immediate", "migrate", "migrations", "use_wal"]
 
 @contextlib.contextmanager
 def immediate(conn: sqlite3.Connection) -> Iterator[None]:
-    """One IMMEDIATE transaction: the write lock is taken at the start, not at the first write. An open one is joined."""
+    """One IMMEDIATE transaction: the write lock is taken at the start, not at the first write. Joins an open one."""
     joined = conn.in_transaction
     if joined:
         yield

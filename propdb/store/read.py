@@ -7,35 +7,30 @@ import json
 import os
 import sqlite3
 from collections.abc import Iterator, Mapping
-from contextlib import suppress
 from datetime import date, datetime
-from types import MappingProxyType, TracebackType
-from typing import Any, Final, Self
+from types import MappingProxyType
+from typing import Any, Final
 
-from propdb.errors import Ambiguous, NotFound, PropdbError, StoreError
+from propdb.errors import Ambiguous, NotFound
 from propdb.model.records import Carrier, Entry, Source, Species
-from propdb.store import log
-from propdb.store.open import mapped, open_store, path_of, translate
 from propdb.store.rows import ENTRY_COLUMNS, carrier_from, entry_from, frozen, sources_of, species_of
+from propdb.store.view import LOGGED, MEMBER, View
 
 __all__ = ["Reader"]
 
-#: The status that the log gives an entry, as of seq :limit.
-_LOGGED: Final = "(SELECT v.status FROM event v WHERE v.entry = e.id AND v.status <> '' AND v.seq <= :limit ORDER BY v.seq DESC LIMIT 1)"
-#: What is a member at present: of the base, or own. A base's word on status and note goes before the user's draft.
-_MEMBER: Final = "(b.base = :base OR (b.own = 1 AND b.base <= :limit))"
-_SELECT: Final = (
-    f"SELECT e.num, e.id, b.species, b.status, b.note, b.printed, {_LOGGED}, {ENTRY_COLUMNS}"
-    " FROM base_entry b CROSS JOIN entry e ON e.num = b.entry"
-)
-_AHEAD: Final = 7  # columns of _SELECT before those of the entry
-_CARRIERS: Final = (
-    "SELECT c.entry, c.package, c.version, c.file, c.row, c.how"
-    " FROM base_entry b CROSS JOIN carrier c ON c.entry = b.entry"
+#: Memberships with the rows of ``species`` that list them (s) and that stand for these (t), from either end.
+_BY_SPECIES: Final = "species t CROSS JOIN species s ON s.canon = t.id CROSS JOIN base_entry b ON b.species = s.id"
+_BY_ENTRY: Final = "base_entry b CROSS JOIN species s ON s.id = b.species CROSS JOIN species t ON t.id = s.canon"
+_COLUMNS: Final = f"e.num, e.id, t.name, b.status, b.note, b.printed, {LOGGED}, {ENTRY_COLUMNS}"
+_AHEAD: Final = 7  # columns before those of the entry
+#: A species that the base or the user holds, or that has entries.
+SEEN: Final = (
+    "(active = 1 OR own = 1 OR EXISTS"
+    f" (SELECT 1 FROM species s CROSS JOIN base_entry b ON b.species = s.id WHERE s.canon = species.id AND {MEMBER}))"
 )
 
 
-class Reader:
+class Reader(View):
     """A store as its readers see it: what is active, with its present status.
 
     Parameters
@@ -51,115 +46,29 @@ class Reader:
     ------
     StoreError, StoreBusy
         As :func:`~propdb.store.open.open_store`; ``reason`` is ``empty`` for a store without a base.
-    NotFound
-        No base that old.
+    InvalidInput, NotFound
+        Not a date; no base that old.
 
     Notes
     -----
     Entries are immutable, so each is decoded once per reader. A look-up is repeated from memory only while SQLite says
-    that nothing has been written (``PRAGMA data_version``); so status and notes are always those of now.
+    that nothing has been written (``PRAGMA data_version``), so status and notes are always those of now.
     """
 
     def __init__(
         self, store: str | os.PathLike[str] | sqlite3.Connection, *, as_of: str | date | datetime | None = None
     ) -> None:
-        if isinstance(store, sqlite3.Connection):
-            self.conn, self.path, self._mine = store, path_of(store), False
-        else:
-            self.path, self._mine = os.fspath(store), True
-            self.conn = open_store(store)
         self._decoded: dict[int, Entry] = {}
+        self._carriers: dict[tuple[Any, ...], Carrier] = {}
         self._species: dict[str, Species] = {}
         self._entries: dict[str, tuple[Entry, ...]] = {}
         self._sources: dict[str, Source] = {}
-        self._token: tuple[int, int] | None = None
-        try:
-            with mapped(self.path):
-                self._fixed = None if as_of is None else log.seq_at(self.conn, as_of)
-                self._fresh()
-        except BaseException:
-            self.close()
-            raise
+        super().__init__(store, as_of=as_of)
 
-    def __enter__(self) -> Self:
-        return self
-
-    def __exit__(
-        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
-    ) -> None:
-        self.close()
-
-    def close(self) -> None:
-        """Close the connection, if it was opened here."""
-        if self._mine:
-            with suppress(sqlite3.Error):
-                self.conn.close()
-
-    # -- what is current
-    # ------------------------------------------------------------------------------------------------
-
-    def _fresh(self) -> None:
-        """Forget what was read before the last write, of this connection or of another."""
-        try:
-            token = (self.conn.execute("PRAGMA data_version").fetchone()[0], self.conn.total_changes)
-            if token == self._token:
-                return
-            self._species.clear()
-            self._entries.clear()
-            self._sources.clear()
-            limit = self._fixed
-            if limit is None:
-                limit = self.conn.execute("SELECT max(seq) FROM event").fetchone()[0] or 0
-            base = log.last_base(self.conn, limit)
-        except sqlite3.Error as error:
-            raise self._translated(error) from error
-        if base is None:
-            raise StoreError(
-                "it holds no data yet",
-                where=f"store {self.path}",
-                reason="empty",
-                hint=f"type `propdb store rebuild --store {self.path}`",
-            )
-        self._base = base
-        self._view = {"base": base.seq, "limit": limit}
-        self._token = token
-
-    def _translated(self, error: BaseException) -> PropdbError:
-        return translate(error, self.path) or StoreError(str(error), where=f"store {self.path}")
-
-    def _snapshot(self) -> _Snapshot:
-        """Context in which all reads see one state of the store."""
-        return _Snapshot(self)
-
-    @property
-    def base(self) -> log.Event:
-        """The base event that holds; ``payload`` has ``content_hash`` and ``versions``."""
-        self._fresh()
-        return self._base
-
-    @property
-    def content_hash(self) -> str:
-        """Content hash of the base, SHA-256 in hex."""
-        return str(self.base.payload["content_hash"])
-
-    @property
-    def head(self) -> str:
-        """Hash of the last event (as of the date asked for)."""
-        with self._snapshot():
-            row = self.conn.execute("SELECT hash FROM event WHERE seq = :limit", self._view).fetchone()
-        return str(row[0])
-
-    def events(self, entry: str | None = None) -> tuple[log.Event, ...]:
-        """The log (as of the date asked for), of one entry by its whole id, or all of it."""
-        self._fresh()
-        return log.events(self.conn, entry, limit=self._view["limit"])
-
-    # -- species
-    # --------------------------------------------------------------------------------------------------------
-
-    _SEEN: Final = (
-        f"(active = 1 OR own = 1 OR EXISTS (SELECT 1 FROM base_entry b WHERE b.species = species.id AND {_MEMBER}))"
-    )
+    def _forget(self) -> None:
+        self._species.clear()
+        self._entries.clear()
+        self._sources.clear()
 
     def species(self, name: str) -> Species:
         """The species with this primary name, exactly as written.
@@ -172,10 +81,8 @@ class Reader:
         found = self._species.get(name)
         if found is None:
             with self._snapshot():
-                row = next(
-                    species_of(self.conn, "canon = id AND name = :name AND " + self._SEEN, self._view | {"name": name}),
-                    None,
-                )
+                values = self._view | {"name": name}
+                row = next(species_of(self.conn, f"canon = id AND name = :name AND {SEEN}", values), None)
             if row is None:
                 raise NotFound(f"no species {name!r}", hint="`propdb find` looks for names, formulas and CAS RNs")
             found = self._species[name] = row[1]
@@ -184,14 +91,10 @@ class Reader:
     def all_species(self) -> tuple[Species, ...]:
         """Every species, by name."""
         with self._snapshot():
-            return tuple(one for _, one in species_of(self.conn, "canon = id AND " + self._SEEN, self._view))
-
-    # -- entries
-    # --------------------------------------------------------------------------------------------------------
+            return tuple(one for _, one in species_of(self.conn, f"canon = id AND {SEEN}", self._view))
 
     def entries(self, species: str) -> tuple[Entry, ...]:
-        """The active entries of a species by its primary name, whatever their status; by quantity, phase, form,
-        source, id.
+        """The active entries of a species by its primary name, whatever their status; by quantity, phase, form, source.
 
         Raises
         ------
@@ -202,54 +105,51 @@ class Reader:
         found = self._entries.get(species)
         if found is None:
             with self._snapshot():
-                view = self._view | {"name": species}
-                rows = [
-                    number
-                    for (number,) in self.conn.execute(
-                        "SELECT s.id FROM species c JOIN species s ON s.canon = c.id"
-                        " WHERE c.name = :name AND c.canon = c.id",
-                        view,
-                    )
-                ]
-                found = self._entries_where("b.species = :row", [view | {"row": number} for number in rows], species)
+                found = self._read(_BY_SPECIES, "t.name = :name AND t.canon = t.id", self._view | {"name": species})
             if not found:
                 self.species(species)
             self._entries[species] = found
         return found
 
-    def _entries_where(self, where: str, views: list[dict[str, Any]], species: str | None = None) -> tuple[Entry, ...]:
-        """Entries, of one species or of all, that ``where`` selects, which is SQL of this module."""
+    def _read(self, start: str, where: str, values: Mapping[str, Any]) -> tuple[Entry, ...]:
+        """The active entries that ``where`` selects, starting from ``start``: SQL of this module."""
         execute = self.conn.execute
-        names: dict[int, str] = {}
-        if species is None:
-            names = dict(execute("SELECT s.id, c.name FROM species s JOIN species c ON c.id = s.canon"))
-        carriers: dict[int, list[Carrier]] = {}
+        # A base's word on status and note goes before the user's draft of the same entry: it comes first.
         rows: dict[int, tuple[Any, ...]] = {}
-        for view in views:
-            for number, *rest in execute(f"{_CARRIERS} WHERE {where} AND {_MEMBER}", view):
-                carriers.setdefault(number, []).append(carrier_from(tuple(rest)))
-            for row in execute(f"{_SELECT} WHERE {where} AND {_MEMBER} ORDER BY b.own", view):
-                rows.setdefault(row[0], row)
-        found = [
-            self._entry(
-                row, species if species is not None else names[row[2]], tuple(dict.fromkeys(carriers.get(number, ())))
-            )
-            for number, row in rows.items()
-        ]
+        for row in execute(
+            f"SELECT {_COLUMNS} FROM {start} CROSS JOIN entry e ON e.num = b.entry"
+            f" WHERE {where} AND {MEMBER} ORDER BY b.own",
+            values,
+        ):
+            rows.setdefault(row[0], row)
+        carriers: dict[int, dict[Carrier, None]] = {}
+        known = self._carriers
+        for number, *rest in execute(
+            "SELECT c.entry, c.package, c.version, c.file, c.row, c.how"
+            f" FROM {start} CROSS JOIN carrier c ON c.entry = b.entry WHERE {where} AND {MEMBER}",
+            values,
+        ):
+            key = tuple(rest)
+            carrier = known.get(key)
+            if carrier is None:
+                carrier = known[key] = carrier_from(key)
+            carriers.setdefault(number, {})[carrier] = None
+        found = [self._entry(row, tuple(carriers.get(number, ()))) for number, row in rows.items()]
         found.sort(key=_order)
         return tuple(found)
 
-    def _entry(self, row: tuple[Any, ...], species: str, carriers: tuple[Carrier, ...]) -> Entry:
-        """The record of a row of ``_SELECT``; the one made before where nothing about it has changed."""
-        num, number, _, status, note, printed, logged = row[:_AHEAD]
+    def _entry(self, row: tuple[Any, ...], carriers: tuple[Carrier, ...]) -> Entry:
+        """The record of a row of ``_COLUMNS``; the one made before where nothing about it has changed."""
+        num, number, species, status, note, printed, logged = row[:_AHEAD]
         status = logged or status
         known = self._decoded.get(num)
-        if known is not None:
-            if (known.status, known.note, known.species, known.carriers) == (status, note, species, carriers):
-                return known
-            params: Mapping[str, Any] | None = known.params
-        else:
-            params = None
+        if known is not None and (known.status, known.note, known.species, known.carriers) == (
+            status,
+            note,
+            species,
+            carriers,
+        ):
+            return known
         entry = entry_from(
             number,
             species,
@@ -258,7 +158,7 @@ class Reader:
             status=status,
             note=note,
             carriers=carriers,
-            params=params,
+            params=known.params if known is not None else None,
         )
         self._decoded[num] = entry
         return entry
@@ -274,48 +174,42 @@ class Reader:
             Several ids begin like that.
         """
         wanted = prefix.strip().lower()
-        with self._snapshot():
-            found = (
-                self.conn.execute(
-                    "SELECT num, id FROM entry WHERE id >= ? AND id < ? ORDER BY id LIMIT 6", (wanted, wanted + "g")
-                ).fetchall()
-                if wanted
-                else []
-            )
-            entries = [
-                entry
-                for num, _ in found
-                for entry in self._entries_where("b.entry = :num", [self._view | {"num": num}])
-            ]
+        gone: list[tuple[str]] = []
+        entries: tuple[Entry, ...] = ()
+        if wanted:
+            span = {"low": wanted, "high": wanted + "g"}  # the digits of an id end with f
+            with self._snapshot():
+                numbers = "b.entry IN (SELECT num FROM entry WHERE id >= :low AND id < :high ORDER BY id LIMIT 50)"
+                entries = self._read(_BY_ENTRY, numbers, self._view | span)
+                if not entries:
+                    sql = "SELECT id FROM entry WHERE id >= :low AND id < :high LIMIT 2"
+                    gone = self.conn.execute(sql, span).fetchall()
         if len(entries) == 1:
             return entries[0]
         if entries:
-            ids = [entry.id for entry in entries]
-            raise Ambiguous(
-                f"several entries begin with {prefix!r}: {', '.join(ids[:5])}", hint="type more of it", candidates=ids
-            )
-        if len(found) == 1:
-            raise NotFound(f"the entry {found[0][1]} is not active: the present base no longer holds it")
+            ids = sorted(entry.id for entry in entries)
+            shown = ", ".join(ids[:5])
+            raise Ambiguous(f"several entries begin with {prefix!r}: {shown}", hint="type more of it", candidates=ids)
+        if len(gone) == 1:
+            raise NotFound(f"the entry {gone[0][0]} is not active: the present base no longer holds it")
         raise NotFound(f"no entry {prefix!r}", hint="`propdb show SPECIES` lists ids")
 
     def every_entry(self) -> Iterator[tuple[Species, tuple[Entry, ...]]]:
         """Every species that has active entries, by name, with them; read in a few large selects."""
         with self._snapshot():
-            by_name = {one.name: one for _, one in species_of(self.conn, "canon = id", ())}
-            found = self._entries_where("1", [dict(self._view)])
+            by_name = {one.name: one for _, one in species_of(self.conn, "canon = id")}
+            found = self._read(_BY_ENTRY, "1", self._view)
         by_species: dict[str, list[Entry]] = {}
         for entry in found:
             by_species.setdefault(entry.species, []).append(entry)
-        for name in sorted(by_species):
-            yield by_name[name], tuple(by_species[name])
+        for name, entries in by_species.items():
+            yield by_name[name], tuple(entries)
 
     def entries_of_source(self, key: str) -> tuple[Entry, ...]:
         """The active entries of a source, by species."""
         with self._snapshot():
-            return self._entries_where("e.source = :key", [self._view | {"key": key}])
-
-    # -- sources, datums, policy
-    # ----------------------------------------------------------------------------------------
+            numbers = "b.entry IN (SELECT num FROM entry WHERE source = :key)"
+            return self._read(_BY_ENTRY, numbers, self._view | {"key": key})
 
     def source(self, key: str) -> Source:
         """A source by its key.
@@ -328,7 +222,7 @@ class Reader:
         found = self._sources.get(key)
         if found is None:
             with self._snapshot():
-                # One that the base no longer holds is still cited by older entries: it comes last.
+                # Also one that the base no longer holds: older entries cite it.
                 found = next(sources_of(self.conn, "key = ?", (key,)), None)
             if found is None:
                 raise NotFound(f"no source {key!r}", hint="`propdb source list` lists them")
@@ -343,87 +237,43 @@ class Reader:
                 found.setdefault(source.key, source)
         return tuple(found.values())
 
+    def _bodies(self, table: str, key: str, body: str) -> dict[str, Any]:
+        sql = f"SELECT {key}, {body} FROM {table} WHERE own = 1 OR active = 1 ORDER BY own, {key}"
+        with self._snapshot():
+            rows = self.conn.execute(sql).fetchall()
+        return {name: frozen(json.loads(text)) for name, text in rows}  # the user's come later and win
+
     def datum_rows(self) -> dict[str, Mapping[str, Any]]:
         """Datum name to its definition as it was given, lists as tuples; the user's goes before the base's."""
-        with self._snapshot():
-            rows = self.conn.execute(
-                "SELECT name, body FROM datum WHERE own = 1 OR active = 1 ORDER BY own, name"
-            ).fetchall()
-        return {name: frozen(json.loads(body)) for name, body in rows}
+        return self._bodies("datum", "name", "body")
+
+    def policies(self) -> Mapping[str, Any]:
+        """The whole policy, lists as tuples, tables read-only; the user's goes before the base's."""
+        return MappingProxyType(self._bodies("policy", "key", "value"))
 
     def policy(self, key: str) -> Any:
-        """A value of the policy (lists as tuples, tables read-only); the user's before the base's.
+        """One value of :meth:`policies`.
 
         Raises
         ------
         NotFound
         """
-        with self._snapshot():
-            row = self.conn.execute(
-                "SELECT value FROM policy WHERE key = ? AND (own = 1 OR active = 1) ORDER BY own DESC LIMIT 1", (key,)
-            ).fetchone()
-        if row is None:
-            raise NotFound(f"the policy has no {key!r}")
-        return frozen(json.loads(row[0]))
-
-    def policies(self) -> Mapping[str, Any]:
-        """The whole policy."""
-        with self._snapshot():
-            rows = self.conn.execute(
-                "SELECT key, value FROM policy WHERE own = 1 OR active = 1 ORDER BY own, key"
-            ).fetchall()
-        return MappingProxyType({key: frozen(json.loads(value)) for key, value in rows})
-
-    # -- counts
-    # ---------------------------------------------------------------------------------------------------------
+        found = self.policies()
+        if key not in found:
+            raise NotFound(f"the policy has no {key!r}", hint=f"it has {', '.join(found)}" if found else "")
+        return found[key]
 
     def info(self) -> dict[str, Any]:
-        """Path, schema, base, log head and counts of a store; see :func:`propdb.store.counts.info`."""
+        """Path, schema, base, log head and counts; see :func:`propdb.store.counts.info`."""
         from propdb.store import counts
 
         return counts.info(self)
 
     def coverage(self, *, usable: bool = True) -> dict[str, Any]:
-        """What the store covers; see :func:`propdb.store.counts.coverage`."""
+        """Species and entries by quantity, phase and source; see :func:`propdb.store.counts.coverage`."""
         from propdb.store import counts
 
         return counts.coverage(self, usable=usable)
-
-
-class _Snapshot:
-    """A read transaction, unless one is open already; ``sqlite3`` errors are translated on the way out."""
-
-    __slots__ = ("began", "reader")
-
-    def __init__(self, reader: Reader) -> None:
-        self.reader = reader
-        self.began = False
-
-    def __enter__(self) -> None:
-        reader = self.reader
-        if not reader.conn.in_transaction:
-            try:
-                reader.conn.execute("BEGIN")
-            except sqlite3.Error as error:
-                raise reader._translated(error) from error
-            self.began = True
-        try:
-            reader._fresh()
-        except BaseException:
-            self._end()
-            raise
-
-    def __exit__(
-        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
-    ) -> None:
-        self._end()
-        if isinstance(error, sqlite3.Error):
-            raise self.reader._translated(error) from error
-
-    def _end(self) -> None:
-        if self.began:
-            with suppress(sqlite3.Error):
-                self.reader.conn.execute("COMMIT")
 
 
 def _order(entry: Entry) -> tuple[Any, ...]:

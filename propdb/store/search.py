@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING, Final
 
 from propdb.errors import Ambiguous, FormulaError, NotFound
 from propdb.model.records import Species
+from propdb.store.read import SEEN
 from propdb.store.rows import fold
 
 if TYPE_CHECKING:
@@ -47,7 +48,7 @@ def _visible(reader: Reader, numbers: Iterable[int]) -> dict[int, _Row]:
     found: dict[int, _Row] = {}
     sql = (
         "SELECT id, name, formula, charge, cas, inchikey FROM species"
-        f" WHERE id = (SELECT canon FROM species WHERE id = :row) AND {reader._SEEN}"
+        f" WHERE id = (SELECT canon FROM species WHERE id = :row) AND {SEEN}"
     )
     for number in numbers:
         for row in reader.conn.execute(sql, reader._view | {"row": number}):

@@ -35,7 +35,7 @@ if TYPE_CHECKING:
 
 __all__ = ["BuildReport", "Content", "build", "content_hash", "entry_id", "members", "with_id"]
 
-Progress = Callable[[str, int, int], None]
+Progress = Callable[[str], None]
 
 _CHUNK = 5000
 
@@ -78,7 +78,7 @@ def build(
     versions : mapping
         Package to version, kept in the base event.
     progress : callable, optional
-        Called with (what, done, total).
+        Called with one line of text now and then.
     timeout : float
         How long to wait for another writer [s].
 
@@ -88,8 +88,8 @@ def build(
         A content that contradicts itself; nothing has been written.
     StoreError, StoreBusy, StoreReadOnly
     """
-    tell: Progress = progress or (lambda what, done, total: None)
-    tell("checking", 0, len(content.entries))
+    tell: Progress = progress or (lambda text: None)
+    tell(f"checking {len(content.entries)} entries")
     held = validate(content)
     digest = content_hash(content)
     with closing(open_store(path, write=True, create=True, timeout=timeout)) as conn, mapped(path):
@@ -99,7 +99,6 @@ def build(
                 return BuildReport(False, digest, before.seq, len(held), 0, 0, len(content.species), 0, 0, 0)
             report = _write(conn, content, held, digest, versions, before, tell)
         conn.execute("PRAGMA optimize")
-        tell("writing", len(held), len(held))
     return report
 
 
@@ -303,7 +302,7 @@ def put_entries(
         conn.executemany(sql, ((m.entry.id, marks[m.entry.species], *hashed_row(m.entry)) for m in chunk))
         done += len(chunk)
         if tell is not None:
-            tell("writing", done, len(held))
+            tell(f"wrote {done} of {len(held)} entries")
     numbers: dict[str, int]
     if len(held) < 100:
         find = "SELECT num FROM entry WHERE id = ?"
