@@ -7,6 +7,7 @@ from typing import Annotated
 import typer
 
 from propdb.cli.app import Call, single, verb
+from propdb.errors import NotFound
 
 app = single()
 
@@ -25,5 +26,9 @@ def find(
     """Find species by name, synonym, formula in any order of atoms, CAS RN or InChIKey."""
     from propdb.cli.sheets import match_dict, matches_text
 
-    found = call.store.find(" ".join(text), limit=limit)
-    call.show(lambda: {"matches": [match_dict(match) for match in found]}, lambda: matches_text(found))
+    wanted = " ".join(text)
+    found = call.store.find(wanted, limit=limit)
+    if found or call.json:
+        call.show(lambda: {"matches": [match_dict(match) for match in found]}, lambda: matches_text(found))
+    if not found:
+        raise NotFound(f"no species is called anything like {wanted!r}", hint="try a formula or a CAS RN")

@@ -10,6 +10,7 @@ from propdb.cli.equationtext import equation_lines
 from propdb.cli.text import columns, kelvin, pairs
 from propdb.errors import UnitError
 from propdb.model.cite import text as reference
+from propdb.model.records import QUANTITIES
 from propdb.units import format_number, parse_heat_capacity_unit, parse_unit
 
 if TYPE_CHECKING:
@@ -37,6 +38,8 @@ QUANTITY_WORDS: Final[Mapping[str, str]] = MappingProxyType(
     }
 )
 _KINDS: Final = {"expanded-95": "95 %", "standard": "standard", "maximum": "maximum", "class": "class default"}
+#: How the units of seed files are shown.
+_UNITS: Final = {"1": "", "C": "°C"}
 NOT_STATED: Final = "not stated"
 
 
@@ -82,19 +85,20 @@ def species_lines(species: Species) -> list[str]:
 def sheet_text(sheet: SpeciesSheet) -> str:
     """A species with all its entries, by quantity, then the sources they come from."""
     lines = species_lines(sheet.species)
-    body = [_row(entry) for entry in sheet.entries]
+    entries = sorted(sheet.entries, key=lambda entry: QUANTITIES.index(entry.quantity))
+    body = [_row(entry) for entry in entries]
     heading = ("", "phase", "at", "value", "", "uncertainty", "datum, conditions", "source", "status", "entry")
     aligned = columns([heading, *body], right=(3,), indent=0)
     shown = ""
     if body:
         lines += ["", aligned[0]]
-    for entry, line in zip(sheet.entries, aligned[1:], strict=True):
+    for entry, line in zip(entries, aligned[1:], strict=True):
         if entry.quantity != shown:
             shown = entry.quantity
             lines += ["", f"{shown}: {QUANTITY_WORDS.get(shown, shown)}"]
         lines.append(line)
         lines += [f"      {text}" for text in _equation(entry)]
-    used = {entry.source for entry in sheet.entries}
+    used = {entry.source for entry in entries}
     cited = [source for source in sheet.sources.values() if source.key in used]
     if cited:
         lines += ["", "Sources", *pairs(((source.key, reference(source)) for source in cited), indent=2)]
@@ -109,7 +113,7 @@ def _row(entry: Entry) -> tuple[str, ...]:
         phase_text(entry),
         at_text(entry),
         value,
-        unit if unit != "1" else "",
+        _UNITS.get(unit, unit),
         uncertainty_text(entry),
         about,
         entry.source,
@@ -232,8 +236,8 @@ def species_dict(species: Species) -> dict[str, Any]:
 
 def entry_text(entry: Entry) -> str:
     """One entry in full."""
-    carried = f"{entry.carried} {entry.carried_unit if entry.carried_unit != '1' else ''}".strip()
-    value = f"{entry.value:.10g} {entry.unit if entry.unit != '1' else ''}".strip() if entry.value is not None else ""
+    carried = f"{entry.carried} {_UNITS.get(entry.carried_unit, entry.carried_unit)}".strip()
+    value = f"{entry.value:.10g} {_UNITS.get(entry.unit, entry.unit)}".strip() if entry.value is not None else ""
     carriers = "\n".join(
         ", ".join(
             part

@@ -38,7 +38,10 @@ def _text(value: Any) -> str:
     if isinstance(value, bool):
         return "yes" if value else "no"
     if isinstance(value, Mapping):
-        return "\n".join(pairs((_words(key), _text(item)) for key, item in value.items()))
+        counts = all(isinstance(item, int) for item in value.values())
+        return ", ".join(
+            f"{_text(item)} {_words(key)}" if counts else f"{_words(key)} {_text(item)}" for key, item in value.items()
+        )
     if isinstance(value, (list, tuple)):
         return "\n".join(_text(item) for item in value)
     return str(value)
