@@ -56,9 +56,9 @@ def rows(value: Any, field: str) -> Sequence[Mapping[str, Any]]:
     return value
 
 
-def check_range(tmin: float, tmax: float) -> None:
-    """Refuse a range that is not one."""
-    if not (math.isfinite(tmin) and math.isfinite(tmax) and 0.0 <= tmin < tmax):
+def check_range(tmin: float, tmax: float, *, point: bool = False) -> None:
+    """Refuse a range that is not one; `point` allows a single temperature."""
+    if not (0.0 <= tmin < tmax or (point and 0.0 < tmin == tmax)):
         raise EquationError(f"the range {tmin!r} to {tmax!r} K is not one", hint="0 <= tmin < tmax, in K")
 
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from propdb.cp._base import Equation
-from propdb.cp._blocks import CP
+from propdb.cp._blocks import CP, H, S
 from propdb.errors import TemperatureOutOfRange
 
 __all__ = ["T_STANDARD", "JointError", "h298_error", "joint_errors"]
@@ -24,9 +24,9 @@ class JointError:
     cp : float
         Jump of cp over cp [1].
     h : float
-        Jump of h over cp T [1]; h itself passes through zero and is no scale.
+        Jump of h over the larger of h and cp T [1]; h alone passes through zero and is no scale.
     s : float
-        Jump of s over cp [1].
+        Jump of s over s, the third-law entropy of a record, or over cp where that is larger [1].
     """
 
     T: float
@@ -44,7 +44,9 @@ def joint_errors(eq: Equation) -> tuple[JointError, ...]:
     for jump, kernel in zip(eq.jumps(), eq.kernels[:-1], strict=True):
         cp = abs(kernel.value(CP, jump.T))
         scale = cp if cp > 0.0 else 1.0
-        found.append(JointError(T=jump.T, cp=jump.cp / scale, h=jump.h / (scale * jump.T), s=jump.s / scale))
+        h_scale = max(abs(kernel.value(H, jump.T)), scale * jump.T)
+        s_scale = max(abs(kernel.value(S, jump.T)), scale)
+        found.append(JointError(T=jump.T, cp=jump.cp / scale, h=jump.h / h_scale, s=jump.s / s_scale))
     return tuple(found)
 
 

@@ -91,7 +91,7 @@ class Constant(PiecewiseEquation):
     value : float
         cp [J/mol/K].
     tmin, tmax : float
-        Range [K].
+        Range [K]; equal for a value measured at one temperature.
 
     Raises
     ------
@@ -109,7 +109,7 @@ class Constant(PiecewiseEquation):
 
     def __post_init__(self) -> None:
         value, tmin, tmax = number(self.value, "value"), number(self.tmin, "tmin"), number(self.tmax, "tmax")
-        check_range(tmin, tmax)
+        check_range(tmin, tmax, point=True)
         kernel = FoldedKernel.from_powers({0: value})
         set_field(self, value=value, tmin=tmin, tmax=tmax, kernels=(kernel,), joints=())
 

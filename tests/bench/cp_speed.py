@@ -9,13 +9,12 @@ library's Shomate integral, per temperature, over the elements of an array and o
 from __future__ import annotations
 
 import json
-import statistics
 import sys
-import time
-from collections.abc import Callable, Iterable
+from collections.abc import Iterable, Iterator
 from pathlib import Path
 
 import numpy as np
+from ratios import Ratio, medians
 
 if __name__ == "__main__":
     sys.path.insert(0, str(Path(__file__).resolve().parents[2]))
@@ -74,25 +73,23 @@ def equations() -> dict[str, tuple[Polynomial | Shomate | Nasa9 | Table | Union,
     }
 
 
-def ratio(reference: Callable[[], object], measured: Callable[[], object], runs: int = RUNS) -> float:
-    """Median time of `reference` over median time of `measured`, run in turn."""
-    times: tuple[list[float], list[float]] = ([], [])
-    reference(), measured()
-    for _ in range(runs):
-        for call, found in zip((reference, measured), times, strict=True):
-            start = time.perf_counter()
-            call()
-            found.append(time.perf_counter() - start)
-    return statistics.median(times[0]) / statistics.median(times[1])
+def run() -> Iterator[Ratio]:
+    """All ratios, each with its target."""
+    for name, (measured, detail) in _measured():
+        if name in TARGETS:
+            yield Ratio(f"{name}, {detail}", measured, TARGETS[name], at_least=True)
 
 
-def run() -> dict[str, float]:
-    """All ratios."""
+def measure() -> dict[str, float]:
+    """All ratios by name."""
+    return {name: measured for name, (measured, _) in _measured()}
+
+
+def _measured() -> Iterator[tuple[str, tuple[float, str]]]:
     from chemicals.heat_capacity import Shomate_integral
 
     random = np.random.default_rng(1)
     out = np.empty(COUNT)
-    found = {}
     for name, (equation, low, high) in equations().items():
         if name.startswith("union"):
             edges = np.array([200.0, 1000.0, 6000.0, 20000.0])
@@ -100,7 +97,8 @@ def run() -> dict[str, float]:
             T = random.uniform(edges[piece], edges[piece + 1])
         else:
             T = random.uniform(low, high, COUNT)
-        found[name] = ratio(lambda T=T: np.copyto(out, T), lambda e=equation, T=T: e.h(T, out))
+        copy, ours = medians(lambda T=T: np.copyto(out, T), lambda e=equation, T=T: e.h(T, out), rounds=RUNS)
+        yield name, (copy / ours, "copy / h of 10^6 temperatures")
 
     shomate, low, high = equations()["shomate"]
     T = random.uniform(low, high, COUNT)
@@ -111,14 +109,13 @@ def run() -> dict[str, float]:
         def loop(several: Iterable[float] = several) -> list[float]:
             return [Shomate_integral(t, *coefficients) for t in several]
 
-        shares = ratio(loop, lambda: shomate.h(T, out), runs=11)
-        found[f"shomate over a loop ({kind})"] = shares * COUNT / some.size
-    return found
+        looped, ours = medians(loop, lambda: shomate.h(T, out), rounds=11)
+        yield f"shomate over a loop ({kind})", (looped / ours * COUNT / some.size, "chemicals / h, per temperature")
 
 
 def main() -> int:
     """Print the ratios; 1 if one misses its target."""
-    found = run()
+    found = measure()
     if "--json" in sys.argv[1:]:
         print(json.dumps({name: round(value, 4) for name, value in found.items()}))
     else:
