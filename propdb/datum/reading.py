@@ -330,7 +330,7 @@ def _table(value: object, place: str) -> Mapping[str, Any]:
 
 def _rows(row: Mapping[str, Any], key: str, place: str) -> Sequence[Any]:
     value = row.get(key)
-    if not isinstance(value, list) or not value:
+    if not isinstance(value, (list, tuple)) or not value:
         raise DatumError(f"{key} is missing or empty", where=place, hint=_WANTED[key])
     return value
 
