@@ -8,11 +8,12 @@ from __future__ import annotations
 import os
 import sys
 from collections.abc import Callable, Mapping
+from dataclasses import asdict
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from propdb._version import __version__
-from propdb.errors import DatumError, InvalidInput, NotFound, StoreError, Unbalanced
+from propdb.errors import DatumError, IntegrityError, InvalidInput, NotFound, StoreError, Unbalanced
 from propdb.model.records import PHASES, QUANTITIES, Datum, Entry, Source, Species, State
 from propdb.model.sheet import SpeciesSheet
 from propdb.store.open import default_path
@@ -73,7 +74,8 @@ def _build(path: Path, progress: Callable[[str], None] | None) -> Any:
         progress(f"propdb: building the store {path}")
     content = load_seed(seed_root())
     versions = {"propdb": __version__, "python": sys.version.split()[0], "sqlite": sqlite3.sqlite_version}
-    return build(path, content, versions=versions, progress=progress)
+    tell = None if progress is None else lambda text: progress(f"propdb: {text}")
+    return build(path, content, versions=versions, progress=tell)
 
 
 class Store:
@@ -201,11 +203,11 @@ class Store:
         """
         from propdb.datum.reading import parse_datums
         from propdb.datum.writing import datum_body
-        from propdb.store.write import add_datums
+        from propdb.store.own import put_own
 
         place = Path(file)
         data = _read_toml(place)
-        elements = self._reader.policy("elements") or {}
+        elements = self._reader.policies().get("elements", {})
         found = parse_datums(data, where=place.name, composition=self._composition, elements=elements)
         if not found:
             raise DatumError("the file defines no datum", where=place.name, hint="write a [datum.NAME] table")
@@ -214,7 +216,7 @@ class Store:
                 raise DatumError(f"a datum named {name} exists", where=place.name, hint="choose another name")
             if datum.source != "common-practice":
                 self._reader.source(datum.source)
-        add_datums(self._path, {name: datum_body(d) for name, d in found.items()}, who=_who())
+        put_own(self._path, datums={name: datum_body(d) for name, d in found.items()})
         self._forget()
         return list(found)
 
@@ -416,8 +418,7 @@ class Store:
         choice = (pinned, extrapolate)
         if choice not in self._levels:
             data = _Data(self)
-            ranks = self._reader.policy("ranks") or {}
-            policy = Policy(ranks, lambda key: self._reader.source(key).cls, pinned)
+            policy = Policy(self._reader.policy("ranks"), lambda key: self._reader.source(key).cls, pinned)
             self._levels[choice] = Levels(data, policy, extrapolate=extrapolate)
         return self._levels[choice]
 
@@ -442,7 +443,8 @@ class Store:
 
         levels = self._engine(None, False)
         counts = {"liquid_to_gas": 0, "solid_to_gas": 0, "elements-298K": 0}
-        for name in self._reader.species_names():
+        for record in self._reader.all_species():
+            name = record.name
             try:
                 tree = levels.tree(name)
             except PropdbError:
@@ -459,9 +461,23 @@ class Store:
 
     def store_check(self) -> dict[str, Any]:
         """Check the file, its content hash and the chain of its log. Raises IntegrityError with the first problems."""
-        from propdb.store.care import check
+        from propdb.store.backup import check
 
-        return check(self._path)
+        problems = check(self._path)
+        if problems:
+            more = f"; and {len(problems) - 3} more" if len(problems) > 3 else ""
+            raise IntegrityError(
+                "; ".join(str(p) for p in problems[:3]) + more,
+                where=f"store {self._path}",
+                hint="restore a backup; propdb store backup makes one",
+                problems=[str(p) for p in problems],
+            )
+        info = self._reader.info()
+        return {
+            "path": info["path"],
+            "verdict": "sound: pages, references, entries, log",
+            **{key: info[key] for key in ("content_hash", "head", "events", "entries")},
+        }
 
     def store_path(self) -> Path:
         """Where the store is."""
@@ -472,12 +488,11 @@ class Store:
         report = _build(self._path, progress)
         self._reader = Reader(self._path)
         self._forget()
-        result: dict[str, Any] = report.as_dict()
-        return result
+        return asdict(report)
 
     def store_backup(self, file: str | os.PathLike[str]) -> None:
         """Copy the whole store, log included, to a new file. Raises StoreError where that exists."""
-        from propdb.store.care import backup
+        from propdb.store.backup import backup
 
         backup(self._path, Path(file))
 
@@ -508,12 +523,6 @@ class _Data:
 
     def policy(self, key: str) -> Any:
         return self._store._reader.policy(key)
-
-
-def _who() -> str:
-    import getpass
-
-    return os.environ.get("PROPDB_USER") or getpass.getuser()
 
 
 def _unit(text: str) -> EnthalpyUnit:

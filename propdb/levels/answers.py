@@ -198,10 +198,10 @@ class Derivation:
             for e in others:
                 if e.tmin is None or e.tmax is None or e.tmin > low + 0.155 or e.tmax < high - 0.155:
                     continue
-                from propdb.cp.registry import build
+                from propdb.cp.registry import build_heat_capacity
 
                 try:
-                    value = float(build(e.equation, e.params).dh(move.start, move.end))
+                    value = float(build_heat_capacity(e.equation, e.params).dh(move.start, move.end))
                     chosen = sum(leg.value for leg in curve.legs(move.start, move.end) if leg.what == "heating")
                 except PropdbError:
                     continue
@@ -312,7 +312,7 @@ def convert(
     derived = Derivation(levels, net(levels, plus, minus), per=unit.scale(molar_mass=species.molar_mass), unit=unit)
     a = levels.offset(z_a, species, temperature=temperature)
     b = levels.offset(z_b, species, temperature=temperature)
-    offsets = [("as given", value, f"the number that was typed, on {source_datum.name}")]
+    offsets = [(f"as given, on {source_datum.name}", value, "")]
     if a:
         offsets.append((f"zero of {source_datum.name}", -a, _h0_note(z_a, source_datum)))
     if b:

@@ -181,7 +181,7 @@ class Curve:
             value=value,
             parts=(Part(f"model:saturation:{self.species}", value, 0.3, True),),
             source=c.source,
-            note="integral of v(1 - aT) dp, volume by Yamada-Gunn, pressure by Lee-Kesler: a model, standard uncertainty 30 %",
+            note="integral of v(1 - aT) dp, v by Yamada-Gunn, p by Lee-Kesler: a model, standard uncertainty 30 %",
         )
 
 
@@ -224,12 +224,12 @@ def build_curve(
 
 
 def _equation(entry: Entry) -> Any:
-    from propdb.cp.registry import build
+    from propdb.cp.registry import build_heat_capacity
 
     if entry.equation:
-        return build(entry.equation, entry.params)
+        return build_heat_capacity(entry.equation, entry.params)
     at = entry.temperature or 298.15
-    return build("constant", {"value": entry.value, "tmin": at, "tmax": at})
+    return build_heat_capacity("constant", {"value": entry.value, "tmin": at, "tmax": at})
 
 
 @dataclass(frozen=True)

@@ -50,13 +50,13 @@ class Edge:
     rank: int = 0
 
     def key(self) -> tuple[object, ...]:
-        """Best first. Heating over a covered range always leads, so that a level is continuous in T.
+        """Best first. Heating over a covered range and water's formulation always lead, so that a level is continuous.
 
         Then pinned sources, status, and the variance (class defaults where none is stated).
         """
         return (
             self.leg.extrapolated,
-            self.kind not in ("definition", "heating"),
+            self.kind not in ("definition", "heating", "formulation"),
             self.pin,
             self.status,
             round(ranking_uncertainty(self.leg.parts), 9),
@@ -152,9 +152,9 @@ def _latent_edges(
     edges: list[Edge] = []
     for e in by_quantity.get("Hvap", ()):
         if e.equation:
-            from propdb.cp.registry import build
+            from propdb.cp.registry import build_latent_heat
 
-            equation = build(e.equation, e.params)
+            equation = build_latent_heat(e.equation, e.params)
             low = e.tmin if e.tmin is not None else 0.0
             high = e.tmax if e.tmax is not None else float("inf")
             points = [(t, float(equation.dh(t))) for t in (T_STANDARD, boiling) if t is not None and low <= t <= high]

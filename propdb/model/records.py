@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from fractions import Fraction
 from types import MappingProxyType
 from typing import Any, Literal
@@ -20,7 +20,9 @@ P_STANDARD = 1e5
 P_ATM = 101325.0
 R_GAS = 8.31446261815324
 
-_EMPTY: Mapping[str, Any] = MappingProxyType({})
+
+def _empty() -> Mapping[str, Any]:
+    return MappingProxyType({})
 
 
 @dataclass(frozen=True, slots=True)
@@ -60,7 +62,9 @@ class Source:
     kind: str  # book | article | report | standard | practice
     cls: str  # evaluated | handbook | compilation | estimate | practice
     terms: str
-    fields: Mapping[str, str] = _EMPTY  # publisher, journal, volume, number, pages, place, doi, isbn ...
+    fields: Mapping[str, str] = field(
+        default_factory=_empty
+    )  # publisher, journal, volume, number, pages, place, doi, isbn ...
     carrier: str = ""
     standard_pressure: float = P_STANDARD
     note: str = ""
@@ -181,13 +185,13 @@ class Datum:
     temperature: float | Literal["same", "boiling"]
     # own
     zero: ZeroState | None = None
-    per_species: Mapping[str, ZeroState] = _EMPTY  # overrides, and when `only` the full list
+    per_species: Mapping[str, ZeroState] = field(default_factory=_empty)  # overrides, and when `only` the full list
     only: bool = False  # True: only the species in per_species have this datum
     h0: float = 0.0
     h0_unit: str = "J/mol"  # or J/kg
     internal_energy: bool = False  # the convention fixes u, not h
     # elements: element symbol (or "e-") -> schedule [(upper T [K], species, phase, form)], ascending
-    schedule: Mapping[str, tuple[tuple[float, ZeroState], ...]] = _EMPTY
+    schedule: Mapping[str, tuple[tuple[float, ZeroState], ...]] = field(default_factory=_empty)
     # basis
     basis: tuple[ZeroState, ...] = ()
     standard_pressure: float = P_STANDARD

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from textwrap import wrap
 from typing import TYPE_CHECKING
 
 from propdb.model.answer import CAUTION, Answer, ReactionAnswer, _Derived
@@ -26,6 +27,14 @@ def columns(
         cells = [c.rjust(w) if i in right else c.ljust(w) for i, (c, w) in enumerate(zip(row, widths, strict=True))]
         lines.append((indent + gap.join(cells)).rstrip())
     return lines
+
+
+#: Width of running text.
+WIDTH = 100
+
+
+def _paragraph(title: str, text: str) -> list[str]:
+    return wrap(text, WIDTH, initial_indent=f"{title:<14}", subsequent_indent=" " * 14)
 
 
 def _number(value: float, unit: str, *, sign: bool = False) -> str:
@@ -64,7 +73,7 @@ def explain(answer: _Derived) -> str:
     if isinstance(answer, ReactionAnswer):
         lines += _routes(answer)
     lines += _steps(answer)
-    lines += ["", f"Uncertainty   {answer.uncertainty_note}", f"May be summed {answer.may_sum.why}"]
+    lines += ["", *_paragraph("Uncertainty", answer.uncertainty_note), *_paragraph("To be summed", answer.may_sum.why)]
     if answer.closures:
         lines += ["", f"Closures: what unused data say, less the path above [{answer.unit}]"]
         rows = [
@@ -81,13 +90,15 @@ def explain(answer: _Derived) -> str:
         lines += columns(rows, right=(1,))
     if answer.warnings:
         lines += ["", "Mind"]
-        lines += [f"  - {w}" for w in answer.warnings]
+        lines += [line for w in answer.warnings for line in wrap(w, WIDTH, initial_indent="  - ", subsequent_indent="    ")]
     if answer.sources:
         lines += ["", "Sources"]
         from propdb.model.cite import text
 
-        lines += columns([(key, text(answer.sources[key])) for key in sorted(answer.sources)])
-    lines += ["", f"Store {answer.store}", CAUTION]
+        for key in sorted(answer.sources):
+            lines.append(f"  {key}")
+            lines += wrap(text(answer.sources[key]), WIDTH, initial_indent="    ", subsequent_indent="    ")
+    lines += ["", f"Store: {answer.store}", *wrap(CAUTION, WIDTH)]
     return "\n".join(lines)
 
 
