@@ -198,6 +198,8 @@ class _Reader:
         if found is None:
             char = self.plain[self.at]
             hint = "element symbols begin with a capital" if char.isalpha() else "write e.g. Ca(OH)2 or CuSO4.5H2O"
+            if char.isdigit() and self.plain[self.at - 1 : self.at] == "[":
+                hint = "isotopes are not told apart, except D"
             raise self.error(f"{char!r} is not expected", hint)
         symbol = found.group()
         if symbol not in _KNOWN:

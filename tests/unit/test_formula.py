@@ -91,6 +91,7 @@ def test_read(text: str, counts: dict[str, Count], charge: int) -> None:
         ("water", "'w' is not expected at position 1"),
         ("H2O (l)", "' ' is not expected at position 4"),
         ("CH3-CH3", "'-' is not expected at position 4"),
+        ("H2[18O]", "'1' is not expected at position 4 of formula 'H2[18O]'; isotopes are not told apart, except D"),
         ("Ca(OH", "'(' is not closed at position 3"),
         ("CaOH)2", "')' closes nothing at position 5"),
         ("Ca(OH]2", "']' closes nothing at position 6"),
