@@ -37,7 +37,7 @@ def read_pressure(text: str) -> float:
 
 
 def read_enthalpy(text: str) -> tuple[float, str]:
-    """Enthalpy and its unit, ``J/mol`` or ``J/kg`` (a normal volume counts as an amount).
+    """Enthalpy and its unit, ``J/mol`` or ``J/kg`` (a normal volume counts as an amount); zero is 0 J/mol.
 
     Raises
     ------
@@ -45,7 +45,8 @@ def read_enthalpy(text: str) -> tuple[float, str]:
         Not an enthalpy per amount or mass.
     """
     quantity = units.parse_quantity(text)
-    return quantity.value * quantity.unit.factor, "J/kg" if quantity.unit.basis == "mass" else "J/mol"
+    value = quantity.value * quantity.unit.factor
+    return (value, "J/kg" if quantity.unit.basis == "mass" else "J/mol") if value else (0.0, "J/mol")
 
 
 def write_temperature(temperature: float | Literal["same", "boiling"]) -> str:
