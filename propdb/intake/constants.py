@@ -81,7 +81,7 @@ def _entry(row: Row, folder: Folder, seen: dict[tuple[object, ...], Row]) -> Ent
     unit = row.needed("unit", "the unit as the source prints it")
     carried = row.needed("value", "the number as the source prints it; a row without a number is left out")
     value = si(row, "value", unit=unit, quantity=quantity, species=species)
-    if quantity in _POSITIVE and not value > 0:
+    if quantity in _POSITIVE and phase != "aq" and not value > 0:  # partial molar Cp of an ion may be negative
         raise row.error("value", f"{quantity} {carried} {unit} is not positive", "check the sign and the unit")
     kind = uncertainty_kind(row)
     uncertainty = (

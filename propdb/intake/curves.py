@@ -109,7 +109,7 @@ def _entry(
         temperature=None,
         value=None,
         unit="J/mol/K",
-        carried=" | ".join(row.text("coefficients") for row in rows),
+        carried=" | ".join(row.text("coefficients") or row.text("locator") for row in rows),
         carried_unit=" | ".join(dict.fromkeys(row.text("unit") for row in rows)),
         params=params,
         tmin=tmin,
