@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import io
+import re
 import shlex
 import shutil
 import sys
@@ -14,6 +15,9 @@ import pytest
 
 import propdb
 from propdb.cli.main import run
+
+#: Progress of a build, which may come before an error.
+PROGRESS = re.compile(r"propdb: (building the store|checking \d+ entries|wrote \d+ of \d+ entries)")
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,7 +34,7 @@ class Result:
         assert self.code not in (0, 70), (self.code, self.err)
         assert self.out == ""
         assert "Traceback" not in self.err
-        lines = [line for line in self.err.splitlines() if "building the store" not in line]
+        lines = [line for line in self.err.splitlines() if not PROGRESS.match(line)]
         assert len(lines) == 1, self.err
         assert lines[0].startswith("propdb: ")
         return lines[0]

@@ -5,27 +5,15 @@ from __future__ import annotations
 import shlex
 import subprocess
 import sys
-from importlib import import_module
 from pathlib import Path
 from typing import Any
 
 import pytest
-import typer
+from verbs import commands
 
 from propdb.cli.main import VERBS
 
-
-def _commands() -> dict[str, Any]:
-    """Every verb, those of families as two words, with its command."""
-    found: dict[str, Any] = {}
-    for verb, (module, _) in VERBS.items():
-        command = typer.main.get_command(import_module(module).app)
-        members = getattr(command, "commands", None)
-        found.update({f"{verb} {name}": member for name, member in members.items()} if members else {verb: command})
-    return found
-
-
-COMMANDS = _commands()
+COMMANDS = commands()
 EXAMPLES = [example for command in COMMANDS.values() for example in command.examples]
 
 

@@ -5,16 +5,13 @@ from __future__ import annotations
 import inspect
 import subprocess
 import sys
-from importlib import import_module
 from pathlib import Path
-from typing import Any
 
 import pytest
-import typer
+from verbs import commands
 
 from propdb.api import Store
 from propdb.cli.equationtext import KNOWN
-from propdb.cli.main import VERBS
 from propdb.cp.registry import EQUATIONS
 
 #: Options of the command line that are no arguments of the method, or have another name there.
@@ -28,16 +25,7 @@ RENAMED = {
 METHODS = {"import": "import_file"}
 
 
-def _verbs() -> dict[str, Any]:
-    found: dict[str, Any] = {}
-    for verb, (module, _) in VERBS.items():
-        command = typer.main.get_command(import_module(module).app)
-        members = getattr(command, "commands", None)
-        found.update({f"{verb} {name}": member for name, member in members.items()} if members else {verb: command})
-    return found
-
-
-COMMANDS = _verbs()
+COMMANDS = commands()
 
 
 def _method(verb: str) -> str:
