@@ -11,7 +11,7 @@ from propdb.cli.app import Call, family, verb
 app = family("Show one entry with all that is known about it.")
 
 
-@verb(app, "propdb entry show ENTRY")
+@verb(app, "propdb entry show e03c1457")
 def show(
     call: Call,
     id: Annotated[

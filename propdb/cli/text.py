@@ -33,15 +33,30 @@ def columns(rows: Iterable[Sequence[str]], *, right: Iterable[int] = (), indent:
     return lines
 
 
-def pairs(items: Iterable[tuple[str, str]], *, indent: int = 0) -> list[str]:
-    """Align names and what they are; items with nothing to say are left out."""
+def pairs(items: Iterable[tuple[str, str]], *, indent: int = 0, width: int = 110) -> list[str]:
+    """Align names and what they are, wrapped; items with nothing to say are left out.
+
+    Parameters
+    ----------
+    items
+        Name and text; lines of a text stay lines.
+    indent
+        Spaces before each line.
+    width
+        Longest line, words that are longer apart.
+    """
     kept = [(name, text) for name, text in items if text]
-    width = max((len(name) for name, _ in kept), default=0)
+    if not kept:
+        return []
+    from textwrap import wrap
+
+    longest = max(len(name) for name, _ in kept)
+    start = " " * (indent + longest + 2)
     lines = []
     for name, text in kept:
-        first, *more = text.splitlines()
-        lines.append(f"{' ' * indent}{name.ljust(width)}  {first}")
-        lines += [f"{' ' * (indent + width)}  {line}" for line in more]
+        parts = [part for line in text.splitlines() for part in wrap(line, width - len(start), break_long_words=False)]
+        lines.append(f"{' ' * indent}{name.ljust(longest)}  {parts[0] if parts else ''}".rstrip())
+        lines += [start + part for part in parts[1:]]
     return lines
 
 
