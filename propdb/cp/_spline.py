@@ -42,7 +42,19 @@ class SplineKernel:
         h [J/mol] and s [J/mol/K] at the first edge.
     """
 
-    __slots__ = ("_args", "_cell_rows", "_cells", "_edges", "_h", "_inner", "_inverse", "_limit", "_rows", "_s")
+    __slots__ = (
+        "_anchors",
+        "_args",
+        "_cell_rows",
+        "_cells",
+        "_edges",
+        "_h",
+        "_inverse",
+        "_last",
+        "_nodes",
+        "_rows",
+        "_s",
+    )
 
     def __init__(
         self,
@@ -56,19 +68,30 @@ class SplineKernel:
         self._args = (edges, cubics, steps, breaks, h0, s0)
         count = len(cubics)
         self._edges = edges
-        self._inner = edges[1:-1].tolist()
+        self._nodes: list[float] = edges.tolist()
         self._h = np.zeros((count, 5))  # quartics of h, constant first
         self._h[:, 1:] = cubics / np.arange(1.0, 5.0)
-        self._s = _entropy_rows(edges, cubics)
+        # One row more at either end, for what lies beyond the table: there a series need not converge.
+        beyond = _about(cubics[-1].tolist(), float(edges[-1] - edges[-2]), 1.0)
+        self._anchors = np.concatenate([edges[:1], edges])
+        self._s = np.array(
+            [
+                _entropy_row(float(edges[0]), cubics[0].tolist(), math.inf),
+                *(_entropy_row(float(edges[i]), cubics[i].tolist(), float(edges[i + 1])) for i in range(count)),
+                _entropy_row(float(edges[-1]), beyond, math.inf),
+            ]
+        )
+        self._s[0, 0] = s0
         widths = np.diff(edges)
         h, s = h0, s0
         for i in range(count):
             step = steps.get(i, 0.0)
             h, s = h + step, s + step / edges[i]
             self._h[i, 0] = h
-            self._s[i, 0] = s
+            self._s[i + 1, 0] = s
             h = _horner(self._h[i].tolist(), float(widths[i]))
-            s = _entropy(self._s[i].tolist(), float(edges[i]), float(widths[i]))
+            s = _entropy(self._s[i + 1].tolist(), float(edges[i]), float(widths[i]))
+        self._s[-1, 0] = s
         self._rows: tuple[list[list[float]], ...] = (cubics.tolist(), self._h.tolist(), self._s.tolist())
         self._make_cells(breaks)
 
@@ -77,7 +100,7 @@ class SplineKernel:
         width = _cell_width(edges)
         self._inverse = 1.0 / width
         count = math.ceil(edges[-1] / width) + 1
-        self._limit = float(count) * width
+        self._last = float(count - 1)
         by_kind = []
         for rows in (cubics, self._h):
             cells = np.full((count, rows.shape[1]), np.nan)
@@ -95,26 +118,29 @@ class SplineKernel:
         self._cells = (_pairs(cp), _pairs(h[:, :4])), np.ascontiguousarray(h[:, 4])
 
     def value(self, kind: Kind, t: float) -> float:
-        if kind != S and t < self._limit:
-            scaled = t * self._inverse
+        scaled = t * self._inverse
+        if kind != S and scaled < self._last:
             number = int(scaled)
             value = _horner(self._cell_rows[kind][number], scaled - number)
             if value == value:
                 return value
-        i = bisect_left(self._inner, t)
-        edge = float(self._edges[i])
         if kind == S:
-            return _entropy(self._rows[S][i], edge, t - edge)
-        return _horner(self._rows[kind][i], t - edge)
+            i = bisect_left(self._nodes, t)
+            anchor = self._nodes[max(i - 1, 0)]
+            return _entropy(self._rows[S][i], anchor, t - anchor)
+        i = bisect_left(self._nodes, t, 1, len(self._nodes) - 1) - 1
+        return _horner(self._rows[kind][i], t - self._nodes[i])
 
     def fill(self, kind: Kind, x: FloatArray, out: FloatArray, scratch: Scratch) -> None:
-        if kind == S or x.size == 0 or float(np.maximum.reduce(x)) >= self._limit:
+        if kind == S or x.size == 0:
             out[...] = self._by_bisection(kind, x)
             return
         n = x.size
         number, top, paired = scratch.gather(n)
         u, whole = scratch.a(n), scratch.b(n)
         np.multiply(x, self._inverse, u)
+        if float(np.maximum.reduce(u)) > self._last:
+            np.minimum(u, self._last, out=u)  # the last cell lies beyond the table and is marked
         np.floor(u, whole)
         np.copyto(number, whole, casting="unsafe")
         np.subtract(u, whole, u)
@@ -139,20 +165,21 @@ class SplineKernel:
             out[cut] = self._by_bisection(kind, x[cut])
 
     def _by_bisection(self, kind: Kind, x: FloatArray) -> FloatArray:
-        i = np.searchsorted(self._edges[1:-1], x, side="left")
-        edge = self._edges[i]
-        u = x - edge
-        if kind != S:
-            rows = self._args[1] if kind == CP else self._h
+        if kind == S:
+            i = np.searchsorted(self._edges, x, side="left")
+            anchor, rows = self._anchors[i], self._s
+            u = x - anchor
             total = rows[i, -1] * u
-            for column in range(rows.shape[1] - 2, 0, -1):
+            for column in range(rows.shape[1] - 2, 1, -1):
                 total = (total + rows[i, column]) * u
-            return np.asarray(total + rows[i, 0])
-        rows = self._s
+            return np.asarray(rows[i, 0] + rows[i, 1] * np.log1p(u / anchor) + total)
+        i = np.searchsorted(self._edges[1:-1], x, side="left")
+        u = x - self._edges[i]
+        rows = self._args[1] if kind == CP else self._h
         total = rows[i, -1] * u
-        for column in range(rows.shape[1] - 2, 1, -1):
+        for column in range(rows.shape[1] - 2, 0, -1):
             total = (total + rows[i, column]) * u
-        return np.asarray(rows[i, 0] + rows[i, 1] * np.log1p(u / edge) + total)
+        return np.asarray(total + rows[i, 0])
 
     def divides(self, kind: Kind) -> bool:
         return False
@@ -180,24 +207,20 @@ def _entropy(row: list[float], edge: float, u: float) -> float:
     return constant + log_coefficient * float(np.log1p(u / edge)) + total
 
 
-def _entropy_rows(edges: FloatArray, cubics: FloatArray) -> FloatArray:
-    """Rows for the integral of p(u)/(edge + u): constant (0), that of ln(1 + u/edge), those of u, u^2 ..."""
-    rows = np.zeros((len(cubics), 2 + _SERIES_TERMS))
-    for i, cubic in enumerate(cubics.tolist()):
-        edge = float(edges[i])
-        inside = 0 < i < len(cubics) - 1  # the end intervals are also extrapolated, where a series need not converge
-        if inside and (edges[i + 1] - edge) / edge < _SERIES_WIDTH:
-            quotient = 0.0  # power series of p(u)/(edge + u)
-            for k in range(_SERIES_TERMS):
-                quotient = ((cubic[k] if k < 4 else 0.0) - quotient) / edge
-                rows[i, 2 + k] = quotient / (k + 1)
-        else:
-            remainder = 0.0  # p(u) = (u + edge) q(u) + p(-edge)
-            for k in (3, 2, 1):
-                remainder = cubic[k] - edge * remainder
-                rows[i, 1 + k] = remainder / k
-            rows[i, 1] = cubic[0] - edge * remainder
-    return rows
+def _entropy_row(edge: float, cubic: list[float], end: float) -> list[float]:
+    """The integral of p(u)/(edge + u) up to `end`: constant (0), coefficient of ln(1 + u/edge), those of u, u^2, ..."""
+    series = [0.0] * _SERIES_TERMS
+    if (end - edge) / edge < _SERIES_WIDTH:
+        quotient = 0.0  # power series of p(u)/(edge + u)
+        for k in range(_SERIES_TERMS):
+            quotient = ((cubic[k] if k < 4 else 0.0) - quotient) / edge
+            series[k] = quotient / (k + 1)
+        return [0.0, 0.0, *series]
+    remainder = 0.0  # p(u) = (u + edge) q(u) + p(-edge)
+    for k in (3, 2, 1):
+        remainder = cubic[k] - edge * remainder
+        series[k - 1] = remainder / k
+    return [0.0, cubic[0] - edge * remainder, *series]
 
 
 def _cell_width(edges: FloatArray) -> float:
