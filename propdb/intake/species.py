@@ -155,7 +155,7 @@ def _checked(row: Row, column: str) -> str:
     if column == "kind":
         return row.choice(column, ("species", "pseudo"))
     if column == "vapour":
-        return row.choice(column, ("associating",))
+        return row.choice(column, ("associating", "hydrogen-bonding"))
     if column == "molar_mass" and not row.read_number(value, column) > 0:
         raise row.error(column, f"molar mass {value} is not positive", "write it in g/mol")
     return value

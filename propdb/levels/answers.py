@@ -92,7 +92,10 @@ class Derivation:
         """Standard uncertainty in J/mol or None, and the sentence that says what lacks one."""
         stated, missing = combined(self.parts)
         entries = self.entries()
-        names = [f"{entries[i].source} [{i[:8]}]" if i in entries else i for i in missing]
+        by_source: dict[str, list[str]] = {}
+        for i in missing:
+            by_source.setdefault(entries[i].source if i in entries else i, []).append(i[:8])
+        names = [f"{key} [{' '.join(ids)}]" for key, ids in by_source.items()]
         shown = f"{format_number(stated / self.per, significant=2)} {self.unit.text}"
         if not self.parts:
             return 0.0, "none: the value follows from the conventions alone"
@@ -215,14 +218,19 @@ def zero_members(
 ) -> list[Member]:
     """The states that a datum calls zero for a species, made definite, with their coefficients."""
     z = levels.zero_of(datum, species, phase=phase, temperature=temperature)
-    return _members(levels, z, species, temperature)
+    return _members(levels, z, datum, temperature)
 
 
-def _members(levels: Levels, z: Zero, species: Species, temperature: float | None) -> list[Member]:
+def _members(levels: Levels, z: Zero, datum: Datum, temperature: float | None) -> list[Member]:
     members: list[Member] = []
     for term in z.terms:
-        state = levels.resolve(term.zero, term.species, temperature=temperature)
-        members.append((float(term.coefficient), term.species, levels.check(term.species, state)))
+        try:
+            state = levels.check(term.species, levels.resolve(term.zero, term.species, temperature=temperature))
+            levels.attach(term.species, state)
+        except PropdbError as error:
+            error.where = error.where or f"zero of {datum.name}"
+            raise
+        members.append((float(term.coefficient), term.species, state))
     return members
 
 
@@ -250,7 +258,7 @@ def enthalpy(levels: Levels, *, species: Species, state: State, datum: Datum, un
     """
     state = levels.check(species.name, state)
     z = levels.zero_of(datum, species, phase=state.phase, temperature=state.temperature)
-    zeros = _members(levels, z, species, state.temperature)
+    zeros = _members(levels, z, datum, state.temperature)
     derived = Derivation(
         levels,
         net(levels, [(1.0, species.name, state)], zeros),
@@ -306,8 +314,8 @@ def convert(
     """
     z_a = levels.zero_of(source_datum, species, phase=phase, temperature=temperature)
     z_b = levels.zero_of(target_datum, species, phase=phase, temperature=temperature)
-    plus = _members(levels, z_a, species, temperature)
-    minus = _members(levels, z_b, species, temperature)
+    plus = _members(levels, z_a, source_datum, temperature)
+    minus = _members(levels, z_b, target_datum, temperature)
     plus, minus = _cancel(plus, minus)
     derived = Derivation(levels, net(levels, plus, minus), per=unit.scale(molar_mass=species.molar_mass), unit=unit)
     a = levels.offset(z_a, species, temperature=temperature)

@@ -21,6 +21,9 @@ __all__ = ["Critical", "Curve", "Formulation", "Piece", "Track", "build_curve", 
 #: A range printed as 298 K is meant to hold at 298.15 K, and 373 K at 373.15 K.
 PRINTED_SLACK = 0.155
 
+#: Boiling points of different tables differ by this much [K]; the pressure term over it is below 0.1 J/mol.
+BOILING_SLACK = 0.5
+
 
 def celsius(t: float) -> str:
     """Temperature as an engineer reads it: ``600 °C`` or, at standard temperatures, in kelvin too."""
@@ -98,7 +101,7 @@ class Curve:
             raise self.out_of_range(start if not self.covers(start) else end)
         low, high = min(start, end), max(start, end)
         legs = [self._leg(piece, a, b) for piece, a, b in self._cuts(low, high)]
-        if self.phase == "l" and self.boiling is not None and high > self.boiling + 1e-9:
+        if self.phase == "l" and self.boiling is not None and high > self.boiling + BOILING_SLACK:
             legs.append(self._saturation_leg(max(low, self.boiling), high))
         if end > start:
             return legs

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass, replace
+from math import hypot
 from typing import NamedTuple
 
 from propdb.errors import PropdbError
@@ -48,6 +49,7 @@ class Edge:
     status: int = 0  # index into USABLE_STATUSES
     pin: int = 0
     rank: int = 0
+    burden: float = 0.0  # what using the edge costs elsewhere, as a standard uncertainty [J/mol]; for ranking only
 
     def key(self) -> tuple[object, ...]:
         """Best first. Heating over a covered range and water's formulation always lead, so that a level is continuous.
@@ -59,7 +61,7 @@ class Edge:
             self.kind not in ("definition", "heating", "formulation"),
             self.pin,
             self.status,
-            round(ranking_uncertainty(self.leg.parts), 9),
+            round(hypot(ranking_uncertainty(self.leg.parts), self.burden), 9),
             self.rank,
             _PHASE_ORDER.index(self.end.phase),
             self.end,
@@ -102,7 +104,7 @@ def collect(
     boiling: float | None,
     melting: float | None,
     critical: Critical | None,
-    associating: bool,
+    vapour: str,
     formulation: Formulation | None,
 ) -> list[Edge]:
     """All edges of a species but the heating ones, the chosen entry of each pair of nodes first.
@@ -141,9 +143,23 @@ def collect(
     vapours = {n for edge in edges for n in (edge.start, edge.end) if n.saturated}
     if formulation is not None:
         edges += _formulation_edges(formulation, vapours)
-    elif critical is not None and not associating:
-        edges += [_residual_edge(species, n, critical) for n in sorted(vapours) if n.temperature < critical.tc]
+    elif critical is not None and vapour != "associating":
+        links = {n: _residual_edge(species, n, critical, vapour) for n in vapours if n.temperature < critical.tc}
+        edges = [_burdened(edge, links.get(edge.end)) for edge in edges]
+        edges += [links[n] for n in sorted(links)]
     return edges
+
+
+#: Taking a latent heat to another temperature costs the uncertainty of two heat capacities: about 1 % of 250 J/mol/K.
+PER_KELVIN = 2.5
+
+
+def _burdened(edge: Edge, link: Edge | None) -> Edge:
+    """A latent heat to the real vapour ranks with the residual enthalpy behind it and its distance from 298.15 K."""
+    if link is None:
+        return edge
+    away = PER_KELVIN * (edge.end.temperature - T_STANDARD)
+    return replace(edge, burden=hypot(ranking_uncertainty(link.leg.parts), away))
 
 
 def _latent_edges(
@@ -194,20 +210,27 @@ def _latent_edges(
     return edges
 
 
-def _residual_edge(species: str, vapour: Node, c: Critical) -> Edge:
-    value, pressure, _ = residual.enthalpy(temperature=vapour.temperature, tc=c.tc, pc=c.pc, omega=c.omega)
-    gas = Node("g", "", vapour.temperature)
+def _residual_edge(species: str, node: Node, c: Critical, vapour: str) -> Edge:
+    value, pressure, _ = residual.enthalpy(temperature=node.temperature, tc=c.tc, pc=c.pc, omega=c.omega)
+    gas = Node("g", "", node.temperature)
     leg = Leg(
         what="residual enthalpy",
         species=species,
-        start=vapour.text(),
+        start=node.text(),
         end=gas.text(),
         value=-value,
-        parts=(Part(f"model:residual:{species}", -value, residual.standard(value) / max(abs(value), 1e-9), True),),
+        parts=(
+            Part(
+                f"model:residual:{species}",
+                -value,
+                residual.standard(value, vapour=vapour) / max(abs(value), 1e-9),
+                True,
+            ),
+        ),
         source=c.source,
-        note=f"{residual.EOS_NOTE}; saturated at {pressure / 1e5:.4g} bar",
+        note=f"{residual.note(vapour)}; saturated at {pressure / 1e5:.4g} bar",
     )
-    return Edge(vapour, gas, leg, "residual", status=USABLE_STATUSES.index("base"))
+    return Edge(node, gas, leg, "residual", status=USABLE_STATUSES.index("base"))
 
 
 def _formulation_edges(formulation: Formulation, vapours: set[Node]) -> list[Edge]:

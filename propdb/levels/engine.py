@@ -142,7 +142,7 @@ class Levels:
             boiling=boiling,
             melting=self.value(species, "Tm"),
             critical=critical,
-            associating=record.vapour == "associating",
+            vapour=record.vapour,
             formulation=formulation,
         )
         tree.grow(edges, extrapolate=self.extrapolate)
@@ -395,7 +395,9 @@ class Levels:
             return self.attach(species, State("l", t, pressure=p))
         node, moves = self.attach(species, State("g", t))
         shown = replace(state, temperature=t, pressure=p_used)
-        part = Part(f"model:residual:{species}", value, residual.standard(value) / max(abs(value), 1e-9), True)
+        kind = self.data.species(species).vapour
+        size = residual.standard(value, vapour=kind) / max(abs(value), 1e-9)
+        part = Part(f"model:residual:{species}", value, size, True)
         leg = Leg(
             what="residual enthalpy",
             species=species,
@@ -404,7 +406,7 @@ class Levels:
             value=value,
             parts=(part,),
             source=c.source,
-            note=residual.EOS_NOTE,
+            note=residual.note(kind),
         )
         edge = Edge(Node("g", "", t), Node("fluid", "", t, "vapour"), leg, "residual")
         return node, [*moves, Move(edge=edge)]

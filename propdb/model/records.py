@@ -37,7 +37,7 @@ class Species:
     cas: str = ""
     inchikey: str = ""
     synonyms: tuple[str, ...] = ()
-    vapour: str = ""  # "associating" where the vapour is not near ideal-monomer (carboxylic acids, HF)
+    vapour: str = ""  # "associating" (carboxylic acids, HF: no equation of state) or "hydrogen-bonding"
     kind: str = "species"  # or "pseudo"
     note: str = ""
 

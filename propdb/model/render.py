@@ -34,7 +34,12 @@ WIDTH = 100
 
 
 def _paragraph(title: str, text: str) -> list[str]:
-    return wrap(text, WIDTH, initial_indent=f"{title:<14}", subsequent_indent=" " * 14)
+    return _wrapped(text, f"{title:<14}")
+
+
+def _wrapped(text: str, first: str, rest: str | None = None) -> list[str]:
+    rest = " " * len(first) if rest is None else rest
+    return wrap(text, WIDTH, initial_indent=first, subsequent_indent=rest, break_on_hyphens=False)
 
 
 def _number(value: float, unit: str, *, sign: bool = False) -> str:
@@ -74,32 +79,40 @@ def explain(answer: _Derived) -> str:
         lines += _routes(answer)
     lines += _steps(answer)
     lines += ["", *_paragraph("Uncertainty", answer.uncertainty_note), *_paragraph("To be summed", answer.may_sum.why)]
-    if answer.closures:
-        lines += ["", f"Closures: what unused data say, less the path above [{answer.unit}]"]
-        rows = [
-            (
-                c.via,
-                _number(c.difference, answer.unit, sign=True),
-                f"combined standard uncertainty {_number(c.uncertainty, answer.unit)}"
-                if c.uncertainty is not None
-                else "no uncertainty stated",
-                f"[{c.entry[:8]}]" if c.entry else "",
-            )
-            for c in answer.closures
-        ]
-        lines += columns(rows, right=(1,))
+    lines += _closures(answer)
     if answer.warnings:
         lines += ["", "Mind"]
-        lines += [line for w in answer.warnings for line in wrap(w, WIDTH, initial_indent="  - ", subsequent_indent="    ")]
+        lines += [line for w in answer.warnings for line in _wrapped(w, "  - ")]
     if answer.sources:
         lines += ["", "Sources"]
         from propdb.model.cite import text
 
         for key in sorted(answer.sources):
             lines.append(f"  {key}")
-            lines += wrap(text(answer.sources[key]), WIDTH, initial_indent="    ", subsequent_indent="    ")
-    lines += ["", f"Store: {answer.store}", *wrap(CAUTION, WIDTH)]
+            lines += _wrapped(text(answer.sources[key]), "    ")
+    lines += ["", f"Store: {answer.store}", *_wrapped(CAUTION, "")]
     return "\n".join(lines)
+
+
+def _closures(answer: _Derived) -> list[str]:
+    """Closures that show in the last digit, largest first; those that agree in one line."""
+    if not answer.closures:
+        return []
+    last = 0.5 * 10.0 ** -enthalpy_decimals(parse_unit(answer.unit))
+    shown = sorted((c for c in answer.closures if abs(c.difference) >= last), key=lambda c: -abs(c.difference))
+    rows = []
+    for c in shown:
+        within = "uncertainty not stated"
+        if c.uncertainty is not None:
+            within = f"combined standard uncertainty {_number(c.uncertainty, answer.unit)}"
+        rows.append(
+            (c.via, _number(c.difference, answer.unit, sign=True), within, f"[{c.entry[:8]}]" if c.entry else "")
+        )
+    lines = ["", f"Closures: what unused data say, less the path above [{answer.unit}]", *columns(rows, right=(1,))]
+    agree = len(answer.closures) - len(shown)
+    if agree:
+        lines.append(f"  {agree} {'more ' if shown else ''}agree{'s' if agree == 1 else ''} to the last digit shown")
+    return lines
 
 
 def _routes(answer: ReactionAnswer) -> list[str]:
@@ -153,8 +166,8 @@ def _steps(answer: _Derived) -> list[str]:
     total = sum(s.value for s in answer.steps)
     rows.append(("sum", "", "", _number(total, unit), "", ""))
     lines = columns(rows, right=(3,))
-    notes = [f"  {_what(s, several)}: {s.note}" for s in answer.steps if s.note]
-    return lines + list(dict.fromkeys(notes))
+    notes = dict.fromkeys(f"{_what(s, several)}: {s.note}" for s in answer.steps if s.note)
+    return lines + [line for note in notes for line in _wrapped(note, "  * ")]
 
 
 def _what(step: Step, several: bool) -> str:

@@ -36,7 +36,7 @@ def defined(store: Store, species: str) -> list[str]:
     for name in names:
         try:
             store.convert("0 J/mol", species=species, from_=name, to=name, temperature="1000K")
-            shift(store, species, name, "gas-25C" if species != "carbon" else "elements-298K")
+            shift(store, species, name, "elements-298K")
         except PropdbError:
             continue
         found.append(name)
@@ -104,11 +104,9 @@ def test_a_level_is_the_sum_of_its_legs_and_steps_add_up(store: Store, species: 
         datum="elements-298K",
     )
     assert sum(s.value for s in answer.steps) == pytest.approx(answer.value, abs=1e-9)
-    for first, second in zip(answer.steps, answer.steps[1:], strict=False):
-        assert (
-            first.end.split(" (zero")[0] == second.start.split(" (zero")[0]
-            or "zero density" in first.end + second.start
-        )
+    chain = [step for step in answer.steps if step.what != "pressure along saturation"]
+    for first, second in zip(chain, chain[1:], strict=False):
+        assert first.end == second.start
 
 
 def test_an_entry_on_both_sides_cancels(store: Store) -> None:
