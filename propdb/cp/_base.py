@@ -22,6 +22,7 @@ from propdb.cp._blocks import (
     not_a_temperature,
     piece_of,
     temperatures,
+    too_extreme,
 )
 
 __all__ = ["Equation", "Jump", "PiecewiseEquation"]
@@ -223,9 +224,12 @@ class PiecewiseEquation:
             raise not_a_temperature(t)
         kernels = self.kernels
         kernel = kernels[0] if len(kernels) == 1 else kernels[piece_of(self.joints, t)]
-        value = kernel.value(kind, t)
+        try:
+            value = kernel.value(kind, t)
+        except ZeroDivisionError:
+            value = math.inf
         if not math.isfinite(value):
-            raise not_a_temperature(t)
+            raise too_extreme(t)
         return value
 
 

@@ -30,6 +30,7 @@ __all__ = [
     "piece_of",
     "refuse",
     "temperatures",
+    "too_extreme",
 ]
 
 FloatArray = NDArray[np.float64]
@@ -230,7 +231,7 @@ def refuse(x: FloatArray) -> NoReturn:
     flat = x.reshape(-1)
     (bad,) = np.nonzero(~(np.isfinite(flat) & (flat > 0.0)))
     if bad.size == 0:
-        raise TemperatureError("a temperature is too extreme to be evaluated", hint="temperatures are in K")
+        raise too_extreme(float(flat.min()), float(flat.max()))
     raise not_a_temperature(float(flat[bad[0]]), position=int(bad[0]))
 
 
@@ -238,3 +239,9 @@ def not_a_temperature(t: float, **fields: Any) -> TemperatureError:
     """The error for one bad temperature [K]."""
     problem = f"{t!r} K is not a finite temperature above 0 K"
     return TemperatureError(problem, hint="temperatures are in K", t=t, **fields)
+
+
+def too_extreme(*t: float) -> TemperatureError:
+    """The error for temperatures [K] at which a formula overflows."""
+    which = " to ".join(f"{x:.6g}" for x in dict.fromkeys(t))
+    return TemperatureError(f"{which} K is too extreme for this equation", hint="temperatures are in K")

@@ -11,7 +11,16 @@ from typing import Any, ClassVar, Self
 import numpy as np
 
 from propdb.cp._base import PiecewiseEquation, set_field
-from propdb.cp._blocks import CP, FloatArray, Kernel, Kind, Temperatures, temperatures
+from propdb.cp._blocks import (
+    CP,
+    FloatArray,
+    Kernel,
+    Kind,
+    Temperatures,
+    not_a_temperature,
+    refuse,
+    temperatures,
+)
 from propdb.cp._params import number, numbers, only, rows
 from propdb.cp._spline import SplineKernel
 from propdb.errors import EquationError, SplitError
@@ -126,10 +135,17 @@ class Table(PiecewiseEquation):
         if not self.unstated:
             return
         if isinstance(T1, (int, float)) and isinstance(T2, (int, float)):
-            first, second = (bisect_left(self.unstated, float(t)) for t in (T1, T2))
+            for t in (T1, T2):
+                if not 0.0 < t < math.inf:
+                    raise not_a_temperature(float(t))
+            first, second = (bisect_left(self.unstated, t) for t in (T1, T2))
             crossed = [] if first == second else [self.unstated[min(first, second)]]
         else:
-            first_side, second_side = (np.searchsorted(self.unstated, temperatures(t), side="left") for t in (T1, T2))
+            x1, x2 = temperatures(T1), temperatures(T2)
+            for x in (x1, x2):
+                if not np.all((x > 0.0) & (x < math.inf)):
+                    refuse(x)
+            first_side, second_side = (np.searchsorted(self.unstated, x, side="left") for x in (x1, x2))
             lower = np.minimum(first_side, second_side)[first_side != second_side]
             crossed = [self.unstated[int(lower.min())]] if lower.size else []
         if crossed:

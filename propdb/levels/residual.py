@@ -2,9 +2,7 @@
 
 A model, and said to be one. Near the boiling point it gives the residual enthalpy of a saturated vapour a third too
 small for benzene (second virial coefficients), and at a quarter of its size for water (IAPWS-95) and ethanol (closure
-of its latent heats). So a leg carries a standard uncertainty of half its value, where the vapour hydrogen-bonds of three
-times its value, and never less than 10 J/mol. Carboxylic acids and hydrogen fluoride associate, and the caller refuses
-them.
+of X
 """
 
 from __future__ import annotations

@@ -9,6 +9,7 @@ from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from fractions import Fraction
 from hashlib import sha256
+from operator import attrgetter
 from typing import Any
 
 from propdb.errors import InvalidInput, NotFound
@@ -42,6 +43,9 @@ HASHED = (
     "source",
     "locator",
 )
+_fields = attrgetter(*HASHED)
+_AT_PARAMS = HASHED.index("params")
+_AT_NUMBERS = tuple(map(HASHED.index, _NUMBERS))
 
 
 @dataclass(frozen=True, slots=True)
@@ -82,7 +86,7 @@ class Member:
     status: str
     note: str
     printed: bool
-    carriers: list[Carrier]
+    carriers: tuple[Carrier, ...]
 
 
 def members(content: Content) -> dict[str, Member]:
@@ -94,11 +98,11 @@ def members(content: Content) -> dict[str, Member]:
         extra = content.carriers.get(entry.id, ())
         member = found.get(entry.id)
         if member is None:
-            found[entry.id] = Member(entry, status, note, entry.printed, list(dict.fromkeys((*entry.carriers, *extra))))
+            found[entry.id] = Member(entry, status, note, entry.printed, (*entry.carriers, *extra))
             continue
         member.status = max(member.status, status, key=STATUSES.index)
         member.printed = member.printed or entry.printed
-        member.carriers = list(dict.fromkeys((*member.carriers, *entry.carriers, *extra)))
+        member.carriers = (*member.carriers, *entry.carriers, *extra)
         if note != member.note:
             member.note = "; ".join(sorted({*member.note.split("; "), *note.split("; ")} - {""}))
     return found
@@ -116,6 +120,9 @@ def _plain(value: object) -> Any:
     raise TypeError(f"{type(value).__name__} cannot be stored as JSON")
 
 
+_ENCODER = json.JSONEncoder(sort_keys=True, separators=(",", ":"), allow_nan=False, default=_plain)
+
+
 def canonical(value: object) -> str:
     """One text for one value: JSON, keys sorted, floats by ``repr``, ASCII.
 
@@ -125,7 +132,7 @@ def canonical(value: object) -> str:
         NaN, an infinite number, or something that JSON cannot hold.
     """
     try:
-        return json.dumps(value, sort_keys=True, separators=(",", ":"), allow_nan=False, default=_plain)
+        return _ENCODER.encode(value)
     except (TypeError, ValueError, RecursionError) as error:
         raise InvalidInput(
             f"cannot be stored as JSON: {error}", hint="use texts, finite numbers, lists and tables"
@@ -139,14 +146,11 @@ def identity(species: Species) -> str:
 
 def hashed_row(entry: Entry) -> tuple[Any, ...]:
     """The hashed fields of an entry as they are stored: numbers as floats, params as canonical JSON."""
-    row: list[Any] = []
-    for name in HASHED:
-        value = getattr(entry, name)
-        if name == "params":
-            value = canonical(value)
-        elif name in _NUMBERS and value is not None:
-            value = float(value) + 0.0  # SQLite keeps neither an int nor the sign of zero in a REAL column
-        row.append(value)
+    row = list(_fields(entry))
+    row[_AT_PARAMS] = canonical(row[_AT_PARAMS]) if row[_AT_PARAMS] else "{}"
+    for at in _AT_NUMBERS:
+        if row[at] is not None:
+            row[at] = float(row[at]) + 0.0  # SQLite keeps neither an int nor the sign of zero in a REAL column
     return tuple(row)
 
 
@@ -232,10 +236,11 @@ def content_hash(content: Content) -> str:
 
     An entry goes in by its id, which hashes its fields. Carriers, own data and the log stay out.
     """
-    return _hash_of(content, members(content))
+    return hash_of(content, members(content))
 
 
-def _hash_of(content: Content, held: Mapping[str, Member]) -> str:
+def hash_of(content: Content, held: Mapping[str, Member]) -> str:
+    """:func:`content_hash`, for a content whose members are known."""
     return parts_hash(
         (canonical(species_body(s)) for s in content.species),
         (canonical(source_body(s)) for s in content.sources),

@@ -148,8 +148,24 @@ def _look(path: Path, *, create: bool) -> None:
         raise StoreError(f"cannot be read: {error.strerror}", where=where, reason="unreadable") from error
     if not head.startswith(_MAGIC):
         raise StoreError("not a propdb store (not an SQLite file)", where=where, reason="not-sqlite", hint=_move(path))
-    if size < 512:
+    if size < 512 or _cut_short(path, head):
         raise StoreError("the file is damaged or truncated", where=where, reason="damaged", hint=_restore(path))
+
+
+def _cut_short(path: Path, head: bytes) -> bool:
+    """Is the file shorter than its header says? SQLite does not notice when less than a page is missing.
+
+    See "The Database Header" in the SQLite file format. While changes lie beside the file, its header may be ahead of it.
+    """
+    if head[24:28] != head[92:96]:  # the count of pages is not valid
+        return False
+    page = int.from_bytes(head[16:18], "big")
+    whole = int.from_bytes(head[28:32], "big") * (65536 if page == 1 else page)
+    for beside in ("-wal", "-journal"):
+        with contextlib.suppress(OSError):
+            if os.stat(f"{path}{beside}").st_size:
+                return False
+    return path.stat().st_size < whole
 
 
 def _connect(uri: str, timeout: float) -> sqlite3.Connection:

@@ -102,7 +102,7 @@ def _add(
 ) -> str:
     if entry.id != row_id(identity(species), hashed_row(entry)):  # pragma: no cover - validate_entry has refused it
         raise InvalidInput("the id is not that of its fields", where=f"entry {entry.id}")
-    member = Member(entry, "draft", entry.note, entry.printed, list(dict.fromkeys((*entry.carriers, carrier))))
+    member = Member(entry, "draft", entry.note, entry.printed, (*entry.carriers, carrier))
     row = put_entries(conn, [member], {species.name: species})[entry.id]
     if conn.execute("SELECT 1 FROM base_entry WHERE entry = ? AND own = 1", (row,)).fetchone() is None:
         event = log.append(conn, "created", entry=entry.id, who=who, comment=comment)

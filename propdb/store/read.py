@@ -21,8 +21,8 @@ __all__ = ["Reader"]
 #: Memberships with the rows of ``species`` that list them (s) and that stand for these (t), from either end.
 _BY_SPECIES: Final = "species t CROSS JOIN species s ON s.canon = t.id CROSS JOIN base_entry b ON b.species = s.id"
 _BY_ENTRY: Final = "base_entry b CROSS JOIN species s ON s.id = b.species CROSS JOIN species t ON t.id = s.canon"
-_COLUMNS: Final = f"e.num, e.id, t.name, b.status, b.note, b.printed, {LOGGED}, {ENTRY_COLUMNS}"
-_AHEAD: Final = 7  # columns before those of the entry
+_COLUMNS: Final = f"e.num, e.id, t.name, b.own, b.status, b.note, b.printed, {LOGGED}, {ENTRY_COLUMNS}"
+_AHEAD: Final = 8  # columns before those of the entry
 #: A species that the base or the user holds, or that has entries.
 SEEN: Final = (
     "(active = 1 OR own = 1 OR EXISTS"
@@ -80,7 +80,7 @@ class Reader(View):
         self._fresh()
         found = self._species.get(name)
         if found is None:
-            with self._snapshot():
+            with self._snapshot(fresh=False):
                 values = self._view | {"name": name}
                 row = next(species_of(self.conn, f"canon = id AND name = :name AND {SEEN}", values), None)
             if row is None:
@@ -104,7 +104,7 @@ class Reader(View):
         self._fresh()
         found = self._entries.get(species)
         if found is None:
-            with self._snapshot():
+            with self._snapshot(fresh=False):
                 found = self._read(_BY_SPECIES, "t.name = :name AND t.canon = t.id", self._view | {"name": species})
             if not found:
                 self.species(species)
@@ -114,33 +114,36 @@ class Reader(View):
     def _read(self, start: str, where: str, values: Mapping[str, Any]) -> tuple[Entry, ...]:
         """The active entries that ``where`` selects, starting from ``start``: SQL of this module."""
         execute = self.conn.execute
-        # A base's word on status and note goes before the user's draft of the same entry: it comes first.
         rows: dict[int, tuple[Any, ...]] = {}
         for row in execute(
             f"SELECT {_COLUMNS} FROM {start} CROSS JOIN entry e ON e.num = b.entry"
-            f" WHERE {where} AND {MEMBER} ORDER BY b.own",
+            f" WHERE {where} AND {MEMBER}",
             values,
         ):
-            rows.setdefault(row[0], row)
-        carriers: dict[int, dict[Carrier, None]] = {}
+            if row[0] in rows and row[3]:
+                continue  # a base's word on status and note goes before the user's draft of the same entry
+            rows[row[0]] = row
+        carriers: dict[int, list[Carrier]] = {number: [] for number in rows}
         known = self._carriers
-        for number, *rest in execute(
+        for row in execute(
             "SELECT c.entry, c.package, c.version, c.file, c.row, c.how"
             f" FROM {start} CROSS JOIN carrier c ON c.entry = b.entry WHERE {where} AND {MEMBER}",
             values,
         ):
-            key = tuple(rest)
+            key = row[1:]
             carrier = known.get(key)
             if carrier is None:
                 carrier = known[key] = carrier_from(key)
-            carriers.setdefault(number, {})[carrier] = None
-        found = [self._entry(row, tuple(carriers.get(number, ()))) for number, row in rows.items()]
+            held = carriers[row[0]]
+            if carrier not in held:  # an entry both own and of the base comes twice
+                held.append(carrier)
+        found = [self._entry(row, tuple(carriers[number])) for number, row in rows.items()]
         found.sort(key=_order)
         return tuple(found)
 
     def _entry(self, row: tuple[Any, ...], carriers: tuple[Carrier, ...]) -> Entry:
         """The record of a row of ``_COLUMNS``; the one made before where nothing about it has changed."""
-        num, number, species, status, note, printed, logged = row[:_AHEAD]
+        num, number, species, _, status, note, printed, logged = row[:_AHEAD]
         status = logged or status
         known = self._decoded.get(num)
         if known is not None and (known.status, known.note, known.species, known.carriers) == (
@@ -221,7 +224,7 @@ class Reader(View):
         self._fresh()
         found = self._sources.get(key)
         if found is None:
-            with self._snapshot():
+            with self._snapshot(fresh=False):
                 # Also one that the base no longer holds: older entries cite it.
                 found = next(sources_of(self.conn, "key = ?", (key,)), None)
             if found is None:

@@ -72,6 +72,8 @@ def species_row(species: Species) -> dict[str, Any]:
 
 
 def _count(text: str) -> Fraction | int:
+    if text.isdecimal():
+        return int(text)
     count = Fraction(text)
     return count.numerator if count.denominator == 1 else count
 

@@ -87,9 +87,9 @@ class View:
     def _translated(self, error: BaseException) -> PropdbError:
         return translate(error, self.path) or StoreError(str(error), where=f"store {self.path}")
 
-    def _snapshot(self) -> _Snapshot:
-        """Context in which all reads see one state of the store."""
-        return _Snapshot(self)
+    def _snapshot(self, *, fresh: bool = True) -> _Snapshot:
+        """Context in which all reads see one state of the store. ``fresh=False`` where :meth:`_fresh` came just before."""
+        return _Snapshot(self, fresh)
 
     @property
     def base(self) -> log.Event:
@@ -118,10 +118,11 @@ class View:
 class _Snapshot:
     """A read transaction, unless one is open already; ``sqlite3`` errors are translated on the way out."""
 
-    __slots__ = ("began", "view")
+    __slots__ = ("began", "fresh", "view")
 
-    def __init__(self, view: View) -> None:
+    def __init__(self, view: View, fresh: bool) -> None:
         self.view = view
+        self.fresh = fresh
         self.began = False
 
     def __enter__(self) -> None:
@@ -130,7 +131,8 @@ class _Snapshot:
             if not view.conn.in_transaction:
                 view.conn.execute("BEGIN")
                 self.began = True
-            view._fresh()
+            if self.fresh:
+                view._fresh()
         except BaseException as error:
             self._end()
             if isinstance(error, sqlite3.Error):

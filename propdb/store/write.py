@@ -20,6 +20,7 @@ from propdb.store.content import (
     canonical,
     content_hash,
     entry_id,
+    hash_of,
     hashed_row,
     identity,
     members,
@@ -91,7 +92,7 @@ def build(
     tell: Progress = progress or (lambda text: None)
     tell(f"checking {len(content.entries)} entries")
     held = validate(content)
-    digest = content_hash(content)
+    digest = hash_of(content, held)
     with closing(open_store(path, write=True, create=True, timeout=timeout)) as conn, mapped(path):
         with immediate(conn):
             before = log.last_base(conn)
@@ -160,7 +161,7 @@ def put_sources(db: Database, sources: Sequence[Source], *, own: int) -> int:
     """Insert or replace sources; with ``own=0`` those that are not listed become inactive. How many changed."""
     old = {source.key: source_row(source) | {"lineage": source.lineage} for source in _stored_sources(db.conn, own)}
     changed = [s for s in sources if old.get(s.key) != source_row(s) | {"lineage": tuple(map(tuple, s.lineage))}]
-    db.table("source_key").insert_all(({"key": s.key} for s in sources), ignore=True)
+    db.conn.executemany("INSERT OR IGNORE INTO source_key (key) VALUES (?)", [(s.key,) for s in sources])
     if changed:
         db.table("source").upsert_all([{**source_row(s), "own": own, "active": 1} for s in changed], pk=("key", "own"))
     for source in changed:
