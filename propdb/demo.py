@@ -9,12 +9,13 @@ from __future__ import annotations
 
 import sys
 from dataclasses import dataclass
+from textwrap import wrap
 
 from propdb.api import Store
 from propdb.api import open as open_store
 from propdb.errors import DatumMismatch, PropdbError
 from propdb.model.answer import Answer
-from propdb.model.render import columns
+from propdb.model.render import WIDTH, columns
 
 COMMON = "elements-298K"
 
@@ -40,10 +41,10 @@ def _gas(store: Store, species: str, temperature: str) -> str:
 
 def streams(store: Store) -> list[Stream]:
     """The streams of the Harrow Lane boiler house (invented)."""
-    fuel = store.show("methane", quantity="Hf", phase="g").entries[0]
+    fuel = store.enthalpy("methane", phase="g", temperature="25C", datum=COMMON)
     flue = [("carbon dioxide", 100.0), ("water", 200.0), ("oxygen", 30.0), ("nitrogen", 865.2)]
     return [
-        Stream("fuel, 25 C", "methane", 100.0, False, f"{fuel.carried} {fuel.carried_unit}", "elements-298K", True),
+        Stream("fuel, 25 C", "methane", 100.0, False, f"{fuel.value:.3f} kJ/mol", COMMON, True),
         Stream("air: oxygen, 25 C", "oxygen", 230.0, False, _gas(store, "oxygen", "25C"), "gas-25C", True),
         Stream("air: nitrogen, 25 C", "nitrogen", 865.2, False, _gas(store, "nitrogen", "25C"), "gas-25C", True),
         Stream("feed water, 105 C", "water", 30.9, True, "440.2 kJ/kg", "steam-triple-point", True),
@@ -92,7 +93,7 @@ def run(store: Store) -> list[str]:
     try:
         store.reaction("CH4(g) + 2 O2(g) -> CO2(g) + 2 H2O(g)", temperature="180C", datum="gas-25C")
     except DatumMismatch as error:
-        lines += [f"  {error}", ""]
+        lines += [*wrap(str(error), WIDTH, initial_indent="  ", subsequent_indent="  "), ""]
     answers = [_converted(store, s) for s in rows]
     head = ("stream", f"on {COMMON}", "", "enthalpy flow [MW]", "what was added")
     body = []
