@@ -72,7 +72,7 @@ class SplineKernel:
         self._h = np.zeros((count, 5))  # quartics of h, constant first
         self._h[:, 1:] = cubics / np.arange(1.0, 5.0)
         # One row more at either end, for what lies beyond the table: there a series need not converge.
-        beyond = _about(cubics[-1].tolist(), float(edges[-1] - edges[-2]), 1.0)
+        beyond = _about(cubics[-1:], edges[-1:] - edges[-2:-1], 1.0)[0].tolist()
         self._anchors = np.concatenate([edges[:1], edges])
         self._s = np.array(
             [
@@ -101,16 +101,22 @@ class SplineKernel:
         self._inverse = 1.0 / width
         count = math.ceil(edges[-1] / width) + 1
         self._last = float(count - 1)
+        number = np.arange(count)
+        left, right = number * width, (number + 1) * width
+        slack = 1e-12 * right
+        i = np.searchsorted(edges, left + slack, side="right") - 1
+        whole = (i >= 0) & (i < len(cubics))
+        i[~whole] = 0
+        from_edge, to_edge = left - edges[i], edges[i + 1] - right
+        whole &= to_edge >= -slack
+        # Rounding may put a temperature next to a cell's edge into the neighbouring cell. That is harmless where the
+        # curve is continuous, and wrong at a split.
+        split = np.isin(np.arange(len(edges)), list(breaks))
+        whole &= ~((split[i] & (from_edge <= slack)) | (split[i + 1] & (to_edge <= slack)))
         by_kind = []
         for rows in (cubics, self._h):
-            cells = np.full((count, rows.shape[1]), np.nan)
-            for number in range(count):
-                left, right = number * width, (number + 1) * width
-                slack = 1e-12 * right
-                i = int(np.searchsorted(edges, left + slack, side="right")) - 1
-                whole = 0 <= i < len(rows) and right <= edges[i + 1] + slack
-                if whole and not _touches_break(edges, breaks, i, left, right, slack):
-                    cells[number] = _about(rows[i].tolist(), left - float(edges[i]), width)
+            cells = _about(rows[i], from_edge, width)
+            cells[~whole] = np.nan
             by_kind.append(cells)
         self._cell_rows: tuple[list[list[float]], ...] = tuple(cells.tolist() for cells in by_kind)
         # Coefficients in pairs: one look-up of 16 bytes costs what one of 8 bytes does.
@@ -241,20 +247,14 @@ def _cell_width(edges: FloatArray) -> float:
     return best
 
 
-def _touches_break(edges: FloatArray, breaks: frozenset[int], i: int, left: float, right: float, slack: float) -> bool:
-    # Rounding may put a temperature next to a cell's edge into the neighbouring cell. That is harmless where the
-    # curve is continuous, and wrong at a split.
-    return (i in breaks and left - edges[i] <= slack) or (i + 1 in breaks and edges[i + 1] - right <= slack)
-
-
-def _about(row: list[float], shift: float, width: float) -> list[float]:
-    """Coefficients of the same polynomial in (u - shift)/width."""
-    row = list(row)
-    last = len(row) - 1
+def _about(rows: FloatArray, shift: FloatArray, width: float) -> FloatArray:
+    """Coefficients, a polynomial per row, of the same polynomials in (u - shift)/width."""
+    rows = rows.copy()
+    last = rows.shape[1] - 1
     for k in range(last):
         for j in range(last - 1, k - 1, -1):
-            row[j] += shift * row[j + 1]
-    return [c * width**k for k, c in enumerate(row)]
+            rows[:, j] += shift * rows[:, j + 1]
+    return np.asarray(rows * width ** np.arange(last + 1))
 
 
 def _pairs(rows: FloatArray) -> tuple[NDArray[np.complex128], NDArray[np.complex128]]:
