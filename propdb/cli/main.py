@@ -17,7 +17,7 @@ import typer
 
 from propdb._version import __version__
 from propdb.cli.app import MINUS, AsOfOption, JsonOption, PipeClosed, StoreOption, VerbGroup, merge, note, write
-from propdb.errors import PropdbError
+from propdb.errors import InvalidInput, PropdbError
 
 #: Verb -> module that holds it, one line of help.
 VERBS: Mapping[str, tuple[str, str]] = MappingProxyType(
@@ -109,6 +109,9 @@ def _run(words: list[str]) -> int:
         return _INTERRUPTED
     except (PipeClosed, BrokenPipeError):
         raise
+    except UnicodeError as error:
+        note(_line(f"{getattr(error, 'object', 'an argument')!r} is not text in UTF-8; type it again"))
+        return InvalidInput.exit_code
     except OSError as error:
         if error.errno == errno.EPIPE:
             raise

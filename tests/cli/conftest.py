@@ -48,7 +48,8 @@ def run_line(*words: str, encoding: str = "utf-8") -> Result:
     arguments = shlex.split(words[0]) if len(words) == 1 else list(words)
     if arguments[:1] == ["propdb"]:
         arguments = arguments[1:]
-    out, err = (io.TextIOWrapper(io.BytesIO(), encoding=encoding, newline="\n") for _ in range(2))
+    out = io.TextIOWrapper(io.BytesIO(), encoding=encoding, newline="\n")
+    err = io.TextIOWrapper(io.BytesIO(), encoding=encoding, newline="\n", errors="backslashreplace")  # as Python does
     with pytest.MonkeyPatch.context() as patch:
         patch.setattr(sys, "stdout", out)
         patch.setattr(sys, "stderr", err)

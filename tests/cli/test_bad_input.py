@@ -115,6 +115,7 @@ CASES: list[tuple[str, type[PropdbError], tuple[str, ...]]] = [
     ("enthalpy nitrogen --phase g --temperature 25C", InvalidInput, ("--datum",)),
     ("convert 10 kJ/mol --from gas-25C --to gas-0C", InvalidInput, ("--species",)),
     ("--store", InvalidInput, ("--store",)),
+    ("find \udcff", InvalidInput, ("UTF-8",)),
 ]
 
 
@@ -313,7 +314,7 @@ def test_nothing_typed_is_a_fault(line: Any, words: list[str]) -> None:
 
 
 @pytest.mark.full
-@settings(max_examples=5000, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
+@settings(max_examples=2000, deadline=None, suppress_health_check=[HealthCheck.function_scoped_fixture])
 @given(st.lists(st.one_of(_WORDS, st.text(max_size=20)), max_size=14))
 def test_nothing_typed_is_a_fault_at_length(line: Any, words: list[str]) -> None:
     result = line(*words, "--limit") if len(words) == 1 else line(*words)
