@@ -6,6 +6,7 @@ A new verb is one module with an ``app`` and one line in :data:`VERBS`.
 from __future__ import annotations
 
 import errno
+import io
 import os
 import re
 import sys
@@ -77,8 +78,10 @@ def _root(
 
 def run(arguments: Sequence[str] | None = None) -> None:
     """Run one command line (default: that of the process) and exit with its code."""
-    _prepare(sys.stdout)
-    _prepare(sys.stderr)
+    for name in ("stdout", "stderr"):
+        if getattr(sys, name) is None:  # closed by the shell
+            setattr(sys, name, io.StringIO())
+        _prepare(getattr(sys, name))
     words = [_NEGATIVE.sub(MINUS, word, count=1) if _NEGATIVE.match(word) else word for word in _words(arguments)]
     try:
         code = _run(words)
@@ -87,6 +90,10 @@ def run(arguments: Sequence[str] | None = None) -> None:
         code = _close_pipe()
     except KeyboardInterrupt:
         code = _INTERRUPTED
+    except OSError as error:
+        note(_line(f"the output cannot be written: {error.strerror or error}"))
+        _close_pipe()
+        code = 1
     sys.exit(code)
 
 
@@ -115,7 +122,9 @@ def _run(words: list[str]) -> int:
     except OSError as error:
         if error.errno == errno.EPIPE:
             raise
-        note(_line(f"{error.filename or 'the system'}: {error.strerror or error}"))
+        if error.filename is None:
+            raise
+        note(_line(f"{error.filename}: {error.strerror or error}"))
         return 1
     except Exception as error:
         if os.environ.get("PROPDB_TRACEBACK"):

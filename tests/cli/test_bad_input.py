@@ -269,6 +269,27 @@ def test_nobody_reads_the_output(default_store: Path) -> None:
     assert err == b""
 
 
+@pytest.mark.skipif(not Path("/dev/full").exists(), reason="needs /dev/full")
+@pytest.mark.parametrize("words", [["store", "path"], ["datum", "list"], ["--version"]])
+def test_a_full_disk_under_the_output(default_store: Path, words: list[str]) -> None:
+    with Path("/dev/full").open("w") as full:
+        done = subprocess.run(
+            [sys.executable, "-m", "propdb", *words], stdout=full, stderr=subprocess.PIPE, text=True, check=False
+        )
+    assert done.returncode == 1
+    assert done.stderr.startswith("propdb: the output cannot be written")
+    assert done.stderr.count("\n") == 1
+
+
+@pytest.mark.skipif(sys.platform == "win32", reason="closes a file descriptor the POSIX way")
+def test_a_closed_output(default_store: Path) -> None:
+    code = (
+        f"import os; os.close(1); os.execv({sys.executable!r}, [{sys.executable!r}, '-m', 'propdb', 'store', 'path'])"
+    )
+    done = subprocess.run([sys.executable, "-c", code], stderr=subprocess.PIPE, text=True, check=False)
+    assert "Traceback" not in done.stderr
+
+
 def test_an_interrupt_is_no_traceback(line: Any, monkeypatch: pytest.MonkeyPatch) -> None:
     def interrupt(*_: object, **__: object) -> None:
         raise KeyboardInterrupt
