@@ -155,7 +155,7 @@ def _look(path: Path, *, create: bool) -> None:
 def _cut_short(path: Path, head: bytes) -> bool:
     """Is the file shorter than its header says? SQLite does not notice when less than a page is missing.
 
-    See "The Database Header" in the SQLite file format. While changes lie beside the file, its header may be ahead of it.
+    See "The Database Header" in the SQLite file format. While changes lie beside the file, its header may be ahead.
     """
     if head[24:28] != head[92:96]:  # the count of pages is not valid
         return False

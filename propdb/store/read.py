@@ -116,8 +116,7 @@ class Reader(View):
         execute = self.conn.execute
         rows: dict[int, tuple[Any, ...]] = {}
         for row in execute(
-            f"SELECT {_COLUMNS} FROM {start} CROSS JOIN entry e ON e.num = b.entry"
-            f" WHERE {where} AND {MEMBER}",
+            f"SELECT {_COLUMNS} FROM {start} CROSS JOIN entry e ON e.num = b.entry WHERE {where} AND {MEMBER}",
             values,
         ):
             if row[0] in rows and row[3]:

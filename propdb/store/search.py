@@ -24,7 +24,7 @@ _AFTER_ALL: Final = "\U0010ffff"
 
 @dataclass(frozen=True, slots=True)
 class Match:
-    """A species that may be meant. ``score``: 98 to 100 exact, 60 to 90 a beginning, 40 to 60 a part, less is alike."""
+    """A species that may be meant. ``score``: 97 to 100 exact, 60 to 90 a beginning, 40 to 60 a part, less is alike."""
 
     name: str
     formula: str  # with charge
@@ -85,6 +85,9 @@ def find(reader: Reader, text: str, limit: int = 10) -> list[Match]:
         execute = reader.conn.execute
         for number, kind in _exact(reader, text):
             scores[number] = max({"synonym": 99.0}.get(kind, 100.0), scores.get(number, 0.0))
+        other_case = "SELECT species FROM name WHERE kind = 'formula' AND folded = ? COLLATE NOCASE"
+        for (number,) in execute(other_case, (text.strip(),)).fetchall():
+            scores[number] = max(97.0, scores.get(number, 0.0))
         if len(wanted) == 14 and wanted.isalpha():
             block = wanted.upper()
             rows = execute(
@@ -137,6 +140,8 @@ def _exact(reader: Reader, text: str) -> list[tuple[int, str]]:
 
 def _containing(reader: Reader, wanted: str, limit: int) -> list[tuple[int, str]]:
     """(row of species, folded name) for the shortest names that contain ``wanted``."""
+    if "\0" in wanted:  # no name holds one, and a query ends at it
+        return []
     trigrams = sorted({wanted[i : i + 3] for i in range(len(wanted) - 2)})
     query = " AND ".join('"' + trigram.replace('"', '""') + '"' for trigram in trigrams)
     sql = (
@@ -163,9 +168,9 @@ def _alike(reader: Reader, wanted: str, limit: int) -> dict[int, float]:
 def resolve(reader: Reader, text: str) -> Species:
     """The one species that ``text`` is exactly.
 
-    A CAS RN or InChIKey; then a primary name; then a formula, or a synonym as it is written; then a synonym in another
-    case. The first of these that any species answers to decides, so that ``Co`` is cobalt even where carbon monoxide
-    has the synonym ``CO``.
+    A CAS RN or InChIKey; then a primary name; then a formula, or a synonym as it is written; then either in another
+    case. The first of these that any species answers to decides: ``Co`` is cobalt, even where carbon monoxide has the
+    synonym ``CO``, and ``co`` may be both.
 
     Raises
     ------
@@ -191,7 +196,10 @@ def resolve(reader: Reader, text: str) -> Species:
                 *rows("folded = ? AND kind = 'synonym' AND text = ?", wanted, plain),
                 *((rows("folded = ? AND kind = 'formula'", formula)) if (formula := _formula(plain)) else []),
             ],
-            lambda: rows("folded = ? AND kind = 'synonym'", wanted),
+            lambda: [
+                *rows("folded = ? AND kind = 'synonym'", wanted),
+                *rows("folded = ? COLLATE NOCASE AND kind = 'formula'", plain),
+            ],
         ]
         for tier in tiers:
             names = sorted({row[1] for row in _visible(reader, tier()).values()})

@@ -88,7 +88,7 @@ class View:
         return translate(error, self.path) or StoreError(str(error), where=f"store {self.path}")
 
     def _snapshot(self, *, fresh: bool = True) -> _Snapshot:
-        """Context in which all reads see one state of the store. ``fresh=False`` where :meth:`_fresh` came just before."""
+        """Context in which all reads see one state of the store. ``fresh=False`` right after :meth:`_fresh`."""
         return _Snapshot(self, fresh)
 
     @property

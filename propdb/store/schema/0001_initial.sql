@@ -48,6 +48,7 @@ CREATE TABLE name (
 ) STRICT;
 CREATE INDEX name_folded ON name (folded, kind, species);
 CREATE INDEX name_species ON name (species);
+CREATE INDEX name_formula ON name (folded COLLATE NOCASE) WHERE kind = 'formula';
 
 -- detail=none keeps only which rows hold a trigram; the search ANDs the trigrams and then compares the text itself.
 CREATE VIEW name_text AS SELECT num, folded FROM name WHERE kind IN ('name', 'synonym');
