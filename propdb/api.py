@@ -14,7 +14,7 @@ from typing import TYPE_CHECKING, Any
 
 from propdb._version import __version__
 from propdb.errors import DatumError, IntegrityError, InvalidInput, NotFound, StoreError, Unbalanced
-from propdb.model.records import PHASES, QUANTITIES, Datum, Entry, Source, Species, State
+from propdb.model.records import QUANTITIES, Datum, Entry, Source, Species, State
 from propdb.model.sheet import SpeciesSheet
 from propdb.store.open import default_path
 from propdb.store.read import Reader
@@ -25,7 +25,6 @@ if TYPE_CHECKING:
 
     from propdb.levels.engine import Levels
     from propdb.model.answer import Answer, ReactionAnswer
-    from propdb.units import EnthalpyUnit
 
 __all__ = ["Store", "open"]
 
@@ -134,7 +133,9 @@ class Store:
             hint = f"did you mean {near}?" if near else f"quantities are {' '.join(QUANTITIES)}"
             raise NotFound(f"no quantity {quantity!r}", hint=hint)
         if phase is not None:
-            _phase(phase)
+            from propdb.levels.typed import read_phase
+
+            read_phase(phase)
         entries = self._reader.entries(record.name)
         keys = {e.source for e in entries}
         if source is not None and source not in keys:
@@ -159,7 +160,18 @@ class Store:
 
     def source_show(self, key: str) -> Source:
         """One source. Raises NotFound, with the nearest keys."""
-        return self._reader.source(key)
+        try:
+            return self._reader.source(key)
+        except NotFound as error:
+            from difflib import get_close_matches
+
+            keys = [source.key for source in self._reader.sources()]
+            near = [k for k in keys if key and k.startswith(key.lower())] or get_close_matches(
+                key, keys, n=3, cutoff=0.5
+            )
+            if near:
+                error.hint = f"did you mean {' or '.join(near[:3])}?"
+            raise
 
     def source_cite(self, key: str, format: str = "text") -> str:
         """A citation as ``text``, ``bibtex`` or ``csl-json``. Raises NotFound or InvalidInput."""
@@ -172,7 +184,7 @@ class Store:
         }
         if format not in writers:
             raise InvalidInput(f"no citation format {format!r}", hint=f"formats are {', '.join(writers)}")
-        return writers[format](self._reader.source(key))
+        return writers[format](self.source_show(key))
 
     # -- datums ---------------------------------------------------------------------------------------------------
 
@@ -271,11 +283,13 @@ class Store:
             NotFound, Ambiguous, OutOfRange, NoData, InvalidInput: one line each, with the next thing to type.
         """
         from propdb.levels.answers import enthalpy
+        from propdb.levels.typed import read_state
+        from propdb.units import parse_unit
 
         record = resolve(self._reader, species)
-        per = _unit(unit)
+        per = parse_unit(unit)
         levels = self._engine(source, extrapolate)
-        state = _state(record, phase, form, temperature, pressure, saturated, levels)
+        state = read_state(record, phase, form, temperature, pressure, saturated)
         return enthalpy(levels, species=record, state=state, datum=self.datum_show(datum), unit=per, stamp=self._stamp)
 
     def convert(
@@ -314,12 +328,13 @@ class Store:
             As :meth:`enthalpy`; NoData names the formation enthalpy or latent heat that is missing.
         """
         from propdb.levels.answers import convert
-        from propdb.units import parse_quantity
+        from propdb.levels.typed import read_phase, read_temperature
+        from propdb.units import parse_quantity, parse_unit
 
         text = f"{value} {unit}" if unit else str(value)
         quantity = parse_quantity(text)
         record = resolve(self._reader, species)
-        per = _unit(to_unit) if to_unit else quantity.unit
+        per = parse_unit(to_unit) if to_unit else quantity.unit
         levels = self._engine(source, extrapolate)
         return convert(
             levels,
@@ -330,8 +345,8 @@ class Store:
             target_datum=self.datum_show(to),
             unit=per,
             stamp=self._stamp,
-            phase=_phase(phase) if phase else "g",
-            temperature=None if temperature is None else _temperature(temperature),
+            phase=read_phase(phase) if phase else "g",
+            temperature=None if temperature is None else read_temperature(temperature),
         )
 
     def reaction(
@@ -369,11 +384,13 @@ class Store:
             As :meth:`enthalpy`.
         """
         from propdb.levels.reactions import Participant, reaction
+        from propdb.levels.typed import read_phase, read_temperature
         from propdb.model.equation import imbalance, parse_equation
+        from propdb.units import parse_unit
 
         parsed = parse_equation(equation)
-        t = _temperature(temperature)
-        per = _unit(unit)
+        t = read_temperature(temperature)
+        per = parse_unit(unit)
         if per.basis == "mass":
             raise InvalidInput(f"a heat of reaction in {per.text}", hint="it is per mole of reaction: use kJ/mol")
         participants = []
@@ -383,7 +400,7 @@ class Store:
                 raise InvalidInput(
                     f"{term.name} has no phase in the equation", hint=f"write e.g. {term.name}(g) or {term.name}(l)"
                 )
-            participants.append(Participant(coefficient, record, State(_phase(term.phase), t, term.form)))
+            participants.append(Participant(coefficient, record, State(read_phase(term.phase), t, term.form)))
         excess = imbalance((p.coefficient, dict(p.species.composition), p.species.charge) for p in participants)
         if excess:
             shown = ", ".join(f"{what} {'+' if n > 0 else ''}{n}" for what, n in sorted(excess.items()))
@@ -414,7 +431,7 @@ class Store:
             self._stamp = stamp
         pinned = tuple(key.strip() for key in source.split(",")) if source else ()
         for key in pinned:
-            self._reader.source(key)
+            self.source_show(key)
         choice = (pinned, extrapolate)
         if choice not in self._levels:
             data = _Data(self)
@@ -523,71 +540,6 @@ class _Data:
 
     def policy(self, key: str) -> Any:
         return self._store._reader.policy(key)
-
-
-def _unit(text: str) -> EnthalpyUnit:
-    from propdb.units import parse_unit
-
-    return parse_unit(text)
-
-
-def _temperature(value: Temperature) -> float:
-    from propdb.units import parse_temperature
-
-    return parse_temperature(value if isinstance(value, str) else f"{value!r} K")
-
-
-def _phase(text: str) -> str:
-    if text in PHASES:
-        return text
-    words = {
-        "gas": "g", "vapour": "fluid", "vapor": "fluid", "steam": "fluid", "liquid": "l", "solid": "cr", "s": "cr",
-        "crystal": "cr", "amorphous": "am", "glass": "am", "aqueous": "aq", "c": "cr", "v": "fluid",
-    }  # fmt: skip
-    low = text.lower()
-    near = low if low in PHASES else words.get(low)
-    hint = f"did you mean {near}?" if near else "phases are cr, am, l, g (ideal gas), fluid (real fluid) and aq"
-    raise NotFound(f"no phase {text!r}", hint=hint, candidates=PHASES)
-
-
-def _state(
-    record: Species,
-    phase: str,
-    form: str | None,
-    temperature: Temperature | None,
-    pressure: Pressure | None,
-    saturated: str | None,
-    levels: Levels,
-) -> State:
-    """A state from what was typed, with what contradicts itself refused."""
-    from propdb.units import parse_pressure
-
-    _phase(phase)
-    t = None if temperature is None else _temperature(temperature)
-    p = None
-    if pressure is not None:
-        p = parse_pressure(pressure if isinstance(pressure, str) else f"{pressure!r} Pa")
-    kind: str = saturated or ""
-    if kind not in ("", "liquid", "vapour"):
-        near = {"vapor": "vapour", "gas": "vapour", "steam": "vapour", "l": "liquid", "g": "vapour"}.get(kind.lower())
-        raise InvalidInput(
-            f"saturated {kind!r}",
-            hint=f"did you mean {near}?" if near else "it is liquid or vapour",
-            where="--saturated",
-        )
-    if kind and phase not in ("fluid", "l"):
-        raise InvalidInput(f"a saturated state of phase {phase}", hint="use --phase fluid", where="--saturated")
-    if kind == "vapour" and phase == "l":
-        raise InvalidInput("a saturated vapour of phase l", hint="use --phase fluid", where="--saturated")
-    if kind and t is not None and p is not None:
-        raise InvalidInput(
-            "a saturated state has a temperature or a pressure, not both", hint="leave one out", where="--saturated"
-        )
-    if t is None and not (kind and p is not None):
-        raise InvalidInput(f"the state of {record.name} has no temperature", hint="give --temperature, e.g. 25C")
-    if t is None:
-        phase = "fluid"  # the temperature follows from the pressure
-    return State(phase, t, form or "", p, kind)  # type: ignore[arg-type]
 
 
 def _read_toml(place: Path) -> dict[str, Any]:

@@ -77,7 +77,7 @@ def test_latent_heats_of_textbooks(store: Store) -> None:
 
 
 def test_the_real_vapour_of_water_at_its_boiling_point(store: Store) -> None:
-    """Gap between real vapour and ideal gas, IAPWS R6-95: 0.02 kJ/mol at 298 K, 0.24 at the boiling point, 4.5 at 550 K."""
+    """Gap between real vapour and ideal gas, IAPWS R6-95: 0.02, 0.24, 4.5 kJ/mol at 298 K, the boiling point, 550 K."""
     for t, gap, tolerance in ((298.15, 0.0266, 0.001), (373.124, 0.236, 0.001), (550.0, 4.46, 0.01)):
         gas = store.enthalpy("water", phase="g", temperature=t, datum="elements-298K")
         real = store.enthalpy("water", phase="fluid", temperature=t, saturated="vapour", datum="elements-298K")
