@@ -9,6 +9,7 @@ import os
 import sys
 from collections.abc import Callable, Mapping
 from dataclasses import asdict
+from functools import cached_property
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -54,7 +55,9 @@ def open(path: str | os.PathLike[str] | None = None, *, as_of: str | date | None
             _build(place, _to_stderr)
     else:
         place = Path(path)
-    return Store(place, as_of=as_of)
+    store = Store(place, as_of=as_of)
+    store._reader.head  # noqa: B018  (a file that is none must be refused here)
+    return store
 
 
 def _to_stderr(text: str) -> None:
@@ -83,14 +86,14 @@ class Store:
     Parameters
     ----------
     path : path
-        The store file; it must exist.
+        The store file. It is opened when first needed, and only :meth:`store_rebuild` makes one.
     as_of : date or str, optional
         See :func:`open`.
     """
 
     def __init__(self, path: str | os.PathLike[str], *, as_of: str | date | None = None) -> None:
         self._path = Path(path)
-        self._reader = Reader(self._path, as_of=as_of)
+        self._as_of = as_of
         self._levels: dict[tuple[tuple[str, ...], bool], Levels] = {}
         self._stamp = ""
         self._datums: Mapping[str, Datum] = {}
@@ -98,9 +101,15 @@ class Store:
     def __repr__(self) -> str:
         return f"<propdb store {self._path}>"
 
+    @cached_property
+    def _reader(self) -> Reader:
+        return Reader(self._path, as_of=self._as_of)
+
     def close(self) -> None:
-        """Close the file; the store can not be used any more."""
-        self._reader.close()
+        """Close the file."""
+        reader = self.__dict__.pop("_reader", None)
+        if reader is not None:
+            reader.close()
 
     def __enter__(self) -> Store:
         return self
@@ -166,11 +175,10 @@ class Store:
             from difflib import get_close_matches
 
             keys = [source.key for source in self._reader.sources()]
-            near = [k for k in keys if key and k.startswith(key.lower())] or get_close_matches(
-                key, keys, n=3, cutoff=0.5
-            )
+            near = [k for k in keys if key and k.startswith(key.lower())]
+            near = near or get_close_matches(key, keys, n=3, cutoff=0.5)
             if near:
-                error.hint = f"did you mean {' or '.join(near[:3])}?"
+                error.hint = f"did you mean {' or '.join(near[:3])}? propdb source list shows all keys"
             raise
 
     def source_cite(self, key: str, format: str = "text") -> str:
@@ -503,7 +511,7 @@ class Store:
     def store_rebuild(self, progress: Callable[[str], None] | None = None) -> dict[str, Any]:
         """Bring in the seed of this version again; own entries, datums and decisions stay."""
         report = _build(self._path, progress)
-        self._reader = Reader(self._path)
+        self.close()
         self._forget()
         return asdict(report)
 

@@ -64,6 +64,14 @@ class Call:
             self._store = propdb.open(self.path, as_of=self.as_of)
         return self._store
 
+    @property
+    def unopened(self) -> Store:
+        """The store without a look at its file: for the verbs that make one, or say where it would be."""
+        from propdb.api import Store
+        from propdb.store.open import default_path
+
+        return Store(self.path or default_path())
+
     def show(self, data: Callable[[], Any], text: Callable[[], str]) -> None:
         """Print ``data()`` as JSON if that was asked for, else ``text()``."""
         if self.json:

@@ -38,7 +38,7 @@ def check(call: Call) -> None:
 @verb(app, "propdb store path", without=("as_of", "json"))
 def path(call: Call) -> None:
     """Print where the store is."""
-    write(str(call.store.store_path()))
+    write(str(call.unopened.store_path()))
 
 
 @verb(app, "propdb store rebuild", without=("as_of", "json"))
@@ -46,7 +46,7 @@ def rebuild(call: Call) -> None:
     """Bring in the data of this version again; what you added or decided stays."""
     from propdb.cli.storetext import info_text
 
-    write(info_text(call.store.store_rebuild(note)))
+    write(info_text(call.unopened.store_rebuild(note)))
 
 
 @verb(app, "propdb store backup my-backup.db", without=("as_of", "json"))

@@ -14,7 +14,7 @@ from propdb.levels.parts import Leg, add_parts, ranking_uncertainty
 from propdb.levels.policy import Policy, choose
 from propdb.model.records import T_STANDARD, USABLE_STATUSES, Entry, Part, State
 
-__all__ = ["ROOT", "Edge", "Node", "collect", "vapour_of"]
+__all__ = ["ROOT", "Edge", "Node", "collect", "heating_edges", "leg_edge", "vapour_of"]
 
 
 class Node(NamedTuple):
@@ -38,18 +38,32 @@ ROOT = Node("elements", "", T_STANDARD)
 _PHASE_ORDER = ("elements", "cr", "am", "l", "fluid", "g", "aq")
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(eq=False, slots=True)
 class Edge:
-    """H(end) - H(start), with the leg that says it."""
+    """H(end) - H(start), with the leg that says it.
+
+    ``source`` is the leg, or a function that makes it when it is first walked: an equation of state is not loaded for a
+    path that does not need it. ``size`` is the standard uncertainty for ranking [J/mol].
+    """
 
     start: Node
     end: Node
-    leg: Leg
+    source: Leg | Callable[[], Leg]
     kind: str  # definition | heating | formation | transition | increment | residual | formulation
+    size: float = 0.0
     status: int = 0  # index into USABLE_STATUSES
     pin: int = 0
     rank: int = 0
-    burden: float = 0.0  # what using the edge costs elsewhere, as a standard uncertainty [J/mol]; for ranking only
+    what: str = ""
+    extrapolated: bool = False
+    entry: str = ""
+
+    @property
+    def leg(self) -> Leg:
+        """The leg, made on first use."""
+        if not isinstance(self.source, Leg):
+            self.source = self.source()
+        return self.source
 
     def key(self) -> tuple[object, ...]:
         """Best first. Heating over a covered range and water's formulation always lead, so that a level is continuous.
@@ -57,16 +71,33 @@ class Edge:
         Then pinned sources, status, and the variance (class defaults where none is stated).
         """
         return (
-            self.leg.extrapolated,
+            self.extrapolated,
             self.kind not in ("definition", "heating", "formulation"),
             self.pin,
             self.status,
-            round(hypot(ranking_uncertainty(self.leg.parts), self.burden), 9),
+            round(self.size, 9),
             self.rank,
             _PHASE_ORDER.index(self.end.phase),
             self.end,
-            self.leg.entry,
+            self.entry,
         )
+
+
+def leg_edge(leg: Leg, start: Node, end: Node, kind: str, *, status: int = 0, pin: int = 0, rank: int = 0) -> Edge:
+    """An edge whose leg is at hand."""
+    return Edge(
+        start,
+        end,
+        leg,
+        kind,
+        size=ranking_uncertainty(leg.parts),
+        status=status,
+        pin=pin,
+        rank=rank,
+        what=leg.what,
+        extrapolated=leg.extrapolated,
+        entry=leg.entry,
+    )
 
 
 def entry_edge(entry: Entry, start: Node, end: Node, value: float, what: str, kind: str, policy: Policy) -> Edge:
@@ -84,7 +115,8 @@ def entry_edge(entry: Entry, start: Node, end: Node, value: float, what: str, ki
         source=entry.source,
     )
     pin = 0 if not policy.pinned or entry.source in policy.pinned else 1
-    return Edge(start, end, leg, kind, USABLE_STATUSES.index(entry.status), pin, policy.rank(entry))
+    status = USABLE_STATUSES.index(entry.status)
+    return leg_edge(leg, start, end, kind, status=status, pin=pin, rank=policy.rank(entry))
 
 
 def vapour_of(entry: Entry, temperature: float) -> Node:
@@ -119,7 +151,7 @@ def collect(
         leg = Leg(
             "definition", species, ROOT.text(), node.text(), 0.0, note="element in its reference form: 0 by definition"
         )
-        edges.append(Edge(ROOT, node, leg, "definition"))
+        edges.append(leg_edge(leg, ROOT, node, "definition"))
     for e in by_quantity.get("Hf", ()):
         if e.value is None:
             continue
@@ -133,7 +165,8 @@ def collect(
             continue
         if shift or parts:
             parts = add_parts(edge.leg.parts + parts)
-            edge = replace(edge, leg=replace(edge.leg, value=e.value + shift, parts=parts, note=f"given on {e.datum}"))
+            leg = replace(edge.leg, value=e.value + shift, parts=parts, note=f"given on {e.datum}")
+            edge = replace(edge, source=leg, size=ranking_uncertainty(parts))
         edges.append(edge)
     for e in by_quantity.get("dH0", ()):
         if e.value is not None:
@@ -159,7 +192,7 @@ def _burdened(edge: Edge, link: Edge | None) -> Edge:
     if link is None:
         return edge
     away = PER_KELVIN * (edge.end.temperature - T_STANDARD)
-    return replace(edge, burden=hypot(ranking_uncertainty(link.leg.parts), away))
+    return replace(edge, size=hypot(edge.size, link.size, away))
 
 
 def _latent_edges(
@@ -211,26 +244,25 @@ def _latent_edges(
 
 
 def _residual_edge(species: str, node: Node, c: Critical, vapour: str) -> Edge:
-    value, pressure, _ = residual.enthalpy(temperature=node.temperature, tc=c.tc, pc=c.pc, omega=c.omega)
+    """Real saturated vapour to ideal gas, ranked by a quick estimate and computed when it is walked."""
     gas = Node("g", "", node.temperature)
-    leg = Leg(
-        what="residual enthalpy",
-        species=species,
-        start=node.text(),
-        end=gas.text(),
-        value=-value,
-        parts=(
-            Part(
-                f"model:residual:{species}",
-                -value,
-                residual.standard(value, vapour=vapour) / max(abs(value), 1e-9),
-                True,
-            ),
-        ),
-        source=c.source,
-        note=f"{residual.note(vapour)}; saturated at {pressure / 1e5:.4g} bar",
-    )
-    return Edge(node, gas, leg, "residual", status=USABLE_STATUSES.index("base"))
+
+    def leg() -> Leg:
+        value, pressure, _ = residual.enthalpy(temperature=node.temperature, tc=c.tc, pc=c.pc, omega=c.omega)
+        size = residual.standard(value, vapour=vapour) / max(abs(value), 1e-9)
+        return Leg(
+            what="residual enthalpy",
+            species=species,
+            start=node.text(),
+            end=gas.text(),
+            value=-value,
+            parts=(Part(f"model:residual:{species}", -value, size, True),),
+            source=c.source,
+            note=f"{residual.note(vapour)}; saturated at {pressure / 1e5:.4g} bar",
+        )
+
+    size = residual.standard(residual.estimate(temperature=node.temperature, tc=c.tc, omega=c.omega), vapour=vapour)
+    return Edge(node, gas, leg, "residual", size, USABLE_STATUSES.index("base"), what="residual enthalpy")
 
 
 def _formulation_edges(formulation: Formulation, vapours: set[Node]) -> list[Edge]:
@@ -243,7 +275,8 @@ def _formulation_edges(formulation: Formulation, vapours: set[Node]) -> list[Edg
         leg = formulation.legs(State("l", T_STANDARD), state)[0]
         if end.phase == "g":
             leg = replace(leg, end=f"{end.text()} (zero density)")
-        edges.append(Edge(start, end, leg, "formulation", USABLE_STATUSES.index(formulation.entry.status)))
+        status = USABLE_STATUSES.index(formulation.entry.status)
+        edges.append(leg_edge(leg, start, end, "formulation", status=status))
     return edges
 
 
@@ -266,5 +299,5 @@ def heating_edges(
         total = sum(leg.value for leg in legs)
         parts = add_parts(p for leg in legs for p in leg.parts)
         leg = Leg("heating", legs[0].species, a.text(), b.text(), total, parts, legs[0].entry, legs[0].source, outside)
-        edges.append(Edge(a, b, leg, "heating"))
+        edges.append(leg_edge(leg, a, b, "heating"))
     return edges

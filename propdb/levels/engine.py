@@ -19,7 +19,7 @@ from propdb.errors import (
 )
 from propdb.levels import residual, water
 from propdb.levels.curves import Curve, Formulation, build_curve, range_text
-from propdb.levels.edges import ROOT, Edge, Node, collect
+from propdb.levels.edges import ROOT, Edge, Node, collect, leg_edge
 from propdb.levels.parts import Leg, add_parts, scale
 from propdb.levels.policy import Data, Policy, choose
 from propdb.levels.states import INTERNAL, States
@@ -231,7 +231,7 @@ class Levels(States):
             source=c.source,
             note=residual.note(kind),
         )
-        edge = Edge(Node("g", "", t), Node("fluid", "", t, "vapour"), leg, "residual")
+        edge = leg_edge(leg, Node("g", "", t), Node("fluid", "", t, "vapour"), "residual")
         return node, [*moves, Move(edge=edge)]
 
     def way(self, species: str, start: State, end: State) -> list[Move]:

@@ -66,7 +66,6 @@ class SpeciesTree:
     nodes: set[Node] = field(default_factory=set)
     links: dict[Node, list[tuple[Node, Edge, bool]]] = field(default_factory=dict)
     unused: list[Edge] = field(default_factory=list)
-    potential: dict[Node, float] = field(default_factory=dict)
     component: dict[Node, int] = field(default_factory=dict)
     tracks: dict[tuple[str, str], Track] = field(default_factory=dict)
     position: Callable[[Node], Any] = lambda node: node.temperature
@@ -102,7 +101,7 @@ class SpeciesTree:
         winners: list[Edge] = []
         losers: list[Edge] = []
         for edge in edges:  # entries come best first
-            pair = (edge.start, edge.end, edge.leg.what)
+            pair = (edge.start, edge.end, edge.what)
             (losers if pair in seen else winners).append(edge)
             seen.add(pair)
         return sorted(winners, key=Edge.key) + losers
@@ -110,17 +109,14 @@ class SpeciesTree:
     def _walk(self) -> None:
         order = sorted(self.nodes, key=lambda n: (n != ROOT, n))
         for number, root in enumerate(order):
-            if root in self.potential:
+            if root in self.component:
                 continue
-            self.potential[root] = 0.0
             self.component[root] = number
             queue = deque([root])
             while queue:
                 node = queue.popleft()
-                for other, edge, forward in self.links.get(node, ()):
-                    if other not in self.potential:
-                        step = edge.leg.value if forward else -edge.leg.value
-                        self.potential[other] = self.potential[node] + step
+                for other, _, _ in self.links.get(node, ()):
+                    if other not in self.component:
                         self.component[other] = number
                         queue.append(other)
 
