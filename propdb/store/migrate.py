@@ -44,11 +44,11 @@ def migrations() -> list[tuple[int, str, str]]:
 
 
 def statements(sql: str) -> Iterator[str]:
-    """The statements of a script. ``executescript`` would commit the transaction that they must share."""
+    """The statements of a script, each ending its line: ``executescript`` would commit the transaction they share."""
     buffer = ""
     for line in sql.splitlines(keepends=True):
         buffer += line
-        if line.rstrip().endswith(";") and sqlite3.complete_statement(buffer):
+        if sqlite3.complete_statement(buffer):
             yield buffer
             buffer = ""
     if buffer.strip() and not all(not part.strip() or part.lstrip().startswith("--") for part in buffer.splitlines()):

@@ -196,6 +196,8 @@ def _connect_read_only(path: Path, timeout: float) -> sqlite3.Connection:
                 reason="read-only",
                 hint=f"copy it together with {wal.name} to a directory that can be written",
             ) from error
+        # No one who has it open now can be writing: the shared memory would be there. Such a reader does not see
+        # what is written later, and must not stay open for long.
         return _connect(f"{uri}?mode=ro&immutable=1", timeout)
 
 

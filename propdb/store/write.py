@@ -93,14 +93,11 @@ def build(
     tell(f"checking {len(content.entries)} entries")
     held = validate(content)
     digest = hash_of(content, held)
-    with closing(open_store(path, write=True, create=True, timeout=timeout)) as conn, mapped(path):
-        with immediate(conn):
-            before = log.last_base(conn)
-            if before is not None and before.payload.get("content_hash") == digest:
-                return BuildReport(False, digest, before.seq, len(held), 0, 0, len(content.species), 0, 0, 0)
-            report = _write(conn, content, held, digest, versions, before, tell)
-        conn.execute("PRAGMA optimize")
-    return report
+    with closing(open_store(path, write=True, create=True, timeout=timeout)) as conn, mapped(path), immediate(conn):
+        before = log.last_base(conn)
+        if before is not None and before.payload.get("content_hash") == digest:
+            return BuildReport(False, digest, before.seq, len(held), 0, 0, len(content.species), 0, 0, 0)
+        return _write(conn, content, held, digest, versions, before, tell)
 
 
 def _write(

@@ -157,6 +157,53 @@ def test_every_name_of_a_file_can_be_opened(tmp_path: Path) -> None:
     }
 
 
+SECOND = (2, "more", "CREATE TABLE more (x INTEGER); -- a comment\nINSERT INTO more VALUES (1);\n")
+BAD = (2, "bad", "CREATE TABLE bad (x INTEGER);\nINSERT INTO bad VALUES (1);\nINSERT INTO nowhere VALUES (1);\n")
+
+
+@pytest.fixture
+def next_schema(monkeypatch: pytest.MonkeyPatch) -> list[tuple[int, str, str]]:
+    """propdb as it will be with one more migration, which is put into the list."""
+    found = migrate.migrations()
+    monkeypatch.setattr(migrate, "migrations", lambda: found)
+    for module in ("open", "migrate"):
+        monkeypatch.setattr(f"propdb.store.{module}.SCHEMA", SCHEMA + 1)
+    return found
+
+
+def test_an_older_schema_is_brought_up_when_written(store: Path, next_schema: list[tuple[int, str, str]]) -> None:
+    next_schema.append(SECOND)
+    error = refused(store)
+    assert error.fields["reason"] == "older-schema"
+    assert "own data and the log are kept" in str(error)
+    for _ in range(2):
+        with closing(open_store(store, write=True)) as conn:
+            assert conn.execute("PRAGMA user_version").fetchone() == (SCHEMA + 1,)
+            assert conn.execute("SELECT x FROM more").fetchall() == [(1,)]
+            assert conn.execute("SELECT number, name FROM migration").fetchall() == [(1, "initial"), (2, "more")]
+    with Reader(store) as reader:
+        assert len(reader.entries("water")) == 3
+
+
+def test_a_migration_that_fails_leaves_nothing(store: Path, next_schema: list[tuple[int, str, str]]) -> None:
+    next_schema.append(BAD)
+    with pytest.raises(StoreError, match="nowhere"):
+        open_store(store, write=True)
+    with closing(sqlite3.connect(store)) as conn:
+        assert conn.execute("PRAGMA user_version").fetchone() == (SCHEMA,)
+        assert conn.execute("SELECT name FROM sqlite_master WHERE name = 'bad'").fetchall() == []
+        assert conn.execute("SELECT number FROM migration").fetchall() == [(1,)]
+
+
+def test_a_first_migration_that_fails_leaves_an_empty_file(
+    tmp_path: Path, next_schema: list[tuple[int, str, str]]
+) -> None:
+    next_schema[:] = [(1, "bad", BAD[2])]
+    with pytest.raises(StoreError, match="nowhere"):
+        open_store(tmp_path / "new.db", write=True, create=True)
+    assert refused(tmp_path / "new.db").fields["reason"] == "empty"
+
+
 def test_a_path_that_cannot_be_one() -> None:
     with pytest.raises(InvalidInput):
         open_store("nul\0.db")

@@ -67,7 +67,9 @@ def test_two_processes_build_different_contents_at_once(tmp_path: Path) -> None:
 
 
 @pytest.mark.skipif(not hasattr(signal, "SIGKILL"), reason="there is no SIGKILL here")
-@pytest.mark.parametrize("moment", ["checking", "wrote 5000", "wrote 10000", "done", 0.02, 0.1, 0.2])
+@pytest.mark.parametrize(
+    "moment", ["checking", "wrote 10000", "done", *(pytest.param(0.02 * i, marks=pytest.mark.full) for i in range(20))]
+)
 def test_a_build_that_is_killed_leaves_the_store_as_it_was(tmp_path: Path, moment: str | float) -> None:
     path = tmp_path / "store.db"
     build(path, content(), versions={})
@@ -123,7 +125,7 @@ def test_a_build_that_is_killed_leaves_the_store_as_it_was(tmp_path: Path, momen
 
 
 @pytest.mark.skipif(not hasattr(signal, "SIGKILL"), reason="there is no SIGKILL here")
-@pytest.mark.parametrize("pause", [0.0, 0.02, 0.1, 0.3, 0.6])
+@pytest.mark.parametrize("pause", [0.0, 0.1, 0.4, *(pytest.param(0.05 * i, marks=pytest.mark.full) for i in range(20))])
 def test_a_first_build_that_is_killed_can_be_repeated(tmp_path: Path, pause: float) -> None:
     path = tmp_path / "store.db"
     process = start(f"print('start', flush=True); build({str(path)!r}, big(0), versions={{}})")
