@@ -44,7 +44,7 @@ def test_verb_has_its_method(verb: str) -> None:
 
 
 def test_method_has_its_verb() -> None:
-    public = {name for name, member in vars(Store).items() if callable(member) and not name.startswith("_")}
+    public = {name for name in dir(Store) if callable(getattr(Store, name)) and not name.startswith("_")}
     assert public - {"close"} == {_method(verb) for verb in COMMANDS}
 
 
