@@ -288,6 +288,7 @@ def as_someone(code: str, *arguments: str) -> str:
         "import propdb.store.migrate, propdb.store.log, propdb.store.rows, propdb.store.read\n"
         "from propdb.store.read import Reader\n"
         "propdb.store.migrate.migrations()\n"
+        "from pathlib import Path; Path('x').absolute().as_uri()\n"
         "if os.geteuid() == 0: os.setgid(65534); os.setuid(65534)\n"
     )
     done = subprocess.run([sys.executable, "-c", first + code, *arguments], capture_output=True, text=True, check=False)
