@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
+from decimal import Decimal
 from types import MappingProxyType
 from typing import TYPE_CHECKING, Any, Final
 
@@ -64,7 +65,7 @@ def matches_text(matches: Sequence[Match]) -> str:
 def species_lines(species: Species) -> list[str]:
     """Head of a sheet: name, formula, molar mass, identifiers, synonyms."""
     head = (
-        f"{species.name}   {species.display_formula}   {format_number(species.molar_mass * 1e3, significant=7)} g/mol"
+        f"{species.name}   {species.display_formula}   {format_number(species.molar_mass * 1e3, significant=6)} g/mol"
     )
     identity = [
         f"CAS RN {species.cas}" if species.cas else "",
@@ -106,7 +107,7 @@ def sheet_text(sheet: SpeciesSheet) -> str:
 
 
 def _row(entry: Entry) -> tuple[str, ...]:
-    value, unit = (entry.carried, entry.carried_unit) if not entry.equation else (entry.equation, "")
+    value, unit = comparable(entry) if not entry.equation else (entry.equation, "")
     about = ", ".join(part for part in (entry.datum, entry.conditions) if part)
     return (
         " ",
@@ -114,12 +115,30 @@ def _row(entry: Entry) -> tuple[str, ...]:
         at_text(entry),
         value,
         _UNITS.get(unit, unit),
-        uncertainty_text(entry),
+        uncertainty_text(entry, listed=True),
         about,
         entry.source,
         entry.status,
         entry.id,
     )
+
+
+def comparable(entry: Entry) -> tuple[str, str]:
+    """A constant in the unit that all entries of its quantity are listed in, digit by digit: kJ/mol, K.
+
+    The number as carried stands in ``propdb entry show``.
+    """
+    if entry.carried_unit == "J/mol":
+        return _exact(Decimal(entry.carried).scaleb(-3)), "kJ/mol"
+    if entry.carried_unit == "C":
+        return _exact(Decimal(entry.carried) + Decimal("273.15")), "K"
+    return entry.carried, entry.carried_unit
+
+
+def _exact(number: Decimal) -> str:
+    text = f"{number:f}"
+    whole, point, decimals = text.partition(".")
+    return f"{whole}{point}{decimals.rstrip('0').ljust(min(len(decimals), 3), '0')}" if point else text
 
 
 def phase_text(entry: Entry) -> str:
@@ -137,13 +156,15 @@ def at_text(entry: Entry) -> str:
     return ""
 
 
-def uncertainty_text(entry: Entry) -> str:
-    """Uncertainty in the unit of the number as carried, with its kind; or that none is stated."""
+def uncertainty_text(entry: Entry, *, listed: bool = False) -> str:
+    """Uncertainty with its kind, or that none is stated; in the unit as carried, or as :func:`comparable` lists it."""
     if entry.uncertainty is None:
         return NOT_STATED
     kind = _KINDS.get(entry.uncertainty_kind, entry.uncertainty_kind)
     if entry.uncertainty_unit == "%":
         size = f"{entry.uncertainty * 100:.3g} %"
+    elif listed and entry.carried_unit == "J/mol":
+        size = f"{entry.uncertainty / 1e3:.4g}"
     else:
         size = _like_carried(entry)
     return f"± {size} ({kind})" if kind else f"± {size}"
