@@ -225,13 +225,11 @@ def _put_base_species(db: Database, species: Sequence[Species]) -> tuple[dict[st
         rows[one.name] = number
         if stored[number] != row:
             changed.append((number, one, row))
-    gone = [number for number, row in stored.items() if row["active"] and number not in set(rows.values())]
+    kept = set(rows.values())
+    gone = [number for number, row in stored.items() if row["active"] and number not in kept]
     # Names may move from one species to another: set all aside before any is set anew.
     aside = [(number,) for number in (*gone, *(number for number, _, _ in changed))]
     conn.executemany("UPDATE species SET active = 0 WHERE id = ?", aside)
-    conn.executemany(
-        "UPDATE species SET identity = 'aside ' || id WHERE id = ?", [(number,) for number, _, _ in changed]
-    )
     if changed:
         sets = ", ".join(f"{column} = :{column}" for column in columns)
         conn.executemany(

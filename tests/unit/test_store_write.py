@@ -218,6 +218,17 @@ def test_own_entry_follows_its_species(store: Path, changed: Species) -> None:
     assert check(store) == []
 
 
+def test_own_entry_follows_its_species_through_one_change_after_another(store: Path) -> None:
+    number = add_own(store, entry(ETHANOL, value=3.0), MINE, "me")
+    corrected = replace(ETHANOL, cas="64-17-50")
+    renamed = replace(corrected, name="ethyl alcohol")
+    for one in (corrected, renamed):
+        build(store, content(species=(WATER, one), entries=(entry(one),)), versions={})
+    with Reader(store) as reader:
+        assert {e.id for e in reader.entries("ethyl alcohol")} == {number, entry(renamed).id}
+    assert check(store) == []
+
+
 def test_names_may_change_places(store: Path) -> None:
     ether = content().species[2]
     swapped = (replace(ETHANOL, name=ether.name), replace(ether, name=ETHANOL.name))
