@@ -13,7 +13,9 @@ from typing import TYPE_CHECKING
 from propdb.api.care import Care
 from propdb.api.enthalpies import Enthalpies
 from propdb.api.opening import build_seed, to_stderr
+from propdb.errors import StoreError
 from propdb.store.open import default_path
+from propdb.store.read import Reader
 
 if TYPE_CHECKING:
     from datetime import date
@@ -31,6 +33,15 @@ class Store(Enthalpies, Care):
     as_of : date or str, optional
         See :func:`open`.
     """
+
+
+def _empty(place: Path) -> bool:
+    """Was a first build killed, so that there is a file without data? Building again repairs it."""
+    try:
+        Reader(place).close()
+    except StoreError as error:
+        return error.fields.get("reason") == "empty"
+    return False
 
 
 def open(path: str | os.PathLike[str] | None = None, *, as_of: str | date | None = None) -> Store:
@@ -51,7 +62,7 @@ def open(path: str | os.PathLike[str] | None = None, *, as_of: str | date | None
     """
     if path is None:
         place = default_path()
-        if not place.exists():
+        if not place.exists() or _empty(place):
             build_seed(place, to_stderr)
     else:
         place = Path(path)

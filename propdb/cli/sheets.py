@@ -36,6 +36,7 @@ QUANTITY_WORDS: Final[Mapping[str, str]] = MappingProxyType(
         "Tc": "critical temperature",
         "Pc": "critical pressure",
         "omega": "acentric factor",
+        "H": "tabulated enthalpy",
     }
 )
 _KINDS: Final = {"expanded-95": "95 %", "standard": "standard", "maximum": "maximum", "class": "class default"}

@@ -12,6 +12,7 @@ from propdb.levels.curves import Curve
 from propdb.levels.engine import Levels
 from propdb.levels.parts import Leg, add_parts, combined, scale
 from propdb.levels.policy import choose
+from propdb.levels.tables import matches, tables_of
 from propdb.levels.tree import Move, expand
 from propdb.model.answer import Answer
 from propdb.model.records import SAME_T, Closure, Datum, Entry, MaySum, Part, Source, Species, State, Step, Zero
@@ -238,6 +239,26 @@ def _verdict(datum: Datum, temperature: float | None) -> MaySum:
     return may_sum(datum, temperatures=None if temperature is None else [temperature])
 
 
+def _against_tables(levels: Levels, species: Species, state: State, answer: Answer, unit: EnthalpyUnit) -> Answer:
+    """What a group's own tables of enthalpies say of the state, each on its own datum, as closures of the answer."""
+    found = []
+    per = unit.scale(molar_mass=species.molar_mass)
+    for track in tables_of(levels.data.entries(species.name), levels.policy, pinned=False):
+        t = state.temperature
+        if t is None or not matches(track.entry, state) or not track.table.tmin <= t <= track.table.tmax:
+            continue
+        datum = levels.data.datum(track.entry.datum)
+        try:
+            z = levels.zero_of(datum, species, phase=state.phase, temperature=t)
+            legs = net(levels, [(1.0, species.name, state)], _members(levels, z, datum, t)).legs()
+            ours = sum(leg.value for leg in legs) + levels.offset(z, species, temperature=t)
+        except PropdbError:
+            continue
+        via = f"{species.name}: own table of {track.entry.source} at {t:.7g} K on {datum.name}"
+        found.append(Closure(via, (track.table.h(t) - ours) / per, None, track.entry.id, track.entry.source))
+    return replace(answer, closures=answer.closures + tuple(found)) if found else answer
+
+
 def _condensed_pressure(state: State) -> list[str]:
     if state.pressure is None:
         return []
@@ -268,7 +289,7 @@ def enthalpy(levels: Levels, *, species: Species, state: State, datum: Datum, un
     offset = levels.offset(z, species, temperature=state.temperature)
     water_formulation = any(leg.what == "formulation" for leg in derived.legs)
     warnings = derived.warnings() + ([] if water_formulation else _condensed_pressure(state))
-    return _answer(
+    answer = _answer(
         derived,
         species=species,
         value=derived.total() + offset,
@@ -279,6 +300,7 @@ def enthalpy(levels: Levels, *, species: Species, state: State, datum: Datum, un
         stamp=stamp,
         state=state.text(),
     )
+    return _against_tables(levels, species, state, answer, unit)
 
 
 def _h0_note(z: Zero, datum: Datum) -> str:

@@ -18,7 +18,10 @@ __all__ = ["ROOT", "Edge", "Node", "collect", "heating_edges", "leg_edge", "vapo
 
 
 class Node(NamedTuple):
-    """A state that entries refer to. ``saturated`` is "vapour" for the real vapour (phase ``fluid``), else ""."""
+    """A state that entries refer to.
+
+    ``saturated`` is "vapour" for the real vapour (phase ``fluid``), the name of a table for its anchor, else "".
+    """
 
     phase: str
     form: str
@@ -29,7 +32,9 @@ class Node(NamedTuple):
         if self == ROOT:
             return "elements at 298.15 K"
         phase = f"{self.phase} ({self.form})" if self.form else self.phase
-        return f"{'saturated vapour' if self.saturated else phase}, {celsius(self.temperature)}"
+        if self.saturated == "vapour":
+            phase = "saturated vapour"
+        return f"{phase}, {celsius(self.temperature)}"
 
 
 #: The elements in their reference forms at 298.15 K, 1 bar: zero of the internal scale.

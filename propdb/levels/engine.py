@@ -23,6 +23,7 @@ from propdb.levels.edges import ROOT, Edge, Node, collect, leg_edge
 from propdb.levels.parts import Leg, add_parts, scale
 from propdb.levels.policy import Data, Policy, choose
 from propdb.levels.states import INTERNAL, States
+from propdb.levels.tables import Tabulated, attach, graft, tables_of
 from propdb.levels.tree import Move, SpeciesTree, expand, join
 from propdb.model.records import (
     T_STANDARD,
@@ -56,13 +57,18 @@ class Levels(States):
     def __init__(self, data: Data, policy: Policy, *, extrapolate: bool = False) -> None:
         super().__init__(data, policy, extrapolate=extrapolate)
         self._trees: dict[str, SpeciesTree] = {}
+        self._tables: dict[str, list[Tabulated]] = {}
 
     # -- trees ----------------------------------------------------------------------------------------------------
 
     def tree(self, species: str) -> SpeciesTree:
         """The tree of a species, built once."""
         if species not in self._trees:
-            self._trees[species] = self._build(species)
+            tree = self._trees[species] = self._build(species)
+            pinned = tables_of(self.data.entries(species), self.policy, pinned=True)
+            for track in pinned:
+                graft(self, tree, track)
+            self._tables[species] = pinned
         return self._trees[species]
 
     def _build(self, species: str) -> SpeciesTree:
@@ -138,6 +144,9 @@ class Levels(States):
             No entry leads to this phase.
         """
         tree = self.tree(species)
+        tabulated = attach(self._tables.get(species, ()), state)
+        if tabulated is not None:
+            return tabulated
         formulation = tree.tracks.get(("l", ""))
         if isinstance(formulation, Formulation) and state.phase in ("l", "fluid"):
             start = State("l", T_STANDARD)

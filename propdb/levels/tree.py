@@ -95,6 +95,16 @@ class SpeciesTree:
             self.links.setdefault(edge.end, []).append((edge.start, edge, False))
         self._walk()
 
+    def graft(self, edge: Edge) -> None:
+        """Add a leaf: one edge to a node that is not in the tree yet."""
+        for node in (edge.start, edge.end):
+            if node not in self.component:
+                self.nodes.add(node)
+                self.component[node] = max(self.component.values(), default=-1) + 1
+        self.component[edge.end] = self.component[edge.start]
+        self.links.setdefault(edge.start, []).append((edge.end, edge, True))
+        self.links.setdefault(edge.end, []).append((edge.start, edge, False))
+
     def _one_per_pair(self, edges: list[Edge]) -> list[Edge]:
         """Among entries for one quantity between the same two nodes the chosen one leads; the rest are closures."""
         seen: set[tuple[Node, Node, str]] = set()

@@ -9,7 +9,7 @@ from types import MappingProxyType
 from typing import Any, Literal
 
 PHASES = ("cr", "am", "l", "g", "fluid", "aq")
-QUANTITIES = ("Hf", "Gf", "S", "Cp", "Hvap", "Hfus", "Hsub", "Htr", "dH0", "Tb", "Tm", "Tc", "Pc", "omega")
+QUANTITIES = ("Hf", "Gf", "S", "Cp", "Hvap", "Hfus", "Hsub", "Htr", "dH0", "Tb", "Tm", "Tc", "Pc", "omega", "H")
 
 #: Best first. Entries with a status that is not listed here never enter a computation.
 USABLE_STATUSES = ("approved", "checked", "base", "disputed", "estimate")
