@@ -18,9 +18,9 @@ from propdb.intake.common import (
     uncertainty_kind,
 )
 from propdb.intake.rows import Row, Table, near
-from propdb.model.records import P_STANDARD, PHASES, QUANTITIES, Entry
+from propdb.model.records import P_STANDARD, PHASES, Entry
 
-__all__ = ["COLUMNS", "read_constants"]
+__all__ = ["COLUMNS", "read_constant", "read_constants"]
 
 COLUMNS = (
     "species",
@@ -65,12 +65,19 @@ def read_constants(table: Table, folder: Folder) -> Iterator[Entry]:
     """
     seen: dict[tuple[object, ...], Row] = {}
     for row in table:
-        yield _entry(row, folder, seen)
+        yield read_constant(row, folder, seen)
 
 
-def _entry(row: Row, folder: Folder, seen: dict[tuple[object, ...], Row]) -> Entry:
+def read_constant(row: Row, folder: Folder, seen: dict[tuple[object, ...], Row]) -> Entry:
+    """The entry of one row; ``seen`` holds the rows of this source before it, by what they say.
+
+    Raises
+    ------
+    SeedError
+        File, row and column of what cannot be taken, and what would be right.
+    """
     species = species_of(row, folder)
-    quantity = row.choice("quantity", QUANTITIES)
+    quantity = row.choice("quantity", tuple(DIMENSION))
     phase = phase_of(row)
     allowed = _PHASES.get(quantity)
     if allowed and phase not in allowed:

@@ -15,10 +15,11 @@ from typing import Any
 
 from propdb.errors import SeedError
 
-__all__ = ["Row", "Table", "near", "read_csv", "read_text", "read_toml"]
+__all__ = ["Row", "Table", "near", "parse_csv", "read_csv", "read_text", "read_toml"]
 
 _NUMBER = re.compile(r"[+-]?(?:[0-9]+(?:\.[0-9]*)?|\.[0-9]+)(?:[eEdD][+-]?[0-9]+)?")
 _DECIMAL_COMMA = re.compile(r"[+-]?[0-9]+,[0-9]+")
+_GROUPED = re.compile(r"[+-]?[1-9][0-9]{0,2},[0-9]{3}")
 _THOUSANDS = re.compile(r"[+-]?[0-9]{1,3}(?:,[0-9]{3})+\.[0-9]+")
 
 
@@ -90,7 +91,9 @@ class Row:
         """A text of this row as a finite number. FORTRAN's D is taken as an exponent."""
         if _NUMBER.fullmatch(text) is None:
             if _DECIMAL_COMMA.fullmatch(text):
-                raise self.error(column, f"{text!r} has a comma", f"the decimal point is '.': {text.replace(',', '.')}")
+                point = text.replace(",", ".")
+                other = f" or, if the comma parts thousands, {text.replace(',', '')}" if _GROUPED.fullmatch(text) else ""
+                raise self.error(column, f"{text!r} has a comma", f"the decimal point is '.': {point}{other}")
             if _THOUSANDS.fullmatch(text):
                 raise self.error(column, f"{text!r} has a thousands separator", f"write {text.replace(',', '')}")
             raise self.error(
@@ -164,14 +167,29 @@ def read_csv(path: Path, *, file: str, columns: Sequence[str], optional: Sequenc
     SeedError
         Encoding, header, quoting, or a row with another number of cells than the header.
     """
-    text = read_text(path, file=file)
+    return parse_csv(read_text(path, file=file), file=file, columns=columns, optional=optional)
+
+
+def parse_csv(
+    text: str, *, file: str, columns: Sequence[str], optional: Sequence[str] = (), spreadsheet: bool = False
+) -> Table:
+    """The rows of a CSV text with a known header; see :func:`read_csv`.
+
+    With ``spreadsheet`` what a spreadsheet program leaves is taken too: rows that are empty or begin with ``#`` are
+    passed over (and counted), and empty cells beyond the header are dropped.
+    """
     reader = csv.reader(io.StringIO(text, newline=""), strict=True)
     rows: list[Row] = []
     header: list[str] | None = None
     try:
         for number, cells in enumerate(reader, start=1):
+            if spreadsheet:
+                if not any(cell.strip() for cell in cells) or cells[0].lstrip().startswith("#"):
+                    continue
+                while len(cells) > len(header or ()) and not cells[-1].strip():
+                    cells.pop()
             if header is None:
-                header = _header(cells, columns, optional, file)
+                header = _header(cells, columns, optional, f"{file}, row {number}")
                 continue
             if not cells or not any(cell.strip() for cell in cells):
                 raise SeedError("the row is empty", where=f"{file}, row {number}", hint="leave empty rows out")
@@ -191,9 +209,8 @@ def read_csv(path: Path, *, file: str, columns: Sequence[str], optional: Sequenc
     return Table(file, tuple(rows))
 
 
-def _header(cells: Sequence[str], columns: Sequence[str], optional: Sequence[str], file: str) -> list[str]:
+def _header(cells: Sequence[str], columns: Sequence[str], optional: Sequence[str], where: str) -> list[str]:
     header = [cell.strip() for cell in cells]
-    where = f"{file}, row 1"
     known = (*columns, *optional)
     for name in header:
         if name not in known:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Mapping
 from pathlib import Path
 from typing import Any
 
@@ -10,7 +11,7 @@ from propdb.errors import SeedError
 from propdb.intake.rows import near, read_toml
 from propdb.model.records import Source
 
-__all__ = ["CLASSES", "KINDS", "read_source"]
+__all__ = ["CLASSES", "FIELDS", "KINDS", "parse_source", "read_source"]
 
 KINDS = ("book", "article", "report", "standard", "practice")
 CLASSES = ("evaluated", "handbook", "compilation", "practice", "estimate")
@@ -18,7 +19,7 @@ CLASSES = ("evaluated", "handbook", "compilation", "practice", "estimate")
 _KEY = re.compile(r"[a-z0-9][a-z0-9.-]*")
 _DOI = re.compile(r"10\.[0-9]{4,9}/\S+")
 _OWN = ("key", "title", "authors", "year", "kind", "class", "terms", "carrier", "standard_pressure", "note", "lineage")
-_FIELDS = ("publisher", "place", "journal", "volume", "issue", "pages", "number", "edition", "doi", "isbn", "url")
+FIELDS = ("publisher", "place", "journal", "volume", "issue", "pages", "number", "edition", "doi", "isbn", "url")
 
 
 def read_source(path: Path, *, file: str) -> Source:
@@ -29,13 +30,25 @@ def read_source(path: Path, *, file: str) -> Source:
     SeedError
         The file and the key, and what would be right.
     """
-    data = read_toml(path, file=file)
+    source = parse_source(read_toml(path, file=file), file=file)
+    if source.key != path.parent.name:
+        problem = f"key {source.key!r} is not the name of the folder {path.parent.name!r}"
+        raise _bad(file, "key", problem, "make them the same")
+    return source
+
+
+def parse_source(data: Mapping[str, Any], *, file: str) -> Source:
+    """A source record from its keys and values.
+
+    Raises
+    ------
+    SeedError
+        The key, and what would be right.
+    """
     for key in data:
-        if key not in (*_OWN, *_FIELDS):
-            raise _bad(file, key, f"unknown key {key!r}", near(key, (*_OWN, *_FIELDS)))
+        if key not in (*_OWN, *FIELDS):
+            raise _bad(file, key, f"unknown key {key!r}", near(key, (*_OWN, *FIELDS)))
     key = _text(data, "key", file)
-    if key != path.parent.name:
-        raise _bad(file, "key", f"key {key!r} is not the name of the folder {path.parent.name!r}", "make them the same")
     if not _KEY.fullmatch(key):
         raise _bad(file, "key", f"key {key!r} is not kebab-case", "small letters, digits, '-' and '.'")
     kind, cls = _text(data, "kind", file), _text(data, "class", file)
@@ -54,7 +67,7 @@ def read_source(path: Path, *, file: str) -> Source:
     pressure = data.get("standard_pressure", 100000)
     if pressure not in (100000, 101325):
         raise _bad(file, "standard_pressure", f"standard_pressure {pressure!r} is neither", "100000 or 101325 [Pa]")
-    fields = {name: _text(data, name, file) for name in _FIELDS if data.get(name, "") != ""}
+    fields = {name: _text(data, name, file) for name in FIELDS if data.get(name, "") != ""}
     if "doi" in fields and not _DOI.fullmatch(fields["doi"]):
         raise _bad(file, "doi", f"doi {fields['doi']!r} is not one", "write e.g. 10.1063/1.1461829, or leave it blank")
     return Source(
@@ -73,7 +86,7 @@ def read_source(path: Path, *, file: str) -> Source:
     )
 
 
-def _lineage(data: dict[str, Any], file: str) -> tuple[tuple[str, str], ...]:
+def _lineage(data: Mapping[str, Any], file: str) -> tuple[tuple[str, str], ...]:
     rows = data.get("lineage", [])
     if not isinstance(rows, list) or not all(isinstance(r, dict) and set(r) == {"copies", "evidence"} for r in rows):
         raise _bad(
@@ -82,7 +95,7 @@ def _lineage(data: dict[str, Any], file: str) -> tuple[tuple[str, str], ...]:
     return tuple((str(r["copies"]), str(r["evidence"])) for r in rows)
 
 
-def _text(data: dict[str, Any], key: str, file: str) -> str:
+def _text(data: Mapping[str, Any], key: str, file: str) -> str:
     value = data.get(key)
     if value is None or value == "":
         raise _bad(file, key, f"{key} is missing", "")

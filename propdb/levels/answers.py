@@ -305,8 +305,8 @@ def enthalpy(levels: Levels, *, species: Species, state: State, datum: Datum, un
 
 def _h0_note(z: Zero, datum: Datum) -> str:
     if z.internal_energy:
-        return f"{datum.name} fixes the internal energy, so its enthalpy there is p v"
-    return f"{datum.name} gives its zero state {z.h0:g} {z.h0_unit}"
+        return f"{datum.name} fixes the internal energy; the enthalpy there is p v"
+    return f"the zero state of {datum.name} has {z.h0 / 1e3:g} k{z.h0_unit}"
 
 
 def _pressure_note(datum: Datum) -> list[str]:

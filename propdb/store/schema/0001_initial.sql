@@ -120,7 +120,7 @@ CREATE TABLE entry (
     id               TEXT NOT NULL UNIQUE CHECK (length(id) >= 16),
     identity         TEXT NOT NULL CHECK (identity <> ''),
     quantity         TEXT NOT NULL CONSTRAINT "unknown quantity" CHECK (quantity IN
-                     ('Hf', 'Gf', 'S', 'Cp', 'Hvap', 'Hfus', 'Hsub', 'Htr', 'dH0', 'Tb', 'Tm', 'Tc', 'Pc', 'omega', 'H')),
+                     ('Hf', 'Gf', 'S', 'Cp', 'Hvap', 'Hfus', 'Hsub', 'Htr', 'dH0', 'Tb', 'Tm', 'Tc', 'Pc', 'omega')),
     phase            TEXT NOT NULL CONSTRAINT "unknown phase" CHECK (phase IN ('cr', 'am', 'l', 'g', 'fluid', 'aq')),
     form             TEXT NOT NULL,
     "to"             TEXT NOT NULL,
