@@ -9,9 +9,8 @@ from contextlib import closing, suppress
 from pathlib import Path
 
 from propdb.errors import StoreError
-from propdb.store import log
-from propdb.store.log import Problem
 from propdb.store.open import mapped, open_store
+from propdb.store.verify import Problem, verify
 
 __all__ = ["backup", "check"]
 
@@ -67,9 +66,10 @@ def check(path: str | os.PathLike[str]) -> list[Problem]:
             found += [Problem("file", row[0]) for row in conn.execute("PRAGMA integrity_check") if row[0] != "ok"]
             for table, row, parent, _ in conn.execute("PRAGMA foreign_key_check"):
                 found.append(Problem(f"table {table}", f"row {row} refers to a row of {parent} that is not there"))
-            found += log.verify(conn)
+            found += verify(conn)
         except sqlite3.DatabaseError as error:
-            if error.sqlite_errorcode & 0xFF not in (sqlite3.SQLITE_CORRUPT, sqlite3.SQLITE_NOTADB):
+            code: int = getattr(error, "sqlite_errorcode", sqlite3.SQLITE_CORRUPT)
+            if code & 0xFF not in (sqlite3.SQLITE_CORRUPT, sqlite3.SQLITE_NOTADB):
                 raise
             found.append(Problem("file", f"it is damaged: {error}"))
         except StoreError as error:

@@ -22,7 +22,7 @@ __all__ = ["KINDS", "STORE_KINDS", "Event", "append", "events", "head", "last_ba
 #: Kind of event to the status that it gives its entry; "" changes nothing.
 KINDS: Final[Mapping[str, str]] = MappingProxyType(
     {
-        "created": "",  # an own entry is a draft until another event; added again after it was withdrawn, it is one anew
+        "created": "",  # an own entry is a draft until another event; added again after it was withdrawn, once more
         "checked": "checked",
         "approved": "approved",
         "rejected": "withdrawn",
@@ -39,6 +39,7 @@ KINDS: Final[Mapping[str, str]] = MappingProxyType(
 #: Kinds of events about the store; every other kind is about one entry.
 STORE_KINDS: Final = frozenset({"base", "defined", "setting"})
 _COLUMNS: Final = "seq, utc, kind, entry, who, comment, payload, status, prev, hash"
+
 
 @dataclass(frozen=True, slots=True)
 class Event:

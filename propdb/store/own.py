@@ -8,12 +8,12 @@ import sqlite3
 from collections.abc import Iterator, Mapping, Sequence
 from contextlib import closing, contextmanager
 from dataclasses import replace
-from typing import Any
+from typing import Any, Final, NamedTuple
 
-from propdb.errors import InvalidInput, NotFound
+from propdb.errors import NotFound
 from propdb.model.records import Carrier, Entry, Source, Species
-from propdb.store import log
-from propdb.store.content import Member, canonical, entry_id, hashed_row, identity, row_id, validate_entry
+from propdb.store import log, seal
+from propdb.store.content import Member, canonical, entry_id, validate_entry
 from propdb.store.migrate import immediate
 from propdb.store.open import mapped, open_store, path_of
 from propdb.store.rows import species_of, species_row
@@ -22,10 +22,12 @@ from propdb.store.write import insert_species, put_bodies, put_entries, put_sour
 __all__ = ["add_own", "add_own_all", "put_own"]
 
 Target = sqlite3.Connection | str | os.PathLike[str]
+#: Behind a definition where nobody is named.
+UNNAMED: Final = "unnamed"
 
 
 @contextmanager
-def _writing(target: Target) -> Iterator[sqlite3.Connection]:
+def writing(target: Target) -> Iterator[sqlite3.Connection]:
     """One IMMEDIATE transaction on an open connection or on the store at a path."""
     if isinstance(target, sqlite3.Connection):
         with mapped(path_of(target)), immediate(target):
@@ -70,7 +72,8 @@ def add_own_all(
     Returns
     -------
     tuple of str
-        Entry ids. An entry that is there already as own is left as it is, without a further event.
+        Entry ids. An entry that is there already as own is left as it is, without a further event; one that was
+        withdrawn or rejected becomes a draft again.
 
     Raises
     ------
@@ -80,9 +83,15 @@ def add_own_all(
         As :func:`propdb.store.content.validate_entry`.
     StoreError, StoreBusy, StoreReadOnly
     """
-    with _writing(target) as conn:
+    with writing(target) as conn:
+        sealing = seal.Seal(conn)
         _put(conn, species, sources, {}, {})
-        ids = []
+        _define(
+            conn, sealing, who, comment, {"species": [s.name for s in species], "sources": [s.key for s in sources]}
+        )
+        added: list[_Added] = []
+        ids: dict[str, None] = {}  # in order, each once
+        given: list[str] = []
         for entry, carrier in entries:
             number, one = _species_row(conn, entry.species)
             entry = replace(entry, status="draft", id=entry.id or entry_id(entry, one))
@@ -93,25 +102,58 @@ def add_own_all(
             ):
                 hint = "add the source first"
                 raise NotFound(f"no source {entry.source!r}", where=f"entry of {entry.species}", hint=hint)
-            ids.append(_add(conn, number, one, entry, carrier, who, comment))
-    return tuple(ids)
+            member = Member(entry, "draft", entry.note, entry.printed, (*entry.carriers, carrier))
+            row = put_entries(conn, [member], {one.name: one})[entry.id]
+            if entry.id not in ids and _is_new(conn, row, entry.id):
+                added.append(_Added(number, row, entry))
+            ids[entry.id] = None
+            given.append(entry.id)
+        parts = sealing.close()
+        for one_added in added:
+            last = one_added is added[-1]
+            _create(conn, one_added, who, comment, parts if last else {})
+        if parts and not added:
+            log.append(conn, "defined", who=who, comment=comment, payload={"carriers": list(ids), "state": parts})
+    return tuple(given)
 
 
-def _add(
-    conn: sqlite3.Connection, number: int, species: Species, entry: Entry, carrier: Carrier, who: str, comment: str
-) -> str:
-    if entry.id != row_id(identity(species), hashed_row(entry)):  # pragma: no cover - validate_entry has refused it
-        raise InvalidInput("the id is not that of its fields", where=f"entry {entry.id}")
-    member = Member(entry, "draft", entry.note, entry.printed, (*entry.carriers, carrier))
-    row = put_entries(conn, [member], {species.name: species})[entry.id]
+class _Added(NamedTuple):
+    species: int  # row
+    row: int
+    entry: Entry
+
+
+def _is_new(conn: sqlite3.Connection, row: int, entry: str) -> bool:
+    """Is the entry not an own one yet, or one that was withdrawn or refused?"""
     if conn.execute("SELECT 1 FROM base_entry WHERE entry = ? AND own = 1", (row,)).fetchone() is None:
-        event = log.append(conn, "created", entry=entry.id, who=who, comment=comment)
-        conn.execute(
-            "INSERT INTO base_entry (species, base, entry, own, status, note, printed)"
-            " VALUES (?, ?, ?, 1, 'draft', ?, ?)",
-            (number, event.seq, row, entry.note, int(entry.printed)),
-        )
-    return entry.id
+        return True
+    last = conn.execute(
+        "SELECT status FROM event WHERE entry = ? AND status <> '' ORDER BY seq DESC LIMIT 1", (entry,)
+    ).fetchone()
+    return last is not None and last[0] == "withdrawn"
+
+
+def _create(conn: sqlite3.Connection, added: _Added, who: str, comment: str, parts: Mapping[str, str]) -> None:
+    entry = added.entry
+    again = conn.execute("SELECT 1 FROM event WHERE entry = ? AND status = 'withdrawn'", (entry.id,)).fetchone()
+    member = seal.member_hash(added.species, entry.id, "draft", entry.note, int(entry.printed))
+    payload = {"member": member, **({"state": parts} if parts else {})}
+    status = "draft" if again else ""
+    event = log.append(conn, "created", entry=entry.id, who=who, comment=comment, payload=payload, status=status)
+    conn.execute(
+        "INSERT INTO base_entry (species, base, entry, own, status, note, printed) VALUES (?, ?, ?, 1, 'draft', ?, ?)",
+        (added.species, event.seq, added.row, entry.note, int(entry.printed)),
+    )
+
+
+def _define(
+    conn: sqlite3.Connection, sealing: seal.Seal, who: str, comment: str, what: Mapping[str, Sequence[str]]
+) -> None:
+    """Say in the log that own species, sources, datums or policy were added or replaced, if any were."""
+    named = {kind: list(names) for kind, names in what.items() if names}
+    parts = sealing.close() if named else {}
+    if parts:
+        log.append(conn, "defined", who=who, comment=comment, payload={**named, "state": parts})
 
 
 def _species_row(conn: sqlite3.Connection, name: str) -> tuple[int, Species]:
@@ -128,15 +170,22 @@ def put_own(
     sources: Sequence[Source] = (),
     datums: Mapping[str, Mapping[str, Any]] | None = None,
     policy: Mapping[str, Any] | None = None,
+    who: str = UNNAMED,
+    comment: str = "",
 ) -> None:
-    """Add or replace own species, sources, datums and policy. They stand before the base's of the same name or key.
+    """Add or replace own species, sources, datums and policy, with a ``defined`` event where anything changes.
+
+    They stand before the base's of the same name or key.
 
     Raises
     ------
     InvalidInput, StoreError, StoreBusy, StoreReadOnly
     """
-    with _writing(target) as conn:
+    with writing(target) as conn:
+        sealing = seal.Seal(conn)
         _put(conn, species, sources, datums or {}, policy or {})
+        names: dict[str, Sequence[str]] = {"species": [s.name for s in species], "sources": [s.key for s in sources]}
+        _define(conn, sealing, who, comment, names | {"datums": list(datums or ()), "policy": list(policy or ())})
 
 
 def _put(

@@ -12,7 +12,7 @@ from itertools import islice
 from typing import TYPE_CHECKING, Any
 
 from propdb.model.records import Carrier, Source, Species
-from propdb.store import log
+from propdb.store import log, seal
 from propdb.store.content import (
     HASHED,
     Content,
@@ -112,25 +112,26 @@ def _write(
     from sqlite_utils import Database
 
     db = Database(conn, execute_plugins=False)
+    sealing = seal.Seal(conn)
     sources_changed = put_sources(db, content.sources, own=0)
     put_bodies(db, "datum", "name", "body", {name: canonical(body) for name, body in content.datums.items()}, own=0)
     put_bodies(db, "policy", "key", "value", {key: canonical(value) for key, value in content.policy.items()}, own=0)
     rows, added, changed = _put_base_species(db, content.species)
     entries_before = conn.execute("SELECT count(*) FROM entry").fetchone()[0]
     numbers = put_entries(conn, list(held.values()), {s.name: s for s in content.species}, tell)
+    listed = [(rows[m.entry.species], number, m.status, m.note, int(m.printed)) for number, m in held.items()]
     payload = {
         "content_hash": digest,
         "versions": dict(versions),
         "entries": len(held),
         "species": len(content.species),
+        "members": seal.members_hash(listed),
     }
-    event = log.append(conn, "base", who="propdb", payload=payload)
+    parts = sealing.close(rewritten=seal.BASE_PARTS)
+    event = log.append(conn, "base", who="propdb", payload=payload | ({"state": parts} if parts else {}))
     conn.executemany(
         "INSERT INTO base_entry (species, base, entry, own, status, note, printed) VALUES (?, ?, ?, 0, ?, ?, ?)",
-        sorted(
-            (rows[m.entry.species], event.seq, numbers[number], m.status, m.note, int(m.printed))
-            for number, m in held.items()
-        ),
+        sorted((row, event.seq, numbers[number], *rest) for row, number, *rest in listed),
     )
     inactive = 0
     if before is not None:

@@ -16,6 +16,7 @@ from propdb.errors import IntegrityError, InvalidInput, NotFound, StoreReadOnly
 from propdb.model.records import STATUSES
 from propdb.store import log, migrate
 from propdb.store.backup import check
+from propdb.store.content import HASHED
 from propdb.store.open import mapped, open_store
 from propdb.store.own import add_own, put_own
 from propdb.store.read import Reader
@@ -148,7 +149,7 @@ def test_as_of(tmp_path: Path, clock: list[str]) -> None:
             return reader.base.seq, len(reader.entries("water")), reader.entry(HF).status
 
     first, later, rebuilt, now = (1, 3, "base"), (1, 4, "quarantined"), (4, 2, "quarantined"), (4, 2, "approved")
-    assert seen(None) == seen("2025-04-02") == seen("2099-01-01") == now
+    assert seen(None) == seen("2025-04-02") == now
     assert seen("2025-03-10") == seen(date(2025, 3, 19)) == seen("2025-03-20T23:59:59Z") == first
     assert seen("2025-03-20") == seen("2025-03-31") == seen("2025-03-20T23:59:59.999999") == later
     assert seen("2025-04-01") == seen(datetime(2025, 4, 1)) == seen(datetime(2025, 4, 1, tzinfo=UTC)) == rebuilt
@@ -167,7 +168,15 @@ def test_as_of(tmp_path: Path, clock: list[str]) -> None:
     for when in ("yesterday", "2025-13-01", "", "10.3.2025"):
         with pytest.raises(InvalidInput, match="not a date"):
             Reader(path, as_of=when)
-    assert seen("9999-12-31") == now
+    assert seen("2025-04-02T00:00:00Z") == seen("2025-04-02T02:00:00+02:00") == now
+    assert seen("2025-04-02T14:00:00+14:00") == now
+    clock.append("2025-04-02T10:00:00.000000Z")
+    assert seen("2025-04-03") == now  # it has begun in the east
+    for when in ("2025-04-04", "2099-01-01", "9999-12-31", "2025-04-02T10:00:00.000001Z", date(2025, 5, 1)):
+        with pytest.raises(InvalidInput, match=r"lies in the future.*leave --as-of out"):
+            Reader(path, as_of=when)
+    clock.append("2025-03-30T00:00:00.000000Z")  # a clock set back: the log knows better
+    assert seen("2025-04-02") == now
 
 
 # -- tampering -----------------------------------------------------------------------------------------------------
@@ -224,7 +233,7 @@ def test_an_edited_event_shows(history: Path, column: str, value: str) -> None:
 def test_an_edited_event_with_a_new_hash_breaks_the_chain(history: Path) -> None:
     with closing(sqlite3.connect(history)) as conn:
         row = conn.execute(f"SELECT {log._COLUMNS} FROM event WHERE seq = 3").fetchone()
-    forged = log._event_hash(row[8], *row[:4], "somebody", *row[5:8])
+    forged = log.event_hash(row[8], *row[:4], "somebody", *row[5:8])
     problems = tamper(history, f"UPDATE event SET who = 'somebody', hash = '{forged}' WHERE seq = 3")
     assert problems == ["event 4: does not carry the hash of the event before it"]
 
@@ -273,7 +282,7 @@ def test_an_edited_base_shows(history: Path, change: str) -> None:
 
 
 def test_an_added_entry_shows(history: Path) -> None:
-    names = list(log.HASHED)
+    names = list(HASHED)
     columns = ", ".join(f'"{name}"' for name in names)
     problems = tamper(
         history,
@@ -285,9 +294,16 @@ def test_an_added_entry_shows(history: Path) -> None:
 
 def test_guards_taken_away_show(history: Path) -> None:
     problems = tamper(history, "SELECT 1", guards_back=False)
-    assert [f"trigger {name}: was taken away" for name in sorted(GUARDS)] == [
-        text for text in problems if "base_entry_once" not in text
-    ]
+    names = {text.removeprefix("trigger ").removesuffix(": was taken away") for text in problems}
+    assert len(problems) == len(names)
+    assert names == {*GUARDS, "base_entry_once", "name_indexed", "name_unindexed", "name_fixed"}
+
+
+def test_a_guard_that_guards_nothing_shows(history: Path) -> None:
+    with closing(sqlite3.connect(history)) as conn:
+        conn.execute("DROP TRIGGER entry_fixed")
+        conn.execute("CREATE TRIGGER entry_fixed BEFORE UPDATE ON entry BEGIN SELECT 1; END")
+    assert [str(problem) for problem in check(history)] == ["trigger entry_fixed: was changed"]
 
 
 def test_payload_formatting_is_no_way_around(history: Path) -> None:

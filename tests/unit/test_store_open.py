@@ -11,10 +11,11 @@ from contextlib import closing
 from pathlib import Path
 
 import pytest
-from store_samples import WATER, content, entry
+from store_samples import SEED, WATER, content, entry
 
 from propdb.errors import IntegrityError, InvalidInput, StoreBusy, StoreError, StoreReadOnly
-from propdb.store import migrate
+from propdb.store import log, migrate
+from propdb.store.backup import check
 from propdb.store.open import APPLICATION_ID, SCHEMA, default_path, mapped, open_store
 from propdb.store.own import add_own
 from propdb.store.read import Reader
@@ -48,7 +49,9 @@ def test_header_of_a_store(store: Path) -> None:
         assert conn.execute("PRAGMA user_version").fetchone() == (SCHEMA,)
         assert conn.execute("PRAGMA journal_mode").fetchone() == ("wal",)
         assert conn.execute("PRAGMA foreign_keys").fetchone() == (1,)
-        assert conn.execute("SELECT number, name FROM migration").fetchall() == [(1, "initial")]
+        assert conn.execute("SELECT number, name FROM migration").fetchall() == [
+            (number, name) for number, name, _ in migrate.migrations()
+        ]
         tables = conn.execute(
             "SELECT name FROM pragma_table_list WHERE type = 'table' AND strict = 0 AND schema = 'main'"
         )
@@ -157,8 +160,12 @@ def test_every_name_of_a_file_can_be_opened(tmp_path: Path) -> None:
     }
 
 
-SECOND = (2, "more", "CREATE TABLE more (x INTEGER); -- a comment\nINSERT INTO more VALUES (1);\n")
-BAD = (2, "bad", "CREATE TABLE bad (x INTEGER);\nINSERT INTO bad VALUES (1);\nINSERT INTO nowhere VALUES (1);\n")
+NEXT = (SCHEMA + 1, "more", "CREATE TABLE more (x INTEGER); -- a comment\nINSERT INTO more VALUES (1);\n")
+BAD = (
+    SCHEMA + 1,
+    "bad",
+    "CREATE TABLE bad (x INTEGER);\nINSERT INTO bad VALUES (1);\nINSERT INTO nowhere VALUES (1);\n",
+)
 
 
 @pytest.fixture
@@ -172,7 +179,7 @@ def next_schema(monkeypatch: pytest.MonkeyPatch) -> list[tuple[int, str, str]]:
 
 
 def test_an_older_schema_is_brought_up_when_written(store: Path, next_schema: list[tuple[int, str, str]]) -> None:
-    next_schema.append(SECOND)
+    next_schema.append(NEXT)
     error = refused(store)
     assert error.fields["reason"] == "older-schema"
     assert "own data and the log are kept" in str(error)
@@ -180,7 +187,7 @@ def test_an_older_schema_is_brought_up_when_written(store: Path, next_schema: li
         with closing(open_store(store, write=True)) as conn:
             assert conn.execute("PRAGMA user_version").fetchone() == (SCHEMA + 1,)
             assert conn.execute("SELECT x FROM more").fetchall() == [(1,)]
-            assert conn.execute("SELECT number, name FROM migration").fetchall() == [(1, "initial"), (2, "more")]
+            assert conn.execute("SELECT number, name FROM migration").fetchall()[-1] == NEXT[:2]
     with Reader(store) as reader:
         assert len(reader.entries("water")) == 3
 
@@ -192,7 +199,7 @@ def test_a_migration_that_fails_leaves_nothing(store: Path, next_schema: list[tu
     with closing(sqlite3.connect(store)) as conn:
         assert conn.execute("PRAGMA user_version").fetchone() == (SCHEMA,)
         assert conn.execute("SELECT name FROM sqlite_master WHERE name = 'bad'").fetchall() == []
-        assert conn.execute("SELECT number FROM migration").fetchall() == [(1,)]
+        assert conn.execute("SELECT number FROM migration").fetchall() == [(number,) for number in range(1, SCHEMA + 1)]
 
 
 def test_a_first_migration_that_fails_leaves_an_empty_file(
@@ -202,6 +209,34 @@ def test_a_first_migration_that_fails_leaves_an_empty_file(
     with pytest.raises(StoreError, match="nowhere"):
         open_store(tmp_path / "new.db", write=True, create=True)
     assert refused(tmp_path / "new.db").fields["reason"] == "empty"
+
+
+def test_a_store_of_the_first_schema_keeps_everything(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    path = tmp_path / "first.db"
+    with monkeypatch.context() as patch:
+        for module in ("open", "migrate"):
+            patch.setattr(f"propdb.store.{module}.SCHEMA", 1)
+        build(path, content(), versions={"propdb": "0"})
+        own = entry(WATER, value=1.0)
+        add_own(path, own, entry(WATER).carriers[0], "me")
+        with closing(open_store(path, write=True)) as conn:
+            log.append(conn, "checked", entry=own.id, who="someone else")
+        with Reader(path) as reader:
+            events, entries, head = reader.events(), list(reader.every_entry()), reader.head
+    assert refused(path).fields["reason"] == "older-schema"
+    open_store(path, write=True).close()
+    assert check(path) == []
+    with Reader(path) as reader:
+        assert (reader.events(), list(reader.every_entry()), reader.head) == (events, entries, head)
+    with closing(open_store(path, write=True)) as conn:
+        for sql in ("UPDATE entry SET value = 0", "DELETE FROM event", "INSERT INTO event SELECT * FROM event"):
+            with pytest.raises(IntegrityError), mapped(path):
+                conn.execute(sql)
+        with pytest.raises(InvalidInput, match="FOREIGN KEY"), mapped(path):
+            conn.execute("INSERT INTO carrier VALUES (999, '', '', '', 0, '')")
+        log.append(conn, "rejected", entry=own.id, who="someone else", comment="a slip of the pen")
+    add_own(path, entry(WATER, "H", value=None, equation="table", params={"T": [300.0]}), SEED, "me")
+    assert check(path) == []
 
 
 def test_a_path_that_cannot_be_one() -> None:

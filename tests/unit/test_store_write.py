@@ -21,6 +21,7 @@ from propdb.store.open import mapped, open_store
 from propdb.store.own import add_own, add_own_all, put_own
 from propdb.store.read import Reader
 from propdb.store.search import find, resolve
+from propdb.store.verify import stored_content_hash
 from propdb.store.write import build
 
 MINE = Carrier("own", "", "mine.csv", 7, "typed by hand")
@@ -85,7 +86,7 @@ def test_two_fresh_builds_agree(tmp_path: Path) -> None:
         build(tmp_path / name, content(), versions={})
         with Reader(tmp_path / name) as reader:
             hashes.add(reader.content_hash)
-            assert log.stored_content_hash(reader.conn, reader.base.seq) == reader.content_hash
+            assert stored_content_hash(reader.conn, reader.base.seq) == reader.content_hash
     assert hashes == {content_hash(content())}
 
 
