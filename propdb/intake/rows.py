@@ -92,7 +92,9 @@ class Row:
         if _NUMBER.fullmatch(text) is None:
             if _DECIMAL_COMMA.fullmatch(text):
                 point = text.replace(",", ".")
-                other = f" or, if the comma parts thousands, {text.replace(',', '')}" if _GROUPED.fullmatch(text) else ""
+                other = (
+                    f" or, if the comma parts thousands, {text.replace(',', '')}" if _GROUPED.fullmatch(text) else ""
+                )
                 raise self.error(column, f"{text!r} has a comma", f"the decimal point is '.': {point}{other}")
             if _THOUSANDS.fullmatch(text):
                 raise self.error(column, f"{text!r} has a thousands separator", f"write {text.replace(',', '')}")
