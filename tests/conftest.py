@@ -31,8 +31,10 @@ def root() -> Path:
 
 @pytest.fixture(scope="session", autouse=True)
 def _no_user_data(tmp_path_factory: pytest.TempPathFactory) -> Iterator[None]:
-    """Keep every test away from the store of the person who runs it."""
+    """Keep every test away from the store, the configuration and the name of the person who runs it."""
     with pytest.MonkeyPatch.context() as patch:
+        patch.delenv("PROPDB_USER", raising=False)
+        patch.setenv("PROPDB_CONFIG", str(tmp_path_factory.getbasetemp() / "config.toml"))
         if "PROPDB_STORE" not in os.environ:
             patch.setenv("PROPDB_STORE", str(tmp_path_factory.getbasetemp() / "propdb.db"))
         yield

@@ -53,6 +53,13 @@ class Core:
         if reader is not None:
             reader.close()
 
+    def _must_be_present(self) -> None:
+        """Refuse to change a store that is looked at as it was."""
+        if self._as_of is not None:
+            raise InvalidInput(
+                f"the store as of {self._as_of} cannot be changed", hint="leave --as-of out to change it as it is"
+            )
+
     def __enter__(self) -> Self:
         return self
 
@@ -163,10 +170,12 @@ class Core:
         DatumError
             The file contradicts itself, or a name is taken.
         """
+        from propdb.api.person import who_if_named
         from propdb.datum.reading import parse_datums
         from propdb.datum.writing import datum_body
-        from propdb.store.own import put_own
+        from propdb.store.own import UNNAMED, put_own
 
+        self._must_be_present()
         place = Path(file)
         data = _read_toml(place)
         elements = self._reader.policies().get("elements", {})
@@ -178,7 +187,8 @@ class Core:
                 raise DatumError(f"a datum named {name} exists", where=place.name, hint="choose another name")
             if datum.source != "common-practice":
                 self._reader.source(datum.source)
-        put_own(self._path, datums={name: datum_body(d) for name, d in found.items()})
+        bodies = {name: datum_body(datum) for name, datum in found.items()}
+        put_own(self._path, datums=bodies, who=who_if_named() or UNNAMED)
         self._forget()
         return list(found)
 

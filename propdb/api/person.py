@@ -75,7 +75,9 @@ def _read(place: Path) -> dict[str, object]:
     except FileNotFoundError:
         return {}
     except UnicodeDecodeError as error:
-        raise InvalidInput("not text in UTF-8", where=str(place), hint='save it again; it holds user = "name"') from error
+        raise InvalidInput(
+            "not text in UTF-8", where=str(place), hint='save it again; it holds user = "name"'
+        ) from error
     except (OSError, ValueError) as error:
         reason = getattr(error, "strerror", None) or error
         raise InvalidInput(f"the configuration cannot be read: {reason}", where=str(place)) from error

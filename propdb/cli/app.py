@@ -7,6 +7,7 @@ A verb module holds an ``app`` and one function for each verb, decorated with :f
 from __future__ import annotations
 
 import inspect
+import re
 import sys
 from collections.abc import Callable, Iterable, Mapping
 from typing import TYPE_CHECKING, Annotated, Any, cast
@@ -33,8 +34,17 @@ class PipeClosed(Exception):
     """Nobody reads standard output any more."""
 
 
+_CONTROL = re.compile("[\x00-\x08\x0b-\x1f\x7f-\x9f\u061c\u200e\u200f\u2028-\u202e\u2066-\u2069\ud800-\udfff]")
+
+
+def _harmless(text: str) -> str:
+    """Control characters that got into a name or a comment as ``\\x1b``, so that they control nothing."""
+    return _CONTROL.sub(lambda found: ascii(found[0])[1:-1], text)
+
+
 def write(text: str) -> None:
-    """Print a text on standard output."""
+    """Print a text on standard output, control characters escaped."""
+    text = _harmless(text)
     try:
         sys.stdout.write(text if text.endswith("\n") else text + "\n")
     except BrokenPipeError as error:
@@ -43,7 +53,7 @@ def write(text: str) -> None:
 
 def note(text: str) -> None:
     """Print a message on standard error."""
-    print(text, file=sys.stderr, flush=True)
+    print(_harmless(text), file=sys.stderr, flush=True)
 
 
 class Call:
@@ -80,6 +90,16 @@ class Call:
             write(dumps(data()))
         else:
             write(text())
+
+    def show_lines(self, data: Callable[[], Iterable[Any]], text: Callable[[], str]) -> None:
+        """Print each of ``data()`` as one line of JSON if JSON was asked for, else ``text()``."""
+        if not self.json:
+            write(text())
+            return
+        from propdb.cli.jsontext import dumps
+
+        for one in data():
+            write(dumps(one, indent=None))
 
 
 class _Plain:

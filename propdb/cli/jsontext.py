@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import json
 import math
+import re
 import sys
 from collections.abc import Mapping
 from dataclasses import fields, is_dataclass
@@ -11,14 +12,18 @@ from fractions import Fraction
 from pathlib import Path
 from typing import Any
 
+#: Control characters that JSON itself would leave as they are.
+_CONTROL = re.compile("[\x7f-\x9f\u061c\u200e\u200f\u2028-\u202e\u2066-\u2069\ud800-\udfff]")
 
-def dumps(data: Any) -> str:
-    """Write data as JSON.
+
+def dumps(data: Any, *, indent: int | None = 2) -> str:
+    """Write data as JSON, ``indent=None`` in one line.
 
     Dataclasses become objects, fractions text (``"1/2"``), and a number that is not finite ``null``.
     """
     unicode = (getattr(sys.stdout, "encoding", None) or "").lower().replace("-", "") == "utf8"
-    return json.dumps(_plain(data), indent=2, ensure_ascii=not unicode, allow_nan=False)
+    text = json.dumps(_plain(data), indent=indent, ensure_ascii=not unicode, allow_nan=False)
+    return _CONTROL.sub(lambda found: f"\\u{ord(found[0]):04x}", text)
 
 
 def _plain(value: Any) -> Any:

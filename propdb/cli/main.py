@@ -30,8 +30,10 @@ VERBS: Mapping[str, tuple[str, str]] = MappingProxyType(
         "reaction": ("propdb.cli.reaction", "Give the enthalpy of a reaction by two routes."),
         "datum": ("propdb.cli.datum", "List, show and add datums."),
         "source": ("propdb.cli.source", "List, show and cite sources."),
-        "entry": ("propdb.cli.entry", "Show one entry with all that is known about it."),
-        "store": ("propdb.cli.store", "Look after the store: info, check, path, rebuild, backup."),
+        "entry": ("propdb.cli.entry", "Show one entry with all that is known about it, and its history."),
+        "review": ("propdb.cli.review", "Check and approve what others added; raise and settle doubts."),
+        "fuel": ("propdb.cli.fuel", "Add fuels from an ultimate analysis and a calorific value, and show them."),
+        "store": ("propdb.cli.store", "Look after the store: info, check, path, log, setting, rebuild, backup."),
     }
 )
 

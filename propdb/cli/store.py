@@ -1,4 +1,4 @@
-"""``propdb store info|check|path|rebuild|backup``."""
+"""``propdb store info|check|path|log|setting|rebuild|backup``."""
 
 from __future__ import annotations
 
@@ -9,7 +9,7 @@ import typer
 
 from propdb.cli.app import Call, family, note, verb, write
 
-app = family("Look after the store: info, check, path, rebuild, backup.")
+app = family("Look after the store: info, check, path, log, setting, rebuild, backup.")
 
 
 @verb(app, "propdb store info", "propdb store info --coverage")
@@ -39,6 +39,51 @@ def check(call: Call) -> None:
 def path(call: Call) -> None:
     """Print where the store is."""
     write(str(call.unopened.store_path()))
+
+
+@verb(app, "propdb store log", "propdb store log --last 20 --json", "propdb store log --verify")
+def log(
+    call: Call,
+    last: Annotated[
+        int | None, typer.Option("--last", metavar="N", help="Only the last events.", show_default=False)
+    ] = None,
+    verify: Annotated[
+        bool, typer.Option("--verify", help="Check that everything is as propdb wrote it; list whatever is not.")
+    ] = False,
+) -> None:
+    """Show what was built, added and decided, and the head of the log; with --json one event a line."""
+    from propdb.cli.reviewtext import event_dict, head_text, log_text
+    from propdb.errors import IntegrityError
+
+    try:
+        found = (call.unopened if verify else call.store).store_log(last=last, verify=verify)
+    except IntegrityError as error:
+        facts = error.fields
+        if "findings" in facts:
+            call.show_lines(lambda: facts["findings"], lambda: "\n".join(facts["problems"]))
+        raise
+    if verify and not call.json:
+        write(f"everything is as it was written; {head_text(found)}")
+    else:
+        call.show_lines(lambda: [event_dict(line.event, line) for line in found.lines], lambda: log_text(found))
+
+
+@verb(app, "propdb store setting", "propdb store setting self-review off")
+def setting(
+    call: Call,
+    name: Annotated[str | None, typer.Argument(metavar="NAME", help="self-review.", show_default=False)] = None,
+    value: Annotated[
+        str | None,
+        typer.Argument(
+            metavar="VALUE", help="on or off: may people check, approve and waive their own.", show_default=False
+        ),
+    ] = None,
+) -> None:
+    """Show the settings of the store, or change one; the log records it."""
+    from propdb.cli.storetext import info_text
+
+    found = call.store.store_setting(name, value)
+    call.show(lambda: found, lambda: info_text(found))
 
 
 @verb(app, "propdb store rebuild", without=("as_of", "json"))

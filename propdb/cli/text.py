@@ -2,7 +2,16 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable, Sequence
+
+#: Characters that would move the cursor, colour a terminal, turn the order of the text or break a line.
+_UNSEEN = re.compile("[\x00-\x1f\x7f-\x9f\u061c\u200e\u200f\u2028-\u202e\u2066-\u2069\ud800-\udfff]")
+
+
+def visible(text: str) -> str:
+    """One line of what somebody typed, control characters as ``\\n`` or ``\\x1b``."""
+    return _UNSEEN.sub(lambda found: ascii(found[0])[1:-1], text)
 
 
 def columns(rows: Iterable[Sequence[str]], *, right: Iterable[int] = (), indent: int = 0, gap: int = 2) -> list[str]:

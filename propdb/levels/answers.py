@@ -69,6 +69,13 @@ def net(levels: Levels, plus: Sequence[Member], minus: Sequence[Member]) -> Diff
     return Difference(levels, plus, minus)
 
 
+def _standing(entry: Entry | None) -> str:
+    """What people of this store said for an entry."""
+    if entry is None or entry.status not in ("approved", "checked"):
+        return ""
+    return f"{entry.quantity} of {entry.source} [{entry.id[:8]}] is {entry.status} in this store"
+
+
 class Derivation:
     """Turns legs into the common fields of an answer."""
 
@@ -107,6 +114,7 @@ class Derivation:
         return None, f"not stated by {', '.join(names)}"
 
     def steps(self) -> tuple[Step, ...]:
+        entries = self.entries()
         return tuple(
             Step(
                 what=leg.what,
@@ -117,7 +125,7 @@ class Derivation:
                 entry=leg.entry,
                 source=leg.source,
                 extrapolated=leg.extrapolated,
-                note=leg.note,
+                note="; ".join(filter(None, (leg.note, _standing(entries.get(leg.entry))))),
             )
             for leg in self.legs
         )

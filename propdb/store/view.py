@@ -100,7 +100,7 @@ class View:
     @property
     def content_hash(self) -> str:
         """Content hash of the base, SHA-256 in hex."""
-        return str(self.base.payload["content_hash"])
+        return str(self.base.payload.get("content_hash", ""))
 
     @property
     def head(self) -> str:

@@ -31,12 +31,23 @@ def test_every_verb_has_help_and_an_example_of_itself(line: Any, verb: str) -> N
         assert param.help, f"{verb} {param.name} is not explained"
 
 
+#: What must have happened before the example of a verb.
+BEFORE = {
+    "review approve": ("review check e03c1457",),
+    "review reject": ("review check e03c1457",),
+    "review waive": ("review dispute e03c1457 --comment why",),
+}
+
+
 @pytest.mark.parametrize("example", EXAMPLES)
 def test_example_runs(
     line: Any, example: str, own_store: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
     monkeypatch.chdir(tmp_path)
     monkeypatch.setenv("PROPDB_STORE", str(own_store))
+    monkeypatch.setenv("PROPDB_USER", "ada")
+    for first in BEFORE.get(" ".join(example.split()[1:3]), ()):
+        assert line(first).code == 0
     if "my-datums.toml" in example:
         (tmp_path / "my-datums.toml").write_text(line("datum show own:g@50C --toml").out, encoding="utf-8")
     result = line(*shlex.split(example))
