@@ -6,6 +6,7 @@
     elements.csv                  atomic weights
     datums.toml                   datums and the reference forms of the elements
     ranks.toml                    source ranks and class defaults
+    lineage.toml                  who copies whom, and what a difference from another compilation may be
     */source.toml                 one bibliographic record per folder
     */entries.csv                 constants
     */curves.csv                  heat-capacity fits
@@ -25,6 +26,7 @@ from propdb.datum import datum_body, parse_datums
 from propdb.errors import DatumError, SeedError
 from propdb.intake import constants, curves, nasa, species
 from propdb.intake.common import Folder
+from propdb.intake.lineage import read_lineage
 from propdb.intake.rows import Table, near, read_csv, read_toml
 from propdb.intake.sources import read_source
 from propdb.model.records import QUANTITIES, Datum, Entry, Source, Species
@@ -56,7 +58,7 @@ def load_seed(root: Path, *, identifiers: bool = True) -> Content:
     -------
     Content
         Species, sources, datums (as :func:`propdb.datum.read_body` reads them), policy (``ranks``; ``elements``, the
-        table of reference forms) and entries in SI.
+        table of reference forms; ``lineage``) and entries in SI.
 
     Raises
     ------
@@ -85,7 +87,11 @@ def load_seed(root: Path, *, identifiers: bool = True) -> Content:
         species=list(found.values()),
         sources=list(sources.values()),
         datums={name: datum_body(datum) for name, datum in datums.items()},
-        policy={"ranks": _ranks(root), "elements": datum_tables.get("elements", {})},
+        policy={
+            "ranks": _ranks(root),
+            "elements": datum_tables.get("elements", {}),
+            "lineage": read_lineage(root / "lineage.toml", sources=sources, species=found),
+        },
         entries=entries,
     )
 

@@ -8,11 +8,16 @@ from fractions import Fraction
 from types import MappingProxyType
 from typing import Any, Literal
 
+from propdb.model.crosscheck import Crosscheck
+
 PHASES = ("cr", "am", "l", "g", "fluid", "aq")
 QUANTITIES = ("Hf", "Gf", "S", "Cp", "Hvap", "Hfus", "Hsub", "Htr", "dH0", "Tb", "Tm", "Tc", "Pc", "omega", "H")
 
 #: Best first. Entries with a status that is not listed here never enter a computation.
 USABLE_STATUSES = ("approved", "checked", "base", "disputed", "estimate")
+#: Place of a status where entries compete. A dispute is told with the answer and by itself moves nothing: otherwise an
+#: entry that a worse source contradicts would give way to one that nobody could compare.
+STATUS_PLACE = MappingProxyType({"approved": 0, "checked": 1, "base": 2, "disputed": 2, "estimate": 3})
 STATUSES = (*USABLE_STATUSES, "quarantined", "datum-unknown", "draft", "superseded", "withdrawn")
 
 T_STANDARD = 298.15
@@ -112,6 +117,7 @@ class Entry:
     status: str = "base"
     note: str = ""
     carriers: tuple[Carrier, ...] = ()
+    crosschecks: tuple[Crosscheck, ...] = ()  # derived, and no part of what makes it this entry
 
     def standard_uncertainty(self) -> float | None:
         """As one standard deviation (JCGM 100:2008, 4.3): 95 % halves, a maximum error is rectangular."""

@@ -16,7 +16,7 @@ __all__ = ["APPLICATION_ID", "SCHEMA", "default_path", "mapped", "open_store", "
 #: "prdb" in the header of the file says that the SQLite file is a propdb store.
 APPLICATION_ID = 0x70726462
 #: Number of the newest migration in ``schema/``.
-SCHEMA = 2
+SCHEMA = 3
 #: The first SQLite with STRICT tables.
 SQLITE_NEEDED = (3, 37, 0)
 

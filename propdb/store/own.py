@@ -14,6 +14,7 @@ from propdb.errors import NotFound
 from propdb.model.records import Carrier, Entry, Source, Species
 from propdb.store import log, seal
 from propdb.store.content import Member, canonical, entry_id, validate_entry
+from propdb.store.crosschecks import Checker, put_crosschecks
 from propdb.store.migrate import immediate
 from propdb.store.open import mapped, open_store, path_of
 from propdb.store.rows import species_of, species_row
@@ -37,12 +38,20 @@ def writing(target: Target) -> Iterator[sqlite3.Connection]:
             yield conn
 
 
-def add_own(target: Target, entry: Entry, carrier: Carrier, who: str, *, comment: str = "") -> str:
+def add_own(
+    target: Target,
+    entry: Entry,
+    carrier: Carrier,
+    who: str,
+    *,
+    comment: str = "",
+    checker: Checker | None = None,
+) -> str:
     """Add one own entry, with a ``created`` event; its status is draft until another event. Its id.
 
     As :func:`add_own_all`.
     """
-    return add_own_all(target, [(entry, carrier)], who, comment=comment)[0]
+    return add_own_all(target, [(entry, carrier)], who, comment=comment, checker=checker)[0]
 
 
 def add_own_all(
@@ -53,6 +62,7 @@ def add_own_all(
     species: Sequence[Species] = (),
     sources: Sequence[Source] = (),
     comment: str = "",
+    checker: Checker | None = None,
 ) -> tuple[str, ...]:
     """Add own entries, and the species and sources that they need: all or nothing.
 
@@ -68,6 +78,8 @@ def add_own_all(
         Own ones, added or replaced first.
     comment : str
         For the ``created`` events.
+    checker : callable, optional
+        Compares the entries with other compilations; what it says is stored beside them.
 
     Returns
     -------
@@ -104,6 +116,8 @@ def add_own_all(
                 raise NotFound(f"no source {entry.source!r}", where=f"entry of {entry.species}", hint=hint)
             member = Member(entry, "draft", entry.note, entry.printed, (*entry.carriers, carrier))
             row = put_entries(conn, [member], {one.name: one})[entry.id]
+            if checker is not None:
+                put_crosschecks(conn, [(row, checker(entry, one))])
             if entry.id not in ids and _is_new(conn, row, entry.id):
                 added.append(_Added(number, row, entry))
             ids[entry.id] = None

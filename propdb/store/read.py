@@ -12,7 +12,9 @@ from types import MappingProxyType
 from typing import Any, Final
 
 from propdb.errors import Ambiguous, NotFound
+from propdb.model.crosscheck import Crosscheck
 from propdb.model.records import Carrier, Entry, Source, Species
+from propdb.store.crosschecks import CROSSCHECK_COLUMNS, crosscheck_from
 from propdb.store.rows import ENTRY_COLUMNS, carrier_from, entry_from, frozen, sources_of, species_of
 from propdb.store.view import LOGGED, MEMBER, View
 
@@ -136,20 +138,34 @@ class Reader(View):
             held = carriers[row[0]]
             if carrier not in held:  # an entry both own and of the base comes twice
                 held.append(carrier)
-        found = [self._entry(row, tuple(carriers[number])) for number, row in rows.items()]
+        checks = self._crosschecks(start, where, values)
+        found = [self._entry(row, tuple(carriers[number]), checks.get(number, ())) for number, row in rows.items()]
         found.sort(key=_order)
         return tuple(found)
 
-    def _entry(self, row: tuple[Any, ...], carriers: tuple[Carrier, ...]) -> Entry:
+    def _crosschecks(self, start: str, where: str, values: Mapping[str, Any]) -> dict[int, tuple[Crosscheck, ...]]:
+        """Row number of an entry to what other compilations say: independent ones first, those shown only last."""
+        found: dict[int, dict[Crosscheck, None]] = {}  # an entry both own and of the base comes twice
+        for row in self.conn.execute(
+            f"SELECT x.entry, {CROSSCHECK_COLUMNS} FROM {start} CROSS JOIN crosscheck x ON x.entry = b.entry"
+            f" WHERE {where} AND {MEMBER} ORDER BY x.independent DESC, x.allowed IS NULL, x.compilation, x.temperature",
+            values,
+        ):
+            found.setdefault(row[0], {})[crosscheck_from(row[1:])] = None
+        return {number: tuple(checks) for number, checks in found.items()}
+
+    def _entry(self, row: tuple[Any, ...], carriers: tuple[Carrier, ...], checks: tuple[Crosscheck, ...]) -> Entry:
         """The record of a row of ``_COLUMNS``; the one made before where nothing about it has changed."""
         num, number, species, _, status, note, printed, logged = row[:_AHEAD]
         status = logged or status
         known = self._decoded.get(num)
-        if known is not None and (known.status, known.note, known.species, known.carriers) == (
-            status,
-            note,
-            species,
-            carriers,
+        beside = (status, note, species, carriers, checks)
+        if known is not None and beside == (
+            known.status,
+            known.note,
+            known.species,
+            known.carriers,
+            known.crosschecks,
         ):
             return known
         entry = entry_from(
@@ -160,6 +176,7 @@ class Reader(View):
             status=status,
             note=note,
             carriers=carriers,
+            crosschecks=checks,
             params=known.params if known is not None else None,
         )
         self._decoded[num] = entry

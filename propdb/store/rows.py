@@ -11,6 +11,7 @@ from fractions import Fraction
 from types import MappingProxyType
 from typing import Any, Final
 
+from propdb.model.crosscheck import Crosscheck
 from propdb.model.records import Carrier, Entry, Source, Species
 from propdb.store.content import HASHED, canonical, identity, source_body, species_body
 
@@ -138,13 +139,15 @@ def entry_from(
     status: str,
     note: str,
     carriers: tuple[Carrier, ...],
+    crosschecks: tuple[Crosscheck, ...] = (),
     params: Mapping[str, Any] | None = None,
 ) -> Entry:
     """A record from :data:`ENTRY_COLUMNS`; ``params`` where they have been decoded before."""
     if params is None:
         text = row[_AT_PARAMS]
         params = _NO_PARAMS if text == "{}" else frozen(json.loads(text))
-    return Entry(*(number, species, *row[:_AT_PARAMS], params, *row[_AT_PARAMS + 1 :], printed, status, note, carriers))
+    beside = (printed, status, note, carriers, crosschecks)
+    return Entry(*(number, species, *row[:_AT_PARAMS], params, *row[_AT_PARAMS + 1 :], *beside))
 
 
 def carrier_from(row: tuple[Any, ...]) -> Carrier:

@@ -12,7 +12,7 @@ from itertools import islice
 from typing import TYPE_CHECKING, Any
 
 from propdb.model.records import Carrier, Source, Species
-from propdb.store import log, seal
+from propdb.store import crosschecks, log, seal
 from propdb.store.content import (
     HASHED,
     Content,
@@ -64,6 +64,7 @@ def build(
     versions: Mapping[str, str],
     progress: Progress | None = None,
     timeout: float = 60.0,
+    checker: crosschecks.Checker | None = None,
 ) -> BuildReport:
     """Make ``content`` the base of the store at ``path``, which is created where there is none.
 
@@ -82,6 +83,9 @@ def build(
         Called with one line of text now and then.
     timeout : float
         How long to wait for another writer [s].
+    checker : callable, optional
+        Compares entries with other compilations; what it says is stored beside those of the base and own ones, anew
+        where it was read from another version.
 
     Raises
     ------
@@ -93,11 +97,21 @@ def build(
     tell(f"checking {len(content.entries)} entries")
     held = validate(content)
     digest = hash_of(content, held)
+    species = {one.name: one for one in content.species}
+    pairs = [(member.entry, species[member.entry.species]) for member in held.values()]
+    if checker is not None:
+        tell("comparing them with other compilations")
+        for pair in pairs:
+            checker(*pair)  # kept by the checker, so that no other writer waits for it
     with closing(open_store(path, write=True, create=True, timeout=timeout)) as conn, mapped(path), immediate(conn):
         before = log.last_base(conn)
         if before is not None and before.payload.get("content_hash") == digest:
-            return BuildReport(False, digest, before.seq, len(held), 0, 0, len(content.species), 0, 0, 0)
-        return _write(conn, content, held, digest, versions, before, tell)
+            report = BuildReport(False, digest, before.seq, len(held), 0, 0, len(content.species), 0, 0, 0)
+        else:
+            report = _write(conn, content, held, digest, versions, before, tell)
+        if checker is not None and (report.changed or crosschecks.stale(conn, checker.package)):
+            crosschecks.put_all(conn, pairs, checker)
+        return report
 
 
 def _write(
