@@ -12,6 +12,7 @@ from typing import TYPE_CHECKING
 
 from propdb.api.care import Care
 from propdb.api.enthalpies import Enthalpies
+from propdb.api.intake import Intake
 from propdb.api.fuels import Fuels
 from propdb.api.opening import build_seed, to_stderr
 from propdb.api.review import Review
@@ -25,7 +26,7 @@ if TYPE_CHECKING:
 __all__ = ["Store", "open"]
 
 
-class Store(Enthalpies, Care, Review, Fuels):
+class Store(Enthalpies, Care, Review, Fuels, Intake):
     """One store file. Reading is lazy; every method opens what it needs. One per thread.
 
     Parameters

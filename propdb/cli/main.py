@@ -31,6 +31,8 @@ VERBS: Mapping[str, tuple[str, str]] = MappingProxyType(
         "datum": ("propdb.cli.datum", "List, show and add datums."),
         "source": ("propdb.cli.source", "List, show and cite sources."),
         "entry": ("propdb.cli.entry", "Show one entry with all that is known about it, and its history."),
+        "add": ("propdb.cli.add", "Add values of your own as drafts, from a template or asked for one by one."),
+        "import": ("propdb.cli.import_", "Bring in a file as drafts: a filled template or ThermoML."),
         "review": ("propdb.cli.review", "Check and approve what others added; raise and settle doubts."),
         "fuel": ("propdb.cli.fuel", "Add fuels from an ultimate analysis and a calorific value, and show them."),
         "store": ("propdb.cli.store", "Look after the store: info, check, path, log, setting, rebuild, backup."),

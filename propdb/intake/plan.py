@@ -29,6 +29,7 @@ __all__ = [
     "settle",
     "summary",
     "this_year",
+    "whole",
 ]
 
 #: Characters that turn the direction of a text: what is shown would not be what is stored.
@@ -59,6 +60,7 @@ class Refused:
     """Something that is wrong: nothing of its file is taken until it is put right."""
 
     place: str
+    column: str
     problem: str
     hint: str
 
@@ -165,6 +167,11 @@ def carried(entry: Entry, package: str, version: str, how: str) -> tuple[Entry, 
 def own_carrier(entry: Entry, how: str) -> tuple[Entry, Carrier]:
     """:func:`carried`, for a row of a template."""
     return carried(entry, "own", __version__, how)
+
+
+def whole(one: Candidate) -> Entry:
+    """The entry of a candidate with all its carriers."""
+    return replace(one.entry, carriers=(*one.entry.carriers, one.carrier))
 
 
 def settle(plan: Plan, known: Known) -> Plan:
