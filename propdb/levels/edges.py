@@ -12,7 +12,7 @@ from propdb.levels import residual
 from propdb.levels.curves import Critical, Curve, Formulation, celsius
 from propdb.levels.parts import Leg, add_parts, ranking_uncertainty
 from propdb.levels.policy import Policy, choose
-from propdb.model.records import STATUS_PLACE, T_STANDARD, Entry, Part, State
+from propdb.model.records import T_STANDARD, USABLE_STATUSES, Entry, Part, State
 
 __all__ = ["ROOT", "Edge", "Node", "collect", "heating_edges", "leg_edge", "vapour_of"]
 
@@ -56,7 +56,7 @@ class Edge:
     source: Leg | Callable[[], Leg]
     kind: str  # definition | heating | formation | transition | increment | residual | formulation
     size: float = 0.0
-    status: int = 0  # its STATUS_PLACE
+    status: int = 0  # Entry.place
     pin: int = 0
     rank: int = 0
     what: str = ""
@@ -120,7 +120,7 @@ def entry_edge(entry: Entry, start: Node, end: Node, value: float, what: str, ki
         source=entry.source,
     )
     pin = 0 if not policy.pinned or entry.source in policy.pinned else 1
-    status = STATUS_PLACE[entry.status]
+    status = entry.place
     return leg_edge(leg, start, end, kind, status=status, pin=pin, rank=policy.rank(entry))
 
 
@@ -267,7 +267,7 @@ def _residual_edge(species: str, node: Node, c: Critical, vapour: str) -> Edge:
         )
 
     size = residual.standard(residual.estimate(temperature=node.temperature, tc=c.tc, omega=c.omega), vapour=vapour)
-    return Edge(node, gas, leg, "residual", size, STATUS_PLACE["base"], what="residual enthalpy")
+    return Edge(node, gas, leg, "residual", size, USABLE_STATUSES.index("base"), what="residual enthalpy")
 
 
 def _formulation_edges(formulation: Formulation, vapours: set[Node]) -> list[Edge]:
@@ -280,7 +280,7 @@ def _formulation_edges(formulation: Formulation, vapours: set[Node]) -> list[Edg
         leg = formulation.legs(State("l", T_STANDARD), state)[0]
         if end.phase == "g":
             leg = replace(leg, end=f"{end.text()} (zero density)")
-        status = STATUS_PLACE[formulation.entry.status]
+        status = formulation.entry.place
         edges.append(leg_edge(leg, start, end, "formulation", status=status))
     return edges
 

@@ -6,7 +6,7 @@ from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass, field
 from typing import Any, Protocol
 
-from propdb.model.records import STATUS_PLACE, USABLE_STATUSES, Datum, Entry, Source, Species
+from propdb.model.records import USABLE_STATUSES, Datum, Entry, Source, Species
 
 __all__ = ["Data", "Policy", "choose", "order"]
 
@@ -84,7 +84,7 @@ def order(policy: Policy) -> Callable[[Entry], tuple[Any, ...]]:
         pin = policy.pinned.index(entry.source) if entry.source in policy.pinned else len(policy.pinned)
         return (
             pin,
-            STATUS_PLACE[entry.status],
+            entry.place,
             policy.rank(entry),
             policy.standard_si(entry),
             entry.id,

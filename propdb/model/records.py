@@ -15,9 +15,6 @@ QUANTITIES = ("Hf", "Gf", "S", "Cp", "Hvap", "Hfus", "Hsub", "Htr", "dH0", "Tb",
 
 #: Best first. Entries with a status that is not listed here never enter a computation.
 USABLE_STATUSES = ("approved", "checked", "base", "disputed", "estimate")
-#: Place of a status where entries compete. A dispute is told with the answer and by itself moves nothing: otherwise an
-#: entry that a worse source contradicts would give way to one that nobody could compare.
-STATUS_PLACE = MappingProxyType({"approved": 0, "checked": 1, "base": 2, "disputed": 2, "estimate": 3})
 STATUSES = (*USABLE_STATUSES, "quarantined", "datum-unknown", "draft", "superseded", "withdrawn")
 
 T_STANDARD = 298.15
@@ -117,7 +114,19 @@ class Entry:
     status: str = "base"
     note: str = ""
     carriers: tuple[Carrier, ...] = ()
+    decided: bool = False  # its status is somebody's decision, not that of the base
     crosschecks: tuple[Crosscheck, ...] = ()  # derived, and no part of what makes it this entry
+
+    @property
+    def place(self) -> int:
+        """Place of its status where entries compete, smaller is better.
+
+        A dispute that only a comparison raised is told and moves nothing: otherwise an entry that a worse source
+        contradicts would give way to one that nobody could compare. A person's dispute puts it behind the others.
+        """
+        if self.status == "disputed" and not self.decided:
+            return USABLE_STATUSES.index("base")
+        return USABLE_STATUSES.index(self.status)
 
     def standard_uncertainty(self) -> float | None:
         """As one standard deviation (JCGM 100:2008, 4.3): 95 % halves, a maximum error is rectangular."""

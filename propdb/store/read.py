@@ -157,14 +157,15 @@ class Reader(View):
     def _entry(self, row: tuple[Any, ...], carriers: tuple[Carrier, ...], checks: tuple[Crosscheck, ...]) -> Entry:
         """The record of a row of ``_COLUMNS``; the one made before where nothing about it has changed."""
         num, number, species, _, status, note, printed, logged = row[:_AHEAD]
-        status = logged or status
+        decided, status = logged is not None, logged or status
         known = self._decoded.get(num)
-        beside = (status, note, species, carriers, checks)
+        beside = (status, note, species, carriers, decided, checks)
         if known is not None and beside == (
             known.status,
             known.note,
             known.species,
             known.carriers,
+            known.decided,
             known.crosschecks,
         ):
             return known
@@ -176,6 +177,7 @@ class Reader(View):
             status=status,
             note=note,
             carriers=carriers,
+            decided=decided,
             crosschecks=checks,
             params=known.params if known is not None else None,
         )

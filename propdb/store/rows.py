@@ -139,6 +139,7 @@ def entry_from(
     status: str,
     note: str,
     carriers: tuple[Carrier, ...],
+    decided: bool = False,
     crosschecks: tuple[Crosscheck, ...] = (),
     params: Mapping[str, Any] | None = None,
 ) -> Entry:
@@ -146,7 +147,7 @@ def entry_from(
     if params is None:
         text = row[_AT_PARAMS]
         params = _NO_PARAMS if text == "{}" else frozen(json.loads(text))
-    beside = (printed, status, note, carriers, crosschecks)
+    beside = (printed, status, note, carriers, decided, crosschecks)
     return Entry(*(number, species, *row[:_AT_PARAMS], params, *row[_AT_PARAMS + 1 :], *beside))
 
 
