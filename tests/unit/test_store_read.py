@@ -86,7 +86,7 @@ def test_decoded_once(store: Path) -> None:
             log.append(conn, "approved", entry=first[0].id, who="me")
         second = reader.entries("water")
         assert [new is old for new, old in zip(second, first, strict=True)] == [False, True, True]
-        assert second[0] == replace(first[0], status="approved")
+        assert second[0] == replace(first[0], status="approved", decided=True)
         assert second[0].params is first[0].params
 
 
