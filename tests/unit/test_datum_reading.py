@@ -22,6 +22,7 @@ elements-298K-electron-stationary gas-25C gas-0C gas-60F gas-0K stable-25C stabl
 liquid-25C liquid-0C steam-triple-point liquid-0C-200kJ liquid-minus40 liquid-boiling-1atm humid-air-0C humid-air-0F-32F
 combustion-gross-25C combustion-gross-0C combustion-gross-15C combustion-gross-20C combustion-gross-60F
 combustion-net-25C combustion-net-0C combustion-net-15C combustion-net-20C combustion-net-60F oxides-298K
+combustion-gross-25C-HClgas combustion-net-25C-HClgas
 """.split()
 
 
