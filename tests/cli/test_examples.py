@@ -50,6 +50,14 @@ def test_example_runs(
         assert line(first).code == 0
     if "my-datums.toml" in example:
         (tmp_path / "my-datums.toml").write_text(line("datum show own:g@50C --toml").out, encoding="utf-8")
+    if example.startswith("propdb fuel "):
+        monkeypatch.setenv("PROPDB_USER", "Example")
+        (tmp_path / "my-fuel.toml").write_text(line("fuel template").out, encoding="utf-8")
+        if example.startswith("propdb fuel show "):
+            line("fuel add my-fuel.toml")
+    if "my-values.csv" in example:
+        text = line("add --template csv").out.replace("\n# ethanol,", "\nethanol,")
+        (tmp_path / "my-values.csv").write_text(text, encoding="utf-8")
     result = line(*shlex.split(example))
     assert result.code == 0, result.err
     assert result.out or result.err
