@@ -28,6 +28,8 @@ _TABLES: Final = {
     "ash": ("dry",),
     "calorific-value": ("value", "kind", "at", "basis", "uncertainty", "uncertainty-kind"),
 }
+#: Nothing of these elements burns with more than hydrogen: 285.83 kJ/mol (CODATA 1989) over 2.016 g/mol [J/kg].
+_HIGHEST: Final = 141.8e6
 _KEYS: Final = ("name", "phase", "source", "locator", "note", *_TABLES)
 _UNCERTAINTIES: Final = tuple(kind for kind in KIND_TO_STANDARD if kind)
 _WORDS: Final = {symbol: basis for basis, symbol in BASES.items()} | {basis: basis for basis in BASES}
@@ -241,7 +243,12 @@ class FuelReader:
             raise self.error(table, key, f"{value!r} is not per mass", f'write e.g. {key} = "{example}"')
         if not quantity.value > 0:
             raise self.error(table, key, f"{value!r} is not positive", "the heat that combustion gives off is positive")
-        return f"{quantity.text} {quantity.unit.text}", quantity.unit.factor * quantity.value
+        joule = quantity.unit.factor * quantity.value
+        if joule > _HIGHEST:
+            raise self.error(
+                table, key, f"{value!r} is above that of hydrogen, 141.8 MJ/kg", "check its number and unit"
+            )
+        return f"{quantity.text} {quantity.unit.text}", joule
 
     def uncertainty(self) -> tuple[float | None, str]:
         """Of the calorific value [J/kg], and its kind; neither without the other."""

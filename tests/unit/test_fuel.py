@@ -223,6 +223,8 @@ BAD: list[tuple[dict[str, Any], str]] = [
     ({"calorific_value__value": "20.2 kJ/mol"}, r"is not per mass"),
     ({"calorific_value__value": "4800 cal/g"}, r"\[calorific-value\] value: .*cal_th/g"),
     ({"calorific_value__value": "-20.2 MJ/kg"}, r"is not positive"),
+    ({"calorific_value__value": "20.2 GJ/kg"}, r"\[calorific-value\] value: .*GJ"),
+    ({"calorific_value__value": "20200 MJ/kg"}, r"'20200 MJ/kg' is above that of hydrogen, 141.8 MJ/kg; check"),
     ({"calorific_value__value": "20,2 MJ/kg"}, r"20.2"),
     ({"calorific_value__uncertainty": "0.1 MJ/kg"}, r"uncertainty-kind: an uncertainty without its kind"),
     ({"calorific_value__uncertainty_kind": "standard"}, r"kind 'standard' without an uncertainty"),
@@ -279,3 +281,34 @@ def test_a_value_that_only_expands_gas_is_refused() -> None:
     value = {"value": "1 J/kg", "kind": "gross", "at": "constant volume", "basis": "dry"}
     with pytest.raises(InvalidInput, match=r"\[calorific-value\] value: 1 J/kg leaves no heat of combustion; check"):
         read({**sample(), "analysis": parts, "calorific-value": value})
+
+
+SPLICES = ["-", "0", "1e9", "1e400", "nan", "inf", '"', "[", "]", "{", "=", "\n", "true", "1979-05-27", "100", "1e-300"]
+SPLICES += ['"by difference"', '"gross"', '"1e308 MJ/kg"', "dry", "é", "[[analysis]]\n", "99.9999", "\x7f"]
+
+
+@given(
+    st.lists(
+        st.tuples(st.integers(0, len(TEMPLATE) - 1), st.integers(0, 40), st.sampled_from(SPLICES)),
+        min_size=1,
+        max_size=4,
+    )
+)
+def test_a_damaged_file_is_read_or_refused_in_one_line(cuts: list[tuple[int, int, str]]) -> None:
+    text = TEMPLATE
+    for at, length, splice in cuts:
+        text = text[:at] + splice + text[at + length :]
+    problem = None
+    try:
+        found = read(parse_fuel_file(UserFile("fuel.toml", "toml", text, "")))
+    except InvalidInput as error:
+        problem = str(error)
+    if problem is not None:
+        assert "\n" not in problem
+        assert "fuel.toml" in problem
+        return
+    for basis in found.fuel.analysis.bases():
+        species_of(found.fuel, basis)
+        value = entry_of(found, basis, datum="combustion-gross-25C").value
+        assert value is not None
+        assert 0.0 < abs(value) < 1e9
