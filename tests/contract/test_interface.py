@@ -20,6 +20,7 @@ RENAMED = {
     "find": {"text": "text"},
     "convert": {"value_unit": "unit", "unit": "to_unit"},
     "datum show": {"toml": ""},
+    "add": {"template": ""},
 }
 #: Python's own words get an underscore or another name as methods.
 METHODS = {"import": "import_file"}
