@@ -7,6 +7,7 @@ from typing import TYPE_CHECKING, Final
 
 import typer
 
+from propdb.api.person import who
 from propdb.cli.app import Call, note
 from propdb.cli.intaketext import report_text, show_report
 from propdb.intake.templates import COLUMN_HELP
@@ -15,11 +16,11 @@ if TYPE_CHECKING:
     from propdb.intake.plan import Refused, Report
 
 _NEW_SOURCE: Final = (
+    ("source_kind", "book article report standard practice; a data sheet is a report"),
+    ("source_class", "evaluated handbook compilation practice estimate; a data sheet is a compilation"),
+    ("source_year", "four digits"),
+    ("source_authors", "names, or the body that issued it; several are parted by ;"),
     ("source_title", "title of the new source"),
-    ("source_authors", "authors, or the body that issued it; several are parted by ;"),
-    ("source_year", "year, four digits"),
-    ("source_kind", "book article report standard practice (a data sheet is a report)"),
-    ("source_class", "evaluated handbook compilation practice estimate (a data sheet is a compilation)"),
     ("source_publisher", "publisher; may stay blank"),
     ("source_doi", "DOI; may stay blank"),
 )
@@ -37,15 +38,17 @@ def ask_entry(call: Call, *, dry_run: bool) -> None:
     The answers so far are tried as a whole after each question: what they lack is asked for later, and what is wrong
     with the last answer is said and asked for again.
     """
+    if not dry_run:
+        who()  # not after a dozen answers
     dialogue = _Dialogue(call)
     note("One value of your own; Ctrl-C leaves without a trace. A blank answer leaves a field blank.")
     try:
         cells = dialogue.run()
         report = call.store.add(cells, dry_run=True)
-        note("\n" + report_text(report))
         if dry_run or report.refused or not report.taken:
             show_report(call, report)
             return
+        note("\n" + report_text(report))
         if dialogue.line("add it as a draft? (y/n)").lower() not in ("y", "yes"):
             note("nothing was added")
             return
@@ -53,6 +56,10 @@ def ask_entry(call: Call, *, dry_run: bool) -> None:
         note("nothing was added")
         raise typer.Abort from None
     show_report(call, call.store.add(cells))
+
+
+def _told(wrong: Refused) -> str:
+    return f"  {wrong.problem}; {wrong.hint}" if wrong.hint else f"  {wrong.problem}"
 
 
 class _Dialogue:
@@ -119,17 +126,15 @@ class _Dialogue:
             wrong = self.wrong(column)
             if wrong is None:
                 return
-            if column in ("source", "species") and wrong.problem.startswith("unknown") and self.define(column, wrong):
+            note(_told(wrong))
+            if column in ("source", "species") and wrong.problem.startswith("unknown") and self.define(column):
                 return
-            note(f"  {wrong.problem}; {wrong.hint}" if wrong.hint else f"  {wrong.problem}")
-            del self.cells[column]
+            self.cells.pop(column, None)
 
-    def define(self, column: str, wrong: Refused) -> bool:
+    def define(self, column: str) -> bool:
         """Ask for a new species or source; False to ask for the name again."""
         fields = _NEW_SOURCE if column == "source" else _NEW_SPECIES
-        note(f"  {wrong.problem}; {wrong.hint}" if wrong.hint else f"  {wrong.problem}")
         if self.line("  is it new, to be added with this value? (y/n)").lower() not in ("y", "yes"):
-            del self.cells[column]
             return False
         for name, words in fields:
             while True:
@@ -140,10 +145,10 @@ class _Dialogue:
                 odd = self.wrong(name)
                 if odd is None:
                     break
-                note(f"  {odd.problem}; {odd.hint}" if odd.hint else f"  {odd.problem}")
+                note(_told(odd))
         odd = self.wrong(*(name for name, _ in fields), column)
         if odd is not None:
-            note(f"  {odd.problem}; {odd.hint}" if odd.hint else f"  {odd.problem}")
+            note(_told(odd))
             self._drop(column, fields)
             return False
         return True

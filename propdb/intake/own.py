@@ -47,10 +47,14 @@ def plan_template(file: UserFile, known: Known) -> Plan:
 
     Raises
     ------
-    InvalidInput
-        The file as a whole cannot be read.
+    InvalidInput, NotFound
+        The file as a whole cannot be read, or holds no value.
     """
-    return _plan(read_written(file), Plan(file.name, file.kind), known, f"read from a {file.kind.upper()} template")
+    written = read_written(file)
+    if not written.rows and not written.problems:
+        hint = "fill in the template: one row ([[entry]] in TOML) for each value"
+        raise NotFound("the file holds no value", where=file.name, hint=hint)
+    return _plan(written, Plan(file.name, file.kind), known, f"read from a {file.kind.upper()} template")
 
 
 def plan_values(values: Sequence[Mapping[str, Any]], known: Known, how: str = "given by a program") -> Plan:
@@ -263,14 +267,15 @@ class _Builder:
                 problem = f"source {key!r} is in the store with the {odd} {mine[odd]!r}"
                 raise given.row.error(given.prefix + odd, problem, "leave its fields blank, or choose another key")
             return found
+        year = data.get("year")
+        if isinstance(year, int) and year > this_year():
+            raise given.row.error(f"{given.prefix}year", f"year {year} is in the future", "when did it appear?")
         try:
             source = parse_source(data, file=given.row.file)
         except SeedError as error:
             column = str(error.fields.get("column", ""))
             column = "source" if given.prefix and column == "key" else given.prefix + column
             raise given.row.error(column, error.problem, error.hint) from None
-        if source.year is not None and source.year > this_year():
-            raise given.row.error(f"{given.prefix}year", f"year {source.year} is in the future", "when did it appear?")
         self.plan.sources[key] = source
         return source
 
@@ -372,10 +377,3 @@ def _source_data(key: str, given: Given) -> dict[str, Any]:
     if data.setdefault("key", key) != key:
         raise given.row.error("key", f"key {data['key']!r} is not {key!r}", "leave it out")
     return data
-
-
-def nothing_given(plan: Plan) -> NotFound | None:
-    """The complaint about a template that nobody has filled in; None where something was said."""
-    if plan.candidates or plan.skipped or plan.problems:
-        return None
-    return NotFound("there is no row", where=plan.file, hint="fill in the template: one row for each value")

@@ -182,8 +182,9 @@ def settle(plan: Plan, known: Known) -> Plan:
         entry = replace(one.entry, id=entry_id(one.entry, one.species))
         if entry.species not in held:
             held[entry.species] = [] if entry.species in plan.species else list(known.reader.entries(entry.species))
-        twin = next((other for other in held[entry.species] if other.id == entry.id or _alike(other, entry)), None)
-        if twin is None:
+        twins = (other for other in held[entry.species] if other.id == entry.id or _alike(other, entry))
+        twin = next((other for other in twins if other.status != "withdrawn"), None)
+        if twin is None:  # what was withdrawn may be added anew, and is a draft again
             held[entry.species].append(entry)
             kept.append(replace(one, entry=entry))
             continue
