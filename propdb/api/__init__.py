@@ -12,8 +12,8 @@ from typing import TYPE_CHECKING
 
 from propdb.api.care import Care
 from propdb.api.enthalpies import Enthalpies
-from propdb.api.intake import Intake
 from propdb.api.fuels import Fuels
+from propdb.api.intake import Intake
 from propdb.api.opening import build_seed, to_stderr
 from propdb.api.review import Review
 from propdb.errors import StoreError

@@ -15,7 +15,7 @@ if TYPE_CHECKING:
     from propdb.store.review import Waiting
 
 #: Facts of an event that are hashes for the check of the store.
-_HASHES: Final = ("content_hash", "state", "member", "members")
+_HASHES: Final = ("content_hash", "rows", "member", "members")
 
 
 def _time(utc: str) -> str:

@@ -70,7 +70,7 @@ def history(reader: Reader, prefix: str) -> tuple[Happening, ...]:
 
 _GONE = "the base no longer holds it"
 #: Facts of an event that are for the check of the store, not for reading.
-HIDDEN = frozenset({"state", "member", "members"})
+HIDDEN = frozenset({"rows", "member", "members"})
 
 
 def _entry(reader: Reader, prefix: str) -> tuple[int, str]:

@@ -77,7 +77,8 @@ def event_hash(
     prev: str, seq: int, utc: str, kind: str, entry: str, who: str, comment: str, payload: str, status: str
 ) -> str:
     """SHA-256 that chains an event to the one before."""
-    return sha256(f"{prev}\n{canonical([seq, utc, kind, entry, who, comment, payload, status])}".encode()).hexdigest()
+    text = f"{prev}\n{canonical([seq, utc, kind, entry, who, comment, payload, status])}"
+    return sha256(text.encode(errors="surrogateescape")).hexdigest()  # an edited row may hold any bytes
 
 
 def append(

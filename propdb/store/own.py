@@ -127,7 +127,7 @@ def add_own_all(
             last = one_added is added[-1]
             _create(conn, one_added, who, comment, parts if last else {})
         if parts and not added:
-            log.append(conn, "defined", who=who, comment=comment, payload={"carriers": list(ids), "state": parts})
+            log.append(conn, "defined", who=who, comment=comment, payload={"carriers": list(ids), "rows": parts})
     return tuple(given)
 
 
@@ -151,7 +151,7 @@ def _create(conn: sqlite3.Connection, added: _Added, who: str, comment: str, par
     entry = added.entry
     again = conn.execute("SELECT 1 FROM event WHERE entry = ? AND status = 'withdrawn'", (entry.id,)).fetchone()
     member = seal.member_hash(added.species, entry.id, "draft", entry.note, int(entry.printed))
-    payload = {"member": member, **({"state": parts} if parts else {})}
+    payload = {"member": member, **({"rows": parts} if parts else {})}
     status = "draft" if again else ""
     event = log.append(conn, "created", entry=entry.id, who=who, comment=comment, payload=payload, status=status)
     conn.execute(
@@ -167,7 +167,7 @@ def _define(
     named = {kind: list(names) for kind, names in what.items() if names}
     parts = sealing.close() if named else {}
     if parts:
-        log.append(conn, "defined", who=who, comment=comment, payload={**named, "state": parts})
+        log.append(conn, "defined", who=who, comment=comment, payload={**named, "rows": parts})
 
 
 def _species_row(conn: sqlite3.Connection, name: str) -> tuple[int, Species]:

@@ -212,6 +212,8 @@ class Reader(View):
             shown = ", ".join(ids[:5])
             raise Ambiguous(f"several entries begin with {prefix!r}: {shown}", hint="type more of it", candidates=ids)
         if len(gone) == 1:
+            if self._fixed is not None:
+                raise NotFound(f"the entry {gone[0][0]} was not in the store then", hint="leave --as-of out")
             raise NotFound(f"the entry {gone[0][0]} is not active: the present base no longer holds it")
         raise NotFound(f"no entry {prefix!r}", hint="`propdb show SPECIES` lists ids")
 

@@ -19,12 +19,12 @@ from propdb.store.content import canonical
 __all__ = ["BASE_PARTS", "Seal", "carried", "member_hash", "members_hash", "state"]
 
 _SPECIES: Final = (
-    "s.id, s.active, s.identity, s.name, s.formula, s.charge, s.composition, s.molar_mass, s.cas, s.inchikey,"
+    "s.id, s.own, s.active, s.identity, s.name, s.formula, s.charge, s.composition, s.molar_mass, s.cas, s.inchikey,"
     " s.synonyms, s.vapour, s.kind, s.note"
 )
 _SOURCE: Final = (
-    "s.key, s.active, s.title, s.authors, s.year, s.kind, s.class, s.terms, s.fields, s.carrier, s.standard_pressure,"
-    " s.note"
+    "s.key, s.own, s.active, s.title, s.authors, s.year, s.kind, s.class, s.terms, s.fields, s.carrier,"
+    " s.standard_pressure, s.note"
 )
 _LISTS: Final[Mapping[str, str]] = {
     "species": f"SELECT {_SPECIES} FROM species s",
@@ -32,8 +32,8 @@ _LISTS: Final[Mapping[str, str]] = {
     "sources": f"SELECT {_SOURCE} FROM source s",
     "lineage": "SELECT l.source, l.position, l.copies, l.evidence FROM lineage l"
     " JOIN source s ON s.key = l.source AND s.own = l.own",
-    "datums": "SELECT s.name, s.active, s.body FROM datum s",
-    "policy": "SELECT s.key, s.active, s.value FROM policy s",
+    "datums": "SELECT s.name, s.own, s.active, s.body FROM datum s",
+    "policy": "SELECT s.key, s.own, s.active, s.value FROM policy s",
 }
 _WHOSE: Final[Mapping[str, str]] = {
     "base": "s.own = 0 AND s.active = 1",
@@ -70,7 +70,7 @@ def carried(conn: sqlite3.Connection) -> tuple[int, dict[str, str]] | None:
     kinds = "kind IN ('base', 'defined', 'created')"
     for seq, text in conn.execute(f"SELECT seq, payload FROM event WHERE {kinds} ORDER BY seq DESC"):
         try:
-            found = json.loads(text).get("state")
+            found = json.loads(text).get("rows")
         except (ValueError, AttributeError):  # edited by hand, which the chain says
             continue
         if isinstance(found, dict):

@@ -121,6 +121,8 @@ def _parts(conn: sqlite3.Connection) -> Iterator[Problem]:
     for part in sorted(right):
         if part in now and now[part] != right[part]:
             yield Problem(part, f"a row was added, removed or edited: they are not as event {seq} left them")
+    for (key,) in conn.execute("SELECT key FROM source_key WHERE key NOT IN (SELECT key FROM source)"):
+        yield Problem(f"source {key}", "a key that no source has was added")
 
 
 def _payloads(conn: sqlite3.Connection, kind: str) -> dict[int, tuple[str, Mapping[str, Any]]]:
@@ -143,7 +145,7 @@ def _members(conn: sqlite3.Connection) -> Iterator[Problem]:
         "SELECT b.base, b.own, b.species, coalesce(e.id, ''), b.status, b.note, b.printed"
         " FROM base_entry b LEFT JOIN entry e ON e.num = b.entry"
     ):
-        place = of_event if own else of_base
+        place = (of_base, of_event)[own] if own in (0, 1) else {}
         if base in place:
             place[base].append((row[0], row[1], row[2], row[3], row[4]))
         else:

@@ -100,7 +100,6 @@ def build(
     species = {one.name: one for one in content.species}
     pairs = [(member.entry, species[member.entry.species]) for member in held.values()]
     if checker is not None:
-        tell("comparing them with other compilations")
         for pair in pairs:
             checker(*pair)  # kept by the checker, so that no other writer waits for it
     with closing(open_store(path, write=True, create=True, timeout=timeout)) as conn, mapped(path), immediate(conn):
@@ -142,7 +141,7 @@ def _write(
         "members": seal.members_hash(listed),
     }
     parts = sealing.close(rewritten=seal.BASE_PARTS)
-    event = log.append(conn, "base", who="propdb", payload=payload | ({"state": parts} if parts else {}))
+    event = log.append(conn, "base", who="propdb", payload=payload | ({"rows": parts} if parts else {}))
     conn.executemany(
         "INSERT INTO base_entry (species, base, entry, own, status, note, printed) VALUES (?, ?, ?, 0, ?, ?, ?)",
         sorted((row, event.seq, numbers[number], *rest) for row, number, *rest in listed),
