@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 import os
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import replace
 from functools import cached_property
 from pathlib import Path
-from typing import TYPE_CHECKING, Any, Self
+from typing import TYPE_CHECKING, Any, Self, TypeVar
 
 from propdb.errors import DatumError, InvalidInput, NotFound, StoreError
+from propdb.model.crosscheck import EntryCheck
 from propdb.model.records import QUANTITIES, Datum, Entry, Source, Species
 from propdb.model.sheet import SpeciesSheet
 from propdb.store.read import Reader
@@ -18,6 +20,12 @@ if TYPE_CHECKING:
     from datetime import date
 
     from propdb.levels.engine import Levels
+    from propdb.model.answer import Answer, ReactionAnswer
+    from propdb.model.records import Step
+    from propdb.vetting.crosscheck import Checker
+    from propdb.vetting.lineage import Lineage
+
+    _Answer = TypeVar("_Answer", Answer, ReactionAnswer)
 
 __all__ = ["Core"]
 
@@ -39,6 +47,7 @@ class Core:
         self._levels: dict[tuple[tuple[str, ...], bool], Levels] = {}
         self._stamp = ""
         self._datums: Mapping[str, Datum] = {}
+        self._checks: Checker | None = None
 
     def __repr__(self) -> str:
         return f"<propdb store {self._path}>"
@@ -113,13 +122,19 @@ class Core:
         return self._reader.entry(id)
 
     def source_list(self) -> list[Source]:
-        """Every source."""
-        return list(self._reader.sources())
+        """Every source, each with the chain of sources that it copies."""
+        lineage = self._lineage()
+        return [
+            replace(source, chain=lineage.chain(source.key), copied_by=lineage.copied_by(source.key))
+            for source in self._reader.sources()
+        ]
 
     def source_show(self, key: str) -> Source:
-        """One source. Raises NotFound, with the nearest keys."""
+        """One source, with the chain of sources that it copies. Raises NotFound, with the nearest keys."""
         try:
-            return self._reader.source(key)
+            lineage = self._lineage()
+            source = lineage.compilation(key) or self._reader.source(key)
+            return replace(source, chain=lineage.chain(key), copied_by=lineage.copied_by(key))
         except NotFound as error:
             from difflib import get_close_matches
 
@@ -129,6 +144,37 @@ class Core:
             if near:
                 error.hint = f"did you mean {' or '.join(near[:3])}? propdb source list shows all keys"
             raise
+
+    def _lineage(self) -> Lineage:
+        from propdb.vetting.lineage import Lineage
+
+        return Lineage(self._reader.policies().get("lineage", {}), self._reader.sources())
+
+    def _checker(self) -> Checker:
+        """What compares entries with other compilations; loads the open library."""
+        if self._checks is None:
+            from propdb.vetting.crosscheck import Checker
+
+            self._checks = Checker(self._reader.policies().get("lineage", {}), self._reader.sources())
+        return self._checks
+
+    def _at_state(self, answer: _Answer) -> _Answer:
+        """The answer with each of its heatings compared at the state itself, and entries that nobody compared yet."""
+        return replace(answer, crosscheck=(*answer.crosscheck, *self._compared(answer.steps)))
+
+    def _compared(self, steps: Sequence[Step]) -> list[EntryCheck]:
+        checker = self._checker()
+        found: dict[tuple[str, float, float], tuple[EntryCheck, ...]] = {}
+        for step in steps:
+            if not step.entry:
+                continue
+            entry, species = self._reader.entry(step.entry), self._reader.species(step.species)
+            if not entry.crosschecks:
+                found[entry.id, 0.0, 0.0] = tuple(EntryCheck(entry, check) for check in checker(entry, species))
+            if step.span is not None:
+                checks = checker.heating(entry, species, *step.span)
+                found[entry.id, *step.span] = tuple(EntryCheck(entry, check, step.span[0]) for check in checks)
+        return [check for checks in found.values() for check in checks]
 
     def source_cite(self, key: str, format: str = "text") -> str:
         """A citation as ``text``, ``bibtex`` or ``csl-json``. Raises NotFound or InvalidInput."""
@@ -219,6 +265,7 @@ class Core:
 
     def _forget(self) -> None:
         self._levels.clear()
+        self._checks = None
         self._datums = {}
 
 

@@ -34,6 +34,7 @@ class Enthalpies(Core):
         unit: str = "kJ/mol",
         source: str | None = None,
         extrapolate: bool = False,
+        crosscheck: bool = False,
     ) -> Answer:
         """Enthalpy of a state on a datum.
 
@@ -59,6 +60,9 @@ class Enthalpies(Core):
             Key of a source, or several with commas, to prefer; what they cannot supply is named in the answer.
         extrapolate : bool
             Go beyond the ranges; marked in the answer.
+        crosscheck : bool
+            Compare the heat capacities with other compilations over the way itself, beside what is stored with the
+            entries.
 
         Raises
         ------
@@ -73,7 +77,9 @@ class Enthalpies(Core):
         per = parse_unit(unit)
         levels = self._engine(source, extrapolate)
         state = read_state(record, phase, form, temperature, pressure, saturated)
-        return enthalpy(levels, species=record, state=state, datum=self.datum_show(datum), unit=per, stamp=self._stamp)
+        zero = self.datum_show(datum)
+        answer = enthalpy(levels, species=record, state=state, datum=zero, unit=per, stamp=self._stamp)
+        return self._at_state(answer) if crosscheck else answer
 
     def convert(
         self,
@@ -89,6 +95,7 @@ class Enthalpies(Core):
         to_unit: str | None = None,
         source: str | None = None,
         extrapolate: bool = False,
+        crosscheck: bool = False,
     ) -> Answer:
         """A tabulated enthalpy moved from one datum to another: H_B = H_A + Z_A - Z_B.
 
@@ -96,7 +103,7 @@ class Enthalpies(Core):
         ----------
         value, unit : str or float, str
             ``"2800.8 kJ/kg"``, or ``2800.8, "kJ/kg"``.
-        species, source, extrapolate
+        species, source, extrapolate, crosscheck
             As in :meth:`enthalpy`.
         from_, to : str
             Datums, named or inline.
@@ -119,7 +126,7 @@ class Enthalpies(Core):
         record = resolve(self._reader, species)
         per = parse_unit(to_unit) if to_unit else quantity.unit
         levels = self._engine(source, extrapolate)
-        return convert(
+        answer = convert(
             levels,
             species=record,
             value=quantity.unit.to_si(quantity.value, molar_mass=record.molar_mass),
@@ -131,6 +138,7 @@ class Enthalpies(Core):
             phase=read_phase(phase) if phase else "g",
             temperature=None if temperature is None else read_temperature(temperature),
         )
+        return self._at_state(answer) if crosscheck else answer
 
     def reaction(
         self,
@@ -141,6 +149,7 @@ class Enthalpies(Core):
         unit: str = "kJ/mol",
         source: str | None = None,
         extrapolate: bool = False,
+        crosscheck: bool = False,
     ) -> ReactionAnswer:
         """Enthalpy of a reaction by the formation route and by sensible heats plus heat of reaction.
 
@@ -193,7 +202,7 @@ class Enthalpies(Core):
                 imbalance={what: str(n) for what, n in excess.items()},
             )
         levels = self._engine(source, extrapolate)
-        return reaction(
+        answer = reaction(
             levels,
             equation=str(parsed),
             participants=participants,
@@ -202,3 +211,4 @@ class Enthalpies(Core):
             unit=per,
             stamp=self._stamp,
         )
+        return self._at_state(answer) if crosscheck else answer

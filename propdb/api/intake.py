@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 from typing import TYPE_CHECKING, Any
 
 from propdb.api.core import Core
@@ -11,6 +12,7 @@ from propdb.errors import InvalidInput, PropdbError
 
 if TYPE_CHECKING:
     from propdb.intake.plan import Known, Plan, Refused, Report
+    from propdb.model.records import Entry, Species
 
 __all__ = ["Intake"]
 
@@ -82,6 +84,10 @@ class Intake(Core):
 
         return Known(self._reader, self._all_datums())
 
+    def _compared_with(self, entry: Entry, species: Species) -> Entry:
+        """The entry with what other compilations say of it, as it will be stored."""
+        return replace(entry, crosschecks=tuple(self._checker()(entry, species)))
+
     def _take(self, plan: Plan, dry_run: bool, comment: str) -> Report:
         """Write what a plan holds in one transaction, unless something in it cannot be taken."""
         from propdb.api.person import who
@@ -101,6 +107,7 @@ class Intake(Core):
                 species=list(plan.species.values()),
                 sources=list(plan.sources.values()),
                 comment=comment,
+                checker=self._checker(),
             )
             self._forget()
         return Report(
@@ -108,7 +115,7 @@ class Intake(Core):
             kind=plan.kind,
             dry_run=dry_run,
             who=author,
-            taken=tuple((one.place, whole(one)) for one in plan.candidates),
+            taken=tuple((one.place, self._compared_with(whole(one), one.species)) for one in plan.candidates),
             skipped=tuple(plan.skipped),
             refused=tuple(_refused(error, plan.file) for error in plan.problems),
             remarks=tuple(plan.remarks),

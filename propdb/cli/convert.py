@@ -7,7 +7,7 @@ from typing import Annotated
 import typer
 
 from propdb.cli.app import Call, single, verb
-from propdb.cli.options import DATUM_HELP, Extrapolate, Form, Phase, SourceKey, SpeciesOption, Temperature
+from propdb.cli.options import DATUM_HELP, Crosscheck, Extrapolate, Form, Phase, SourceKey, SpeciesOption, Temperature
 
 app = single()
 
@@ -41,6 +41,7 @@ def convert(
     ] = None,
     source: SourceKey = None,
     extrapolate: Extrapolate = False,
+    crosscheck: Crosscheck = False,
 ) -> None:
     """Move a tabulated enthalpy from one datum to another, step by step.
 
@@ -59,5 +60,6 @@ def convert(
         to_unit=unit,
         source=source,
         extrapolate=extrapolate,
+        crosscheck=crosscheck,
     )
     call.show(answer.as_dict, answer.explain)

@@ -9,6 +9,7 @@ import typer
 from propdb.cli.app import Call, single, verb
 from propdb.cli.options import (
     DATUM_HELP,
+    Crosscheck,
     Extrapolate,
     Form,
     Pressure,
@@ -25,6 +26,7 @@ app = single()
 @verb(
     app,
     "propdb enthalpy nitrogen --phase g --temperature 600C --datum gas-25C --unit kJ/mol",
+    "propdb enthalpy methane --phase g --temperature 1000K --datum elements-298K --crosscheck",
     "propdb enthalpy water --phase fluid --pressure 40bar --saturated vapour --datum steam-triple-point --unit kJ/kg",
 )
 def enthalpy(
@@ -42,6 +44,7 @@ def enthalpy(
     unit: Unit = "kJ/mol",
     source: SourceKey = None,
     extrapolate: Extrapolate = False,
+    crosscheck: Crosscheck = False,
 ) -> None:
     """Give the enthalpy of a state on a datum, with every step, entry, source and check behind it."""
     answer = call.store.enthalpy(
@@ -55,5 +58,6 @@ def enthalpy(
         unit=unit,
         source=source,
         extrapolate=extrapolate,
+        crosscheck=crosscheck,
     )
     call.show(answer.as_dict, answer.explain)

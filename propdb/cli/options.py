@@ -28,4 +28,7 @@ SourceKey = Annotated[
 Extrapolate = Annotated[
     bool, typer.Option("--extrapolate", help="Go outside the range of the data; the answer is marked.")
 ]
+Crosscheck = Annotated[
+    bool, typer.Option("--crosscheck", help="Compare with other compilations at the state itself, too.")
+]
 DATUM_HELP = "Name (propdb datum list), or in place: own:l@65C, own:g@60F, own:l,saturated@0C=200kJ/kg."

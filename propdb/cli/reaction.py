@@ -7,7 +7,7 @@ from typing import Annotated
 import typer
 
 from propdb.cli.app import Call, single, verb
-from propdb.cli.options import DATUM_HELP, Extrapolate, SourceKey, Unit
+from propdb.cli.options import DATUM_HELP, Crosscheck, Extrapolate, SourceKey, Unit
 
 app = single()
 
@@ -36,9 +36,16 @@ def reaction(
     unit: Unit = "kJ/mol",
     source: SourceKey = None,
     extrapolate: Extrapolate = False,
+    crosscheck: Crosscheck = False,
 ) -> None:
     """Give the enthalpy of a reaction by the formation route and by sensible heats, and how well they agree."""
     answer = call.store.reaction(
-        equation, temperature=temperature, datum=datum, unit=unit, source=source, extrapolate=extrapolate
+        equation,
+        temperature=temperature,
+        datum=datum,
+        unit=unit,
+        source=source,
+        extrapolate=extrapolate,
+        crosscheck=crosscheck,
     )
     call.show(answer.as_dict, answer.explain)

@@ -11,6 +11,7 @@ from propdb.cli.equationtext import equation_lines
 from propdb.cli.text import columns, kelvin, pairs
 from propdb.errors import UnitError
 from propdb.model.cite import text as reference
+from propdb.model.crosscheck import difference_text, telling, value_text
 from propdb.model.records import QUANTITIES
 from propdb.units import format_number, parse_heat_capacity_unit, parse_unit
 
@@ -89,7 +90,10 @@ def sheet_text(sheet: SpeciesSheet) -> str:
     lines = species_lines(sheet.species)
     entries = sorted(sheet.entries, key=lambda entry: QUANTITIES.index(entry.quantity))
     body = [_row(entry) for entry in entries]
-    heading = ("", "phase", "at", "value", "", "uncertainty", "datum, conditions", "source", "status", "entry")
+    heading = (
+        *("", "phase", "at", "value", "", "uncertainty", "datum, conditions", "source", "status"),
+        *("cross-check", "", "entry"),
+    )
     aligned = columns([heading, *body], right=(3,), indent=0)
     shown = ""
     if body:
@@ -120,8 +124,36 @@ def _row(entry: Entry) -> tuple[str, ...]:
         about,
         entry.source,
         entry.status,
+        *_telling(entry),
         entry.id,
     )
+
+
+def _telling(entry: Entry) -> tuple[str, str]:
+    """The most telling cross-check: difference with its compilation, and how they are related."""
+    check = telling(entry.crosschecks)
+    if check is None:
+        return "", ""
+    return f"{difference_text(check, entry.unit)} {check.compilation}", check.relation(entry.source)
+
+
+def crosscheck_lines(entry: Entry) -> list[str]:
+    """Every cross-check of an entry, one a line."""
+    rows = []
+    for check in entry.crosschecks:
+        at = f"at {kelvin(check.temperature)} K" if check.temperature is not None else ""
+        within = "shown only" if check.allowed is None else f"allowed {value_text(check.allowed, entry.unit)}"
+        rows.append(
+            (
+                check.compilation,
+                at,
+                value_text(check.value, entry.unit),
+                difference_text(check, entry.unit),
+                check.relation(entry.source),
+                f"beyond {within}" if check.beyond else within,
+            )
+        )
+    return columns(rows, right=(2, 3))
 
 
 def comparable(entry: Entry) -> tuple[str, str]:
@@ -231,7 +263,7 @@ def entry_dict(entry: Entry) -> dict[str, Any]:
         "locator": entry.locator,
         "note": entry.note,
         "carriers": entry.carriers,
-        "crosscheck": None,
+        "crosscheck": [check.as_dict(entry.source) for check in entry.crosschecks],
     }
 
 
@@ -292,4 +324,8 @@ def entry_text(entry: Entry) -> str:
         ("status", entry.status),
         ("note", entry.note),
     ]
-    return "\n".join(pairs(rows))
+    lines = pairs(rows)
+    if entry.crosschecks:
+        lines += ["", f"Cross-check, the entry less what others have ({entry.crosschecks[0].package})"]
+        lines += [f"  {line}" for line in crosscheck_lines(entry)]
+    return "\n".join(lines)

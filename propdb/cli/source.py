@@ -23,7 +23,7 @@ def list_(call: Call) -> None:
 
 @verb(app, "propdb source show codata-1989")
 def show(call: Call, key: Key) -> None:
-    """Show a source: what it is, its terms, how its numbers reached us, what it copies."""
+    """Show a source: what it is, its terms, how its numbers reached us, the chain of sources that it copies."""
     from propdb.cli.sourcetext import source_dict, source_text
 
     source = call.store.source_show(key)

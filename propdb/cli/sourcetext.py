@@ -2,15 +2,18 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
-from typing import TYPE_CHECKING, Any
+from collections.abc import Iterable, Sequence
+from textwrap import wrap
+from typing import TYPE_CHECKING, Any, Final
 
 from propdb.cli.text import columns, pairs
 from propdb.model.cite import text as reference
 from propdb.units import format_pressure
 
 if TYPE_CHECKING:
-    from propdb.model.records import Source
+    from propdb.model.records import Ancestor, Source
+
+_WIDTH: Final = 110
 
 
 def source_dict(source: Source) -> dict[str, Any]:
@@ -27,7 +30,8 @@ def source_dict(source: Source) -> dict[str, Any]:
         "carrier": source.carrier,
         "standard_pressure": source.standard_pressure,
         "note": source.note,
-        "lineage": [{"copies": copies, "evidence": evidence} for copies, evidence in source.lineage],
+        "lineage": [_ancestor_dict(ancestor) for ancestor in source.chain],
+        "copied_by": source.copied_by,
     }
 
 
@@ -48,7 +52,47 @@ def source_text(source: Source) -> str:
         ("standard pressure", format_pressure(source.standard_pressure)),
         ("terms", source.terms),
         ("carrier", source.carrier),
-        ("copies", "\n".join(f"{copies}: {evidence}" for copies, evidence in source.lineage)),
         ("note", source.note),
     ]
-    return "\n".join(pairs(rows))
+    return "\n".join([*pairs(rows), *chain_lines(source)])
+
+
+def _ancestor_dict(ancestor: Ancestor) -> dict[str, Any]:
+    return {
+        "copies": ancestor.key,
+        "title": ancestor.title,
+        "evidence": ancestor.evidence,
+        "lineage": [_ancestor_dict(further) for further in ancestor.copies],
+    }
+
+
+def chain_lines(source: Source) -> list[str]:
+    """What a source copies, and what that copies in turn, as a tree; and who copies it."""
+    if not source.chain and not source.copied_by:
+        return ["", "Lineage: copies no source that is known here, and none copies it"]
+    lines = [
+        "",
+        "Lineage: what it copies or refits" if source.chain else "Lineage: copies no source that is known here",
+    ]
+    if source.chain:
+        lines.append(f"  {source.key}")
+        lines += _branches(source.chain, "  ")
+    if source.copied_by:
+        lines += wrap("copied by " + ", ".join(source.copied_by), _WIDTH, initial_indent="  ", subsequent_indent="    ")
+    return lines
+
+
+def _branches(ancestors: Sequence[Ancestor], indent: str) -> list[str]:
+    lines = []
+    for i, ancestor in enumerate(ancestors):
+        last = i == len(ancestors) - 1
+        below = indent + ("   " if last else "|  ")
+        lines += wrap(
+            f"{ancestor.key}: {ancestor.evidence}",
+            _WIDTH,
+            initial_indent=f"{indent}+- ",
+            subsequent_indent=below + ("|    " if ancestor.copies else "     "),
+            break_on_hyphens=False,
+        )
+        lines += _branches(ancestor.copies, below)
+    return lines

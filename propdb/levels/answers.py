@@ -15,6 +15,7 @@ from propdb.levels.policy import choose
 from propdb.levels.tables import matches, tables_of
 from propdb.levels.tree import Move, expand
 from propdb.model.answer import Answer
+from propdb.model.crosscheck import EntryCheck
 from propdb.model.records import SAME_T, Closure, Datum, Entry, MaySum, Part, Source, Species, State, Step, Zero
 from propdb.units import EnthalpyUnit, format_number
 
@@ -126,9 +127,14 @@ class Derivation:
                 source=leg.source,
                 extrapolated=leg.extrapolated,
                 note="; ".join(filter(None, (leg.note, _standing(entries.get(leg.entry))))),
+                span=leg.span,
             )
             for leg in self.legs
         )
+
+    def crosschecks(self) -> tuple[EntryCheck, ...]:
+        """What other compilations say of the entries, as it was stored with them."""
+        return tuple(EntryCheck(e, check) for e in self.entries().values() for check in e.crosschecks)
 
     def sources(self) -> dict[str, Source]:
         keys = {leg.source for leg in self.legs if leg.source}
@@ -411,6 +417,7 @@ def _answer(
         "warnings": tuple(dict.fromkeys(warnings)),
         "store": stamp,
         "sources": derived.sources(),
+        "crosscheck": derived.crosschecks(),
     }
     return Answer(
         **fields,

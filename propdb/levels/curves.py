@@ -158,6 +158,7 @@ class Curve:
             source=entry.source,
             extrapolated=outside,
             note=note,
+            span=(a, b),
         )
 
     def _saturation_leg(self, a: float, b: float) -> Leg:

@@ -29,13 +29,15 @@ class Leg:
     source: str = ""
     extrapolated: bool = False
     note: str = ""
+    span: tuple[float, float] | None = None  # [K], of heating along a heat capacity
 
 
 def scale(leg: Leg, factor: float) -> Leg:
     """The leg times a stoichiometric coefficient; -1 walks it backwards."""
     start, end = (leg.start, leg.end) if factor > 0 else (leg.end, leg.start)
     parts = tuple(replace(p, coefficient=p.coefficient * factor) for p in leg.parts)
-    return replace(leg, value=leg.value * factor, parts=parts, start=start, end=end)
+    span = leg.span if leg.span is None or factor > 0 else (leg.span[1], leg.span[0])
+    return replace(leg, value=leg.value * factor, parts=parts, start=start, end=end, span=span)
 
 
 def add_parts(parts: Iterable[Part]) -> tuple[Part, ...]:
@@ -73,6 +75,7 @@ def to_steps(legs: Iterable[Leg]) -> tuple[Step, ...]:
             source=leg.source,
             extrapolated=leg.extrapolated,
             note=leg.note,
+            span=leg.span,
         )
         for leg in legs
     )

@@ -112,6 +112,7 @@ def reaction(
         warnings=tuple(derived.warnings() + _mixed_charge(participants)),
         store=stamp,
         sources=derived.sources(),
+        crosscheck=derived.crosschecks(),
         equation=equation,
         temperature=temperature,
         terms=tuple(terms),

@@ -8,6 +8,7 @@ from math import isfinite
 from types import MappingProxyType
 from typing import Any
 
+from propdb.model.crosscheck import EntryCheck
 from propdb.model.records import Closure, MaySum, Part, Source, Step
 
 __all__ = ["CAUTION", "Answer", "ReactionAnswer", "ReactionTerm"]
@@ -39,7 +40,7 @@ class _Derived:
     warnings: tuple[str, ...]
     store: str  # content hash and log head, or release id
     sources: Mapping[str, Source] = field(default_factory=lambda: MappingProxyType({}))
-    crosscheck: Any = None
+    crosscheck: tuple[EntryCheck, ...] = ()  # other compilations about the entries; at the state where asked for
 
     def explain(self) -> str:
         """The derivation: steps with entries and sources, closures, what may be summed, cautions."""
@@ -86,7 +87,7 @@ class _Derived:
                 }
                 for c in self.closures
             ],
-            "crosscheck": self.crosscheck,
+            "crosscheck": [one.as_dict() for one in self.crosscheck],
             "warnings": list(self.warnings),
             "store": self.store,
         }

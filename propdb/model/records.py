@@ -54,6 +54,16 @@ class Species:
 
 
 @dataclass(frozen=True, slots=True)
+class Ancestor:
+    """A source that another takes values from or refits, with its own ancestors."""
+
+    key: str
+    title: str
+    evidence: str
+    copies: tuple[Ancestor, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
 class Source:
     """A bibliographic record."""
 
@@ -71,6 +81,8 @@ class Source:
     standard_pressure: float = P_STANDARD
     note: str = ""
     lineage: tuple[tuple[str, str], ...] = ()  # (copies which source key, evidence)
+    chain: tuple[Ancestor, ...] = ()  # derived from the lineage of all sources
+    copied_by: tuple[str, ...] = ()  # derived likewise
 
 
 @dataclass(frozen=True, slots=True)
@@ -246,6 +258,7 @@ class Step:
     source: str
     extrapolated: bool = False
     note: str = ""
+    span: tuple[float, float] | None = None  # [K], of heating along a heat capacity
 
 
 @dataclass(frozen=True, slots=True)

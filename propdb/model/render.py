@@ -7,9 +7,11 @@ from textwrap import wrap
 from typing import TYPE_CHECKING
 
 from propdb.model.answer import CAUTION, Answer, ReactionAnswer, _Derived
+from propdb.model.crosscheck import difference_text, value_text
 from propdb.units import enthalpy_decimals, format_number, parse_unit
 
 if TYPE_CHECKING:
+    from propdb.model.crosscheck import EntryCheck
     from propdb.model.records import Step
 
 __all__ = ["columns", "explain", "headline", "reaction_headline"]
@@ -80,6 +82,7 @@ def explain(answer: _Derived) -> str:
     lines += _steps(answer)
     lines += ["", *_paragraph("Uncertainty", answer.uncertainty_note), *_paragraph("To be summed", answer.may_sum.why)]
     lines += _closures(answer)
+    lines += _crosschecks(answer)
     if answer.warnings:
         lines += ["", "Mind"]
         lines += [line for w in answer.warnings for line in _wrapped(w, "  - ")]
@@ -113,6 +116,53 @@ def _closures(answer: _Derived) -> list[str]:
     if agree:
         lines.append(f"  {agree} {'more ' if shown else ''}agree{'s' if agree == 1 else ''} to the last digit shown")
     return lines
+
+
+def _crosschecks(answer: _Derived) -> list[str]:
+    """Of each entry and compilation the check that differs most, of the same chain only where nothing else is known or
+    too much lies between them; checks at the state itself all."""
+    worst: dict[tuple[str, str], EntryCheck] = {}
+    at_state = []
+    alone = {one.entry.id for one in answer.crosscheck} - {
+        one.entry.id for one in answer.crosscheck if one.check.independent and one.start is None
+    }
+    for one in answer.crosscheck:
+        if one.start is not None:
+            at_state.append(one)
+            continue
+        if not (one.check.independent or one.check.beyond or one.entry.id in alone):
+            continue
+        key = (one.entry.id, one.check.compilation)
+        if key not in worst or _share(one) > _share(worst[key]):
+            worst[key] = one
+    if not worst and not at_state:
+        return []
+    rows: list[tuple[str, ...]] = [("entry", "", "at", "compilation", "has", "entry less it", "", "")]
+    rows += [_check_row(one) for one in (*worst.values(), *at_state)]
+    return ["", "Cross-check: the entries against other compilations", *columns(rows, right=(4, 5))]
+
+
+def _share(one: EntryCheck) -> float:
+    return abs(one.check.difference) / (one.check.allowed or abs(one.check.value) or 1.0)
+
+
+def _check_row(one: EntryCheck) -> tuple[str, ...]:
+    entry, check = one.entry, one.check
+    phase = f"{entry.phase} ({entry.form})" if entry.form else entry.phase
+    at = "" if check.temperature is None else f"{check.temperature:.6g} K"
+    what = entry.quantity
+    if one.start is not None:
+        at, what = f"{one.start:.6g} to {at}", "heating"
+    return (
+        f"{entry.species} {what} {phase}, {entry.source}",
+        f"[{entry.id[:8]}]",
+        at,
+        check.compilation,
+        value_text(check.value, one.unit),
+        difference_text(check, one.unit),
+        check.relation(entry.source),
+        "more than allowed" if check.beyond else "",
+    )
 
 
 def _routes(answer: ReactionAnswer) -> list[str]:

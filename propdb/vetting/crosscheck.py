@@ -18,7 +18,7 @@ from propdb.model.records import QUANTITIES, T_STANDARD, Entry, Source, Species
 from propdb.store.content import Content
 from propdb.units import format_number
 from propdb.vetting.functions import Function, heat_capacities, latent_heats, same_formula
-from propdb.vetting.library import Library, library_version
+from propdb.vetting.library import library, library_version
 from propdb.vetting.lineage import Lineage
 
 __all__ = ["Checker", "disputing", "settle"]
@@ -48,7 +48,7 @@ class Checker:
     def __init__(self, policy: Mapping[str, Any], sources: Iterable[Source] = ()) -> None:
         self.lineage = Lineage(policy, sources)
         self.package = library_version()
-        self._library = Library()
+        self._library = library()
         self._decides = {row["key"]: bool(row["decides"]) for row in policy.get("compilation", ())}
         self._forms = {
             (row["species"], row["form"], quantity): row["cas"]
@@ -70,7 +70,7 @@ class Checker:
         found: dict[tuple[str, float | None], Crosscheck] = {}
         for check in self._checks(entry, species):
             found.setdefault((check.compilation, check.temperature), check)
-        return tuple(sorted(found.values(), key=lambda c: (not c.independent, c.allowed is None)))
+        return tuple(sorted(found.values(), key=_order))
 
     # -- what there is to compare with ----------------------------------------------------------------------------
 
@@ -132,6 +132,22 @@ class Checker:
                     other, size = constant.value, constant.uncertainty
                     yield self._check(entry, constant.compilation, T_STANDARD, own(T_STANDARD), other, size, False)
 
+    def heating(self, entry: Entry, species: Species, start: float, end: float) -> tuple[Crosscheck, ...]:
+        """The enthalpy of heating from ``start`` to ``end`` [K] by an entry's heat capacity, against the compilations.
+
+        Values in J/mol, at ``end``; compilations that cover both ends and state no transition between them.
+        """
+        if entry.quantity != "Cp" or not entry.equation or entry.equation == "iapws95" or start == end:
+            return ()
+        value = float(build_heat_capacity(entry.equation, entry.params).dh(start, end))
+        low, high = min(start, end), max(start, end)
+        found = []
+        for function in self.functions(entry, species):
+            if function.covers(low) and function.covers(high) and not any(low < t < high for t in function.splits):
+                other = function.integral(start, end)
+                found.append(self._check(entry, function.compilation, end, value, other, function.uncertainty, True))
+        return tuple(sorted(found, key=_order))
+
     # -- how far they may differ ----------------------------------------------------------------------------------
 
     def _check(
@@ -173,6 +189,12 @@ class Checker:
             return mine + uncertainty
         sizes = [float(limit[key]) * scale for key, scale in _scales(value) if key in limit]
         return max(min(sizes), mine or 0.0, uncertainty or 0.0)
+
+
+def _order(check: Crosscheck) -> tuple[bool, bool, str, float]:
+    """As a store lists them: independent ones first, those shown only last."""
+    at = -1.0 if check.temperature is None else check.temperature
+    return (not check.independent, check.allowed is None, check.compilation, at)
 
 
 def _scales(value: float) -> tuple[tuple[str, float], ...]:

@@ -10,7 +10,7 @@ import csv
 import json
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
-from functools import cached_property
+from functools import cache, cached_property
 from pathlib import Path
 from typing import Any
 
@@ -19,7 +19,7 @@ from propdb.errors import FormulaError
 from propdb.model.formula import hill, parse_formula
 from propdb.model.records import T_STANDARD
 
-__all__ = ["Constant", "Library", "library_version"]
+__all__ = ["Constant", "Library", "library", "library_version"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -45,6 +45,12 @@ class Constant:
     temperature: float | None = None
     uncertainty: float | None = None
     formula: str = ""
+
+
+@cache
+def library() -> Library:
+    """The library, read once."""
+    return Library()
 
 
 def library_version() -> str:

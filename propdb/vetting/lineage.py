@@ -3,21 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass
 from typing import Any
 
-from propdb.model.records import Source
+from propdb.model.records import Ancestor, Source
 
-__all__ = ["Ancestor", "Lineage"]
-
-
-@dataclass(frozen=True, slots=True)
-class Ancestor:
-    """A source that another takes values from, with its own ancestors."""
-
-    key: str
-    evidence: str
-    copies: tuple[Ancestor, ...] = ()
+__all__ = ["Lineage"]
 
 
 class Lineage:
@@ -32,6 +22,7 @@ class Lineage:
     """
 
     def __init__(self, policy: Mapping[str, Any], sources: Iterable[Source] = ()) -> None:
+        held = tuple(sources)
         self._copies: dict[str, dict[str, str]] = {}
         self.titles: dict[str, str] = {}
         for row in policy.get("compilation", ()):
@@ -40,10 +31,13 @@ class Lineage:
                 self._add(row["key"], copied["of"], copied["evidence"])
         for row in policy.get("copies", ()):
             self._add(row["source"], row["of"], row["evidence"])
-        for source in sources:
+        for source in held:
             self.titles.setdefault(source.key, source.title)
             for copied, evidence in source.lineage:
                 self._add(source.key, copied, evidence)
+        self._only_compared = {
+            row["key"]: row for row in policy.get("compilation", ()) if row["key"] not in {s.key for s in held}
+        }
         self._closures: dict[str, frozenset[str]] = {}
 
     def _add(self, key: str, of: str, evidence: str) -> None:
@@ -65,13 +59,30 @@ class Lineage:
         """Do two sources share no ancestor, themselves included?"""
         return not self.ancestors(one) & self.ancestors(other)
 
+    def compilation(self, key: str) -> Source | None:
+        """The record of a compilation that entries are compared with and none comes from; None for any other key."""
+        row = self._only_compared.get(key)
+        if row is None:
+            return None
+        return Source(
+            key=key,
+            title=row["title"],
+            authors=(),
+            year=None,
+            kind="compilation",
+            cls="compared with, not held",
+            terms="No entry comes from it; entries are compared with it.",
+            carrier="chemicals library",
+            note=row["reason"],
+        )
+
     def chain(self, key: str) -> tuple[Ancestor, ...]:
         """What a source copies, what those copy in turn, and so on; a source that stands higher up is not repeated."""
         return self._chain(key, {key})
 
     def _chain(self, key: str, above: set[str]) -> tuple[Ancestor, ...]:
         return tuple(
-            Ancestor(of, evidence, self._chain(of, above | {of}))
+            Ancestor(of, self.titles.get(of, ""), evidence, self._chain(of, above | {of}))
             for of, evidence in self._copies.get(key, {}).items()
             if of not in above
         )
