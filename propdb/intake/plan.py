@@ -7,6 +7,8 @@ from dataclasses import dataclass, field, replace
 from datetime import UTC, datetime
 from functools import cached_property
 from math import isclose
+from operator import attrgetter
+from typing import Any
 
 from propdb._version import __version__
 from propdb.errors import Ambiguous, InvalidInput, NotFound, PropdbError
@@ -176,38 +178,37 @@ def whole(one: Candidate) -> Entry:
 
 def settle(plan: Plan, known: Known) -> Plan:
     """Set the ids, and skip what is in the store already or stands twice in the file."""
-    held: dict[str, list[Entry]] = {}
+    held: dict[tuple[Any, ...], list[Entry]] = {}
+    seen: set[str] = set()
     kept: list[Candidate] = []
     for one in plan.candidates:
         entry = replace(one.entry, id=entry_id(one.entry, one.species))
-        if entry.species not in held:
-            held[entry.species] = [] if entry.species in plan.species else list(known.reader.entries(entry.species))
-        twins = (other for other in held[entry.species] if other.id == entry.id or _alike(other, entry))
-        twin = next((other for other in twins if other.status != "withdrawn"), None)
+        if entry.species not in seen:
+            seen.add(entry.species)
+            if entry.species not in plan.species:
+                for other in known.reader.entries(entry.species):
+                    held.setdefault(_key(other), []).append(other)
+        twins = held.setdefault(_key(entry), [])
+        twin = next((other for other in twins if other.status != "withdrawn" and _alike(other, entry)), None)
         if twin is None:  # what was withdrawn may be added anew, and is a draft again
-            held[entry.species].append(entry)
+            twins.append(entry)
             kept.append(replace(one, entry=entry))
             continue
         told = "is this value already" if twin.id == entry.id else "is this value from this source already"
-        plan.skipped.append(Skipped(one.place, _what(entry), f"entry {twin.id} ({twin.status}) {told}"))
+        what = f"{entry.quantity} of {entry.species} ({entry.phase})"
+        plan.skipped.append(Skipped(one.place, what, f"entry {twin.id} ({twin.status}) {told}"))
     plan.candidates = kept
     return plan
 
 
-def _what(entry: Entry) -> str:
-    return f"{entry.quantity} of {entry.species} ({entry.phase})"
-
-
-_SAME = (
-    "quantity", "phase", "form", "to", "equation", "temperature", "tmin", "tmax", "uncertainty_unit",
+_key = attrgetter(
+    "species", "quantity", "phase", "form", "to", "equation", "temperature", "tmin", "tmax", "uncertainty_unit",
     "uncertainty_kind", "datum", "conditions", "source",
 )  # fmt: skip
 
 
 def _alike(a: Entry, b: Entry) -> bool:
-    """The same value from the same source, written or located in another way."""
-    if any(getattr(a, name) != getattr(b, name) for name in _SAME):
-        return False
+    """Of two entries with one key: the same value, perhaps written or located in another way."""
     numbers = ((a.value, b.value), (a.uncertainty, b.uncertainty))
     if not all(x == y or (x is not None and y is not None and isclose(x, y, rel_tol=1e-12)) for x, y in numbers):
         return False

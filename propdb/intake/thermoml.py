@@ -17,6 +17,7 @@ from propdb.intake.points import Point, check_table, table_params
 from propdb.intake.thermoml_records import DataSet, Document, Property, Value, stated
 from propdb.intake.thermoml_refs import Left, References
 from propdb.intake.thermoml_xml import read_xml
+from propdb.intake.written import MAX_ROWS
 from propdb.model.records import T_STANDARD, Carrier, Entry
 from propdb.units import read_si
 
@@ -41,6 +42,10 @@ def plan_thermoml(file: UserFile, known: Known) -> Plan:
         The file as a whole cannot be read; see :func:`propdb.intake.thermoml_xml.read_xml`.
     """
     document = read_xml(file)
+    count = sum(len(data.values) for data in document.data)
+    if count > MAX_ROWS:
+        hint = "split it by data sets, and give the parts in turn"
+        raise InvalidInput(f"{count} values, and {MAX_ROWS} are taken at once", where=file.name, hint=hint)
     plan = Plan(file.name, "thermoml")
     importer = _Importer(document, plan, known)
     for data in document.data:

@@ -247,6 +247,15 @@ def test_a_duplicate_is_reported_and_not_doubled(store: Store, tmp_path: Path) -
     assert len(store.add({**VALUE, "uncertainty": "1", "uncertainty_kind": "standard"}).taken) == 1
 
 
+def test_a_withdrawn_value_may_be_added_anew(store: Store) -> None:
+    first = store.add(VALUE).taken[0][1]
+    store.review_withdraw([first.id], comment="typed from the wrong column")
+    assert store.entry_show(first.id).status == "withdrawn"
+    assert [entry.id for _, entry in store.add(VALUE).taken] == [first.id]
+    assert store.entry_show(first.id).status == "draft"
+    assert store.add(VALUE).taken == ()
+
+
 def test_a_value_of_the_base_is_not_doubled(reading: Store) -> None:
     known = next(e for e in reading.show("carbon dioxide", quantity="Hf").entries if e.source == "codata-1989")
     row = {

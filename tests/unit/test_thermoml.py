@@ -351,6 +351,12 @@ def test_a_file_nested_deeply_is_refused(refuse: Callable[..., InvalidInput]) ->
 
 
 @pytest.mark.extras
+def test_too_many_values_are_refused(refuse: Callable[..., InvalidInput], monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("propdb.intake.thermoml.MAX_ROWS", 2)
+    assert "3 values, and 2 are taken at once" in str(refuse(GOOD))
+
+
+@pytest.mark.extras
 def test_one_wrong_data_set_keeps_all_out(refuse: Callable[..., InvalidInput], plan: Plan) -> None:
     wrong = curve(number=2).replace("113.0", "-113.0")
     error = refuse(report(curve(), wrong))
