@@ -21,7 +21,9 @@ def equation_lines(name: str, params: Params, *, full: bool = False) -> list[str
         Every row of a table; otherwise the first and last few.
     """
     if name == "table":
-        return _table(params, full=full)
+        return _table(params, "cp", "cp [J/mol/K]", full=full)
+    if name == "tabulated":
+        return _table(params, "h", "h [J/mol]", full=full)
     writer = _WRITERS.get(name)
     return writer(params) if writer is not None else [f"{key} = {value}" for key, value in params.items()]
 
@@ -79,15 +81,13 @@ def _shomate(params: Params) -> list[str]:
     return _intervals("cp = A + B t + C t^2 + D t^3 + E/t^2, t = T/1000   [J/mol/K]", "ABCDEFGH", rows)
 
 
-def _table(params: Params, *, full: bool) -> list[str]:
-    pairs = list(zip(params["T"], params["cp"], strict=True))
+def _table(params: Params, key: str, head: str, *, full: bool) -> list[str]:
+    pairs = list(zip(params["T"], params[key], strict=True))
     shown = pairs if full or len(pairs) <= 8 else [*pairs[:3], *pairs[-3:]]
-    rows = [("T [K]", *(_number(t) for t, _ in shown)), ("cp [J/mol/K]", *(_number(cp) for _, cp in shown))]
+    rows = [("T [K]", *(_number(t) for t, _ in shown)), (head, *(_number(y) for _, y in shown))]
     lines = [f"{len(pairs)} points, monotone cubics between them"]
     if full:
-        lines += columns(
-            [("T [K]", "cp [J/mol/K]"), *((_number(t), _number(cp)) for t, cp in pairs)], right=(0, 1), indent=2
-        )
+        lines += columns([("T [K]", head), *((_number(t), _number(y)) for t, y in pairs)], right=(0, 1), indent=2)
     else:
         if len(shown) < len(pairs):
             rows = [(*row[:4], "...", *row[4:]) for row in rows]

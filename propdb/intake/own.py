@@ -1,8 +1,8 @@
 """Own entries: the rows of a filled template to entries in SI, through the same readers as the seed.
 
 A row is a constant; a heat-capacity equation over a range (``polynomial``, ``shomate``, ``constant``; rows of one
-species, phase, form, conditions and source that touch become one entry); or, with the equation ``table``, a heat
-capacity at one temperature (all such rows become one entry).
+species, phase, form, conditions and source that touch become one entry); with the equation ``table``, a heat capacity
+at one temperature (all such rows become one entry); or, with the quantity ``H``, one row of a table of enthalpies.
 """
 
 from __future__ import annotations
@@ -18,6 +18,7 @@ from propdb.errors import Ambiguous, EquationError, InvalidInput, NotFound, Prop
 from propdb.intake.common import Folder, carrier, cited, finish, form_of, phase_of, si, species_of, uncertainty_kind
 from propdb.intake.constants import read_constant
 from propdb.intake.curves import read_curves
+from propdb.intake.enthalpies import enthalpy_table, group_of
 from propdb.intake.files import UserFile
 from propdb.intake.plan import Candidate, Known, Plan, Skipped, as_invalid, own_carrier, settle, this_year
 from propdb.intake.points import Point, table_params
@@ -109,6 +110,10 @@ class _Builder:
         try:
             row, folder = self._prepared(row)
             equation = row.text("equation")
+            if row.text("quantity") == "H":
+                self._blank(row, (*_ONLY_CURVES, "to"), "a table of enthalpies")
+                self.groups.setdefault(("enthalpies", *group_of(row, folder)), []).append((row, folder))
+                return
             if equation:
                 self._group(row, folder, equation)
                 return
@@ -125,7 +130,10 @@ class _Builder:
         for key, members in self.groups.items():
             rows, folder = [row for row, _ in members], members[0][1]
             try:
-                if key[0] == "table":
+                if key[0] == "enthalpies":
+                    seen = self.seen.setdefault(folder.source.key, {})
+                    self._add(enthalpy_table(rows, folder, seen), rows[0], folder)
+                elif key[0] == "table":
                     self._add(self._table(rows, folder), rows[0], folder)
                 else:
                     for entry in read_curves(Table(rows[0].file, tuple(rows)), folder):

@@ -19,7 +19,7 @@ TEMPLATES = ("csv", "toml")
 #: What belongs into each column; the guided ``propdb add`` asks with the same words.
 COLUMN_HELP = {
     "species": "name, formula or CAS RN",
-    "quantity": " ".join(DIMENSION),
+    "quantity": " ".join(DIMENSION) + "; H for a table of enthalpies, one row for each temperature",
     "phase": " ".join(PHASES) + " (g is the ideal gas, l is 1 bar or saturated)",
     "form": "of a crystal: graphite, rhombic ...; blank where there is one form only",
     "to": "Htr only: what it turns into, e.g. cr:beta",
@@ -28,8 +28,9 @@ COLUMN_HELP = {
     "unit": "kJ/mol, kcal_th/mol, kJ/kg, J/mol/K, J/g/K, K, C, bar ...; 1 for omega",
     "uncertainty": "in the unit of the value; in percent where equation is filled in; blank if not stated",
     "uncertainty_kind": " ".join(KINDS),
-    "datum": "Hf and Gf: elements-298K, ...; else blank",
-    "conditions": "Hvap: to the real vapour, to the monomer ideal gas, or standard; Tb: at 101.325 kPa ...",
+    "datum": "Hf and Gf: elements-298K, ...; H: the datum of the table; else blank",
+    "conditions": "Hvap: to the real vapour, to the monomer ideal gas, or standard; Tb: at 101.325 kPa; "
+    "H: 40bar, saturated vapour",
     "equation": "Cp only: polynomial, shomate, constant, or table (one row for each temperature); else blank",
     "tmin": "lower end of the range of an equation, as temperature",
     "tmax": "upper end of the range of an equation, as temperature",
