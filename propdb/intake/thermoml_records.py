@@ -15,6 +15,7 @@ class Citation:
     title: str
     authors: tuple[str, ...]
     year: str
+    dated: str
     kind: str
     fields: dict[str, str]
 

@@ -16,6 +16,7 @@ from propdb.model.records import Source, Species
 
 __all__ = ["Left", "References"]
 
+_RESOLVER = re.compile(r"^(?:https?://(?:dx\.)?doi\.org/|doi:\s*)", re.IGNORECASE)
 _KEY = re.compile(r"[^a-z0-9]+")
 
 
@@ -49,9 +50,14 @@ class References:
         year = int(citation.year)
         if year > this_year():
             raise self._bad("Citation", f"the year {year} is in the future", "yrPubYr is when it appeared")
+        dated = re.match(r"([0-9]{4})(?![0-9])", citation.dated)
+        if dated and int(dated.group(1)) > this_year():
+            problem = f"the date {citation.dated[:20]} is in the future"
+            raise self._bad("Citation", problem, "dateCit is when it appeared")
         if not citation.authors:
             raise self._bad("Citation", "there is no sAuthor", "a source has authors")
         fields = dict(citation.fields)
+        fields["doi"] = _RESOLVER.sub("", fields.get("doi", ""))
         if not re.fullmatch(r"10\.[0-9]{4,9}/\S+", fields.get("doi", "")):
             fields.pop("doi", None)
         for other in self.known.sources.values():

@@ -178,6 +178,7 @@ class _Reader:
             title=self.text(node, place, "sTitle", needed=True),
             authors=tuple(filter(None, authors)),
             year=year,
+            dated=self.text(node, place, "dateCit"),
             kind=self.text(node, place, "eType"),
             fields={name: text for name, text in fields.items() if text},
         )

@@ -305,7 +305,7 @@ CASES = [
     ({"species": "ethanoll"}, "species", "did you mean ethanol"),
     ({"species": "C2H6O"}, "species", "may be"),
     ({"quantity": "hvap"}, "quantity", "did you mean 'Hvap'?"),
-    ({"quantity": "H"}, "quantity", "unknown quantity"),
+    ({"quantity": "Hxy"}, "quantity", "unknown quantity"),
     ({"phase": "g"}, "phase", "it goes under l"),
     ({"form": "red"}, "form", "only cr has forms"),
     ({"conditions": ""}, "conditions", "to which vapour"),

@@ -164,7 +164,10 @@ def test_citation_becomes_a_source(plan: Plan, store: Store, tmp_path: Path, mon
         assert source.authors == ("Nobody, A.", "Noone, B.")
         assert source.fields["doi"] == "10.9999/invented.1"
         assert own.entry_show(taken[0][1].id).status == "draft"
-        again = own.import_file(tmp_path / "paper.xml")
+        retitled = CITATION.replace("10.9999", "https://doi.org/10.9999").replace(" samples", "")
+        resolver = report(curve(), citation=retitled)
+        (tmp_path / "paper.xml").write_text(resolver, encoding="utf-8")
+        again = own.import_file(tmp_path / "paper.xml")  # the same source by its DOI, under another title
         assert (again.taken, again.sources) == ((), ())
         assert taken[0][1].id in again.skipped[0].why
         other = report(curve(number=2), citation=CITATION.replace("Invented numbers", "Other").replace(".1<", ".2<"))
@@ -320,6 +323,7 @@ WRONG: list[tuple[str, str | bytes, str]] = [
     ("no title", GOOD.replace("<sTitle>Invented numbers of invented samples</sTitle>", ""), "sTitle is missing"),
     ("no author", GOOD.replace("sAuthor", "sOther"), "there is no sAuthor"),
     ("a year to come", GOOD.replace("2011", NEXT_YEAR), f"the year {NEXT_YEAR} is in the future"),
+    ("a date to come", GOOD.replace("<sVol>", f"<dateCit>{NEXT_YEAR}-01-01</dateCit><sVol>"), "is in the future"),
     ("no year", GOOD.replace("2011", "once"), "the year 'once' is none"),
     ("a C1 control character", GOOD.replace("Noone, B.", "No\u009bone"), "control character \\x9b"),
     ("text as a value", GOOD.replace("113.0", "about 113"), "NumValues 2, nPropValue: 'about 113' is not a number"),
