@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterator, Sequence
 from dataclasses import replace
 from typing import Any
@@ -33,7 +34,8 @@ def read_nasa(table: Table, folder: Folder, *, terms: int) -> Iterator[Entry]:
 
     A record that contradicts itself is quarantined with the figures in its note: all of it where h(298.15 K) does not
     meet the formation enthalpy, the heat capacity alone where only a joint does not close. The zero formation enthalpy
-    of an element in its reference form is a definition and makes no entry.
+    of an element in its reference form is a definition and makes no entry. What a note says after ``verdict on Cp:``,
+    ``verdict on Hf:`` or ``verdict on dH0:`` stands with that quantity only.
 
     Parameters
     ----------
@@ -109,7 +111,7 @@ def _record(
         tmax=record.tmax,
         datum="",
         status="quarantined" if level or joints else folder.status,
-        note="; ".join(filter(None, (level, joints, note))),
+        note="; ".join(filter(None, (level, joints, _about(note, "Cp")))),
         carriers=tuple(carrier(row, folder) for row in rows),
     )
     yield finish(curve, species, first, seen, ("Cp", *key))
@@ -123,15 +125,32 @@ def _record(
         tmin=None,
         tmax=None,
         status="quarantined" if level else folder.status,
-        note="; ".join(filter(None, (level, note))),
         carriers=(carrier(first, folder),),
     )
     if hf298 is not None and not (hf298 == 0 and _is_reference(key, folder)):
-        hf = replace(constant, quantity="Hf", value=hf298, carried=first.text("hf298"), datum=_ELEMENTS_DATUM)
+        hf = replace(
+            constant,
+            quantity="Hf",
+            value=hf298,
+            carried=first.text("hf298"),
+            datum=_ELEMENTS_DATUM,
+            note="; ".join(filter(None, (level, _about(note, "Hf")))),
+        )
         yield finish(hf, species, first, seen, ("Hf", *key))
     if dh0 is not None:
-        increment = replace(constant, quantity="dH0", value=dh0, carried=first.text("dh0"))
+        said = "; ".join(filter(None, (level, _about(note, "dH0"))))
+        increment = replace(constant, quantity="dH0", value=dh0, carried=first.text("dh0"), note=said)
         yield finish(increment, species, first, seen, ("dH0", *key))
+
+
+_VERDICT = re.compile(r"(?:^|; )verdict on (Cp|Hf|dH0): ")
+
+
+def _about(note: str, quantity: str) -> str:
+    """What the note of a record says of one of its quantities: all but ``verdict on`` another one."""
+    common, *verdicts = _VERDICT.split(note)
+    said = [f"verdict: {text}" for what, text in zip(verdicts[::2], verdicts[1::2], strict=True) if what == quantity]
+    return "; ".join(filter(None, (common, *said)))
 
 
 def _interval(row: Row, a_columns: Sequence[str], b_columns: Sequence[str]) -> dict[str, Any]:
