@@ -100,6 +100,9 @@ class Intake(Core):
             raise InvalidInput("the past cannot be added to", hint="open the store without as_of")
         author = "" if dry_run else who()
         if plan.candidates and not dry_run:
+            checker = self._checker()
+            for one in plan.candidates:
+                checker(one.entry, one.species)  # kept by the checker, so that no other writer waits for it
             add_own_all(
                 self._path,
                 [(one.entry, one.carrier) for one in plan.candidates],
@@ -107,7 +110,7 @@ class Intake(Core):
                 species=list(plan.species.values()),
                 sources=list(plan.sources.values()),
                 comment=comment,
-                checker=self._checker(),
+                checker=checker,
             )
             self._forget()
         return Report(

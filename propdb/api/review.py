@@ -144,7 +144,7 @@ class Review(Core):
         shown = events if last is None else events[-last:]
         known = about(self._reader, {event.entry for event in shown if event.entry})
         lines = tuple(LogLine(event, *known.get(event.entry, ())) for event in shown)
-        return StoreLog(lines, self._reader.head, len(events))
+        return StoreLog(lines, events[-1].hash, len(events))  # there is always a base
 
     def _problems(self) -> list[Problem]:
         from propdb.store.backup import check

@@ -7,7 +7,7 @@ import json
 import re
 import sqlite3
 from collections.abc import Iterator, Mapping
-from contextlib import closing
+from contextlib import closing, contextmanager
 from dataclasses import dataclass
 from typing import Any, Final
 
@@ -62,13 +62,26 @@ def verify(conn: sqlite3.Connection) -> list[Problem]:
     factory = conn.text_factory
     conn.text_factory = _decoded  # texts that are not UTF-8 shall be found, not stumbled over
     try:
-        with mapped(path_of(conn)):
+        with mapped(path_of(conn)), _one_state(conn):
             found: list[Problem] = []
             for part in (_log, _entries, _parts, _members, _content, _canon, _guards):
                 found += part(conn)
             return found
     finally:
         conn.text_factory = factory
+
+
+@contextmanager
+def _one_state(conn: sqlite3.Connection) -> Iterator[None]:
+    """Let all that follows see one state of the store, whatever others write meanwhile."""
+    if conn.in_transaction:
+        yield
+        return
+    conn.execute("BEGIN")
+    try:
+        yield
+    finally:
+        conn.rollback()  # nothing was written
 
 
 def _decoded(raw: bytes) -> str:
