@@ -65,7 +65,9 @@ XML = report(
     data_set(REACTION, "", [("298.15", "-277.0")], reaction=FORMATION, members=participant(1, "1", "Liquid"), number=3),
     data_set("Mass density, kg/m3", "Liquid", [("290", "1")], of=(1, 2), number=4),
 )
-SEEDS = {"own.csv": template("csv").replace("\n# ethanol,", "\nethanol,"), "own.toml": TOML, "own.xml": XML}
+CSV = template("csv").replace("\n# ethanol,", "\nethanol,")
+CSV = CSV[CSV.index("\nspecies,") + 1 :]  # without the explanations, where a change means nothing
+SEEDS = {"own.csv": CSV, "own.toml": TOML, "own.xml": XML}
 #: Pieces that have broken readers elsewhere.
 PIECES = [
     b"", b"\0", b"\xff", b"\xfe\xff", b"\xef\xbb\xbf", b"\r", b"\n", b"\t", b'"', b"'", b",", b";", b"#", b"[",
@@ -78,8 +80,8 @@ PIECES = [
 
 
 def mutated(content: bytes, dice: random.Random) -> bytes:
-    """One to four changes: a piece put in or in place of something, a part dropped, doubled, exchanged, or cut off."""
-    for _ in range(dice.randint(1, 4)):
+    """One to three changes: a piece put in or in place of something, a part dropped, doubled, exchanged, or cut off."""
+    for _ in range(dice.randint(1, 3)):
         a = dice.randrange(len(content) + 1)
         b = min(len(content), a + dice.choice((0, 1, 1, 3, 8, 40, 300)))
         kind = dice.randrange(8)
@@ -123,7 +125,7 @@ def counts(store: Store) -> tuple[int, ...]:
 
 
 def attempt(store: Store, what: Any, *, dry_run: bool) -> bool:
-    """Let something in; True if it was taken. All of it is in the store afterwards, or nothing."""
+    """Let something in; True if it was read. All of it is in the store afterwards, or nothing."""
     before = counts(store)
     refused: PropdbError | None = None
     try:
@@ -138,7 +140,7 @@ def attempt(store: Store, what: Any, *, dry_run: bool) -> bool:
     after = counts(store)
     if dry_run:
         assert after == before
-        return False
+        return not done.refused
     added = tuple(b - a for a, b in zip(before, after, strict=True))
     size = len(done.taken)
     assert added[:3] + added[4:] == (size, len(done.species), len(done.sources), size)
@@ -147,28 +149,28 @@ def attempt(store: Store, what: Any, *, dry_run: bool) -> bool:
     )  # one event for each entry, one for what is new with it
     for _, entry in done.taken:
         assert store.entry_show(entry.id).status == "draft"
-    return bool(size)
+    return True
 
 
 def run_files(store: Store, folder: Path, count: int, seed: int) -> dict[str, int]:
-    """Mutate each kind of file so often; how many of them were taken."""
-    taken = dict.fromkeys(SEEDS, 0)
+    """Mutate each kind of file so often; how many of them could be read."""
+    read = dict.fromkeys(SEEDS, 0)
     for name, text in SEEDS.items():
         for number in range(count):
             dice = random.Random(f"{name} {seed} {number}")
             (folder / name).write_bytes(mutated(text.encode(), dice))
             try:
-                taken[name] += attempt(store, folder / name, dry_run=number % 4 == 3)
+                read[name] += attempt(store, folder / name, dry_run=number % 4 == 3)
             except BaseException:
                 print(f"{name}, seed {seed}, number {number}")
                 raise
-    return taken
+    return read
 
 
 def test_mutated_files(store: Store, tmp_path: Path) -> None:
-    taken = run_files(store, tmp_path, 60, seed=1)
-    assert taken["own.csv"] > 0  # some mutations leave a file that is right
-    assert taken["own.toml"] > 0
+    read = run_files(store, tmp_path, 60, seed=1)
+    assert read["own.csv"] > 0  # some changes leave a file that is right
+    assert read["own.toml"] > 0
 
 
 @pytest.mark.full
