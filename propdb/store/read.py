@@ -62,6 +62,7 @@ class Reader(View):
     ) -> None:
         self._decoded: dict[int, Entry] = {}
         self._carriers: dict[tuple[Any, ...], Carrier] = {}
+        self._checks: dict[tuple[Any, ...], Crosscheck] = {}
         self._species: dict[str, Species] = {}
         self._entries: dict[str, tuple[Entry, ...]] = {}
         self._sources: dict[str, Source] = {}
@@ -145,14 +146,19 @@ class Reader(View):
 
     def _crosschecks(self, start: str, where: str, values: Mapping[str, Any]) -> dict[int, tuple[Crosscheck, ...]]:
         """Row number of an entry to what other compilations say: independent ones first, those shown only last."""
-        found: dict[int, dict[Crosscheck, None]] = {}  # an entry both own and of the base comes twice
+        found: dict[int, dict[tuple[Any, ...], Crosscheck]] = {}  # an entry both own and of the base comes twice
+        known = self._checks
         for row in self.conn.execute(
             f"SELECT x.entry, {CROSSCHECK_COLUMNS} FROM {start} CROSS JOIN crosscheck x ON x.entry = b.entry"
             f" WHERE {where} AND {MEMBER} ORDER BY x.independent DESC, x.allowed IS NULL, x.compilation, x.temperature",
             values,
         ):
-            found.setdefault(row[0], {})[crosscheck_from(row[1:])] = None
-        return {number: tuple(checks) for number, checks in found.items()}
+            key = row[1:]
+            check = known.get(key)
+            if check is None:
+                check = known[key] = crosscheck_from(key)
+            found.setdefault(row[0], {})[key] = check
+        return {number: tuple(checks.values()) for number, checks in found.items()}
 
     def _entry(self, row: tuple[Any, ...], carriers: tuple[Carrier, ...], checks: tuple[Crosscheck, ...]) -> Entry:
         """The record of a row of ``_COLUMNS``; the one made before where nothing about it has changed."""
