@@ -20,6 +20,7 @@ if TYPE_CHECKING:
     from datetime import date
 
     from propdb.levels.engine import Levels
+    from propdb.levels.policy import Policy
     from propdb.model.answer import Answer, ReactionAnswer
     from propdb.model.records import Step
     from propdb.vetting.crosscheck import Checker
@@ -157,6 +158,14 @@ class Core:
 
             self._checks = Checker(self._reader.policies().get("lineage", {}), self._reader.sources())
         return self._checks
+
+    def _with_changes(self, answer: _Answer, policy: Policy) -> _Answer:
+        """The answer with a warning where the latest base changed an entry behind it."""
+        if self._reader.base_before is None:
+            return answer
+        from propdb.api.changes import changes
+
+        return replace(answer, warnings=(*answer.warnings, *changes(self._reader, answer, policy)))
 
     def _at_state(self, answer: _Answer) -> _Answer:
         """The answer with each of its heatings compared at the state itself, and entries that nobody compared yet."""

@@ -79,6 +79,7 @@ class Enthalpies(Core):
         state = read_state(record, phase, form, temperature, pressure, saturated)
         zero = self.datum_show(datum)
         answer = enthalpy(levels, species=record, state=state, datum=zero, unit=per, stamp=self._stamp)
+        answer = self._with_changes(answer, levels.policy)
         return self._at_state(answer) if crosscheck else answer
 
     def convert(
@@ -138,6 +139,7 @@ class Enthalpies(Core):
             phase=read_phase(phase) if phase else "g",
             temperature=None if temperature is None else read_temperature(temperature),
         )
+        answer = self._with_changes(answer, levels.policy)
         return self._at_state(answer) if crosscheck else answer
 
     def reaction(
@@ -211,4 +213,5 @@ class Enthalpies(Core):
             unit=per,
             stamp=self._stamp,
         )
+        answer = self._with_changes(answer, levels.policy)
         return self._at_state(answer) if crosscheck else answer

@@ -114,6 +114,18 @@ class Reader(View):
             self._entries[species] = found
         return found
 
+    def entries_before(self, species: str) -> tuple[Entry, ...]:
+        """As :meth:`entries`, had the base before the present one stayed: with the status of now, in no order.
+
+        Empty where there was none before, or where it held nothing of the species.
+        """
+        with self._snapshot():
+            before = self.base_before
+            if before is None:
+                return ()
+            values = self._view | {"base": before, "name": species}
+            return self._read(_BY_SPECIES, "t.name = :name AND t.canon = t.id", values)
+
     def _read(self, start: str, where: str, values: Mapping[str, Any]) -> tuple[Entry, ...]:
         """The active entries that ``where`` selects, starting from ``start``: SQL of this module."""
         execute = self.conn.execute

@@ -98,6 +98,14 @@ class View:
         return self._base
 
     @property
+    def base_before(self) -> int | None:
+        """Seq of the base before the one that holds; None where that is the first."""
+        with self._snapshot():
+            sql = "SELECT max(seq) FROM event WHERE kind = 'base' AND seq < :base"
+            found: int | None = self.conn.execute(sql, {"base": self._view["base"]}).fetchone()[0]
+        return found
+
+    @property
     def content_hash(self) -> str:
         """Content hash of the base, SHA-256 in hex."""
         return str(self.base.payload.get("content_hash", ""))
