@@ -124,3 +124,14 @@ def test_red_phosphorus_and_sulfur_gas(store: Store) -> None:
     # Cox, Wagman, Medvedev (1989), CODATA: Hf(S2, g) = 128.60 kJ/mol; H2S moves by half of it.
     gas = store.convert("0 kJ/mol", species="hydrogen sulfide", from_="elements-298K-S2gas", to="elements-298K")
     assert gas.value == pytest.approx(64.30, abs=0.01)
+
+
+def test_elements_that_are_liquid_at_298_are_crystals_at_zero_kelvin(store: Store) -> None:
+    # Cox, Wagman, Medvedev (1989), CODATA: H(298.15 K) - H(0) of Br2(l) 24.52, Hg(l) 9.342, HBr(g) 8.648, H2(g) 8.467
+    # kJ/mol; HBr(g) at 298.15 K -36.29. From these, Hf(HBr, g, 0 K) = -36.29 - 8.648 + 24.52 / 2 + 8.467 / 2.
+    at_298 = store.enthalpy(
+        "hydrogen bromide", phase="g", temperature=298.15, datum="elements-0K", source="codata-1989"
+    )
+    assert at_298.value == pytest.approx(-36.29 + 24.52 / 2 + 8.467 / 2, abs=0.001)
+    mercury = store.enthalpy("mercury", phase="l", temperature=298.15, datum="elements-0K")
+    assert mercury.value == pytest.approx(9.342, abs=0.001)
