@@ -20,6 +20,8 @@ __all__ = ["Match", "find", "resolve"]
 _FUZZY_CUTOFF: Final = 70.0  # of 100: below it a match is chance
 _Row = tuple[int, str, str, int, str, str]
 _AFTER_ALL: Final = "\U0010ffff"
+#: More than there are species; SQLite takes no number above 2**63.
+_MOST: Final = 1_000_000
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,6 +76,7 @@ def find(reader: Reader, text: str, limit: int = 10) -> list[Match]:
     wanted = fold(text)
     if not wanted or limit < 1:
         return []
+    limit = min(limit, _MOST)
     scores: dict[int, float] = {}
 
     def note(rows: Iterable[tuple[int, str]], low: float, span: float) -> None:
