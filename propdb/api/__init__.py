@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING
 from propdb.api.care import Care
 from propdb.api.enthalpies import Enthalpies
 from propdb.api.opening import build_seed, to_stderr
+from propdb.api.tables import Tables
 from propdb.errors import StoreError
 from propdb.store.open import default_path
 from propdb.store.read import Reader
@@ -23,7 +24,7 @@ if TYPE_CHECKING:
 __all__ = ["Store", "open"]
 
 
-class Store(Enthalpies, Care):
+class Store(Enthalpies, Tables, Care):
     """One store file. Reading is lazy; every method opens what it needs. One per thread.
 
     Parameters

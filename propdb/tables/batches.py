@@ -25,6 +25,7 @@ _KEYS = ("species", "datum", "phase", "form")
 class Done(NamedTuple):
     """What a batch came to, beside the batch: for counts, streams and the sidecar."""
 
+    given: Given
     rows: Rows
     verdicts: NDArray[np.int32]
     h: NDArray[np.float64]  # on the datum wanted [table's unit], NaN where there is none
@@ -60,11 +61,11 @@ def read(batch: Any, plan: Plan) -> Given:
 
     layout = plan.layout
     keys = {}
-    for role in _KEYS:
+    for role in (*_KEYS, "stream", "side"):
         column = layout.get(role)
         if column is not None:
             keys[role] = codes_of(batch.column(column.index))
-    t = p = vapour = fractions = None
+    t = p = flow = fractions = None
     if (column := layout.get("temperature")) is not None:
         t = temperature_scale(column.unit, column.name)(floats(batch.column(column.index)))
     if (column := layout.get("pressure")) is not None:
@@ -73,7 +74,9 @@ def read(batch: Any, plan: Plan) -> Given:
         fractions = np.empty((batch.num_rows, len(layout.components)))
         for place, component in enumerate(layout.components):
             fractions[:, place] = floats(batch.column(component.index))
-    return Given(batch.num_rows, keys, t, p, fractions, vapour)
+    if (column := layout.get("flow")) is not None:
+        flow = floats(batch.column(column.index))
+    return Given(batch.num_rows, keys, t, p, fractions, flow)
 
 
 def convert_arrow(batch: Any, plan: Plan) -> tuple[Any, Done]:
@@ -81,7 +84,8 @@ def convert_arrow(batch: Any, plan: Plan) -> tuple[Any, Done]:
     from propdb.tables.core import compute
 
     pa = arrow()
-    rows = compute(plan, read(batch, plan))
+    given = read(batch, plan)
+    rows = compute(plan, given)
     column = plan.layout.get("enthalpy")
     array = None if column is None else batch.column(column.index)
     if array is not None and pa.types.is_decimal(array.type):
@@ -106,7 +110,7 @@ def convert_arrow(batch: Any, plan: Plan) -> tuple[Any, Done]:
     )
     assert len(names) == len(schema)
     out = pa.RecordBatch.from_arrays([*batch.columns, *added], schema=schema)
-    return out, Done(rows, verdicts, h)
+    return out, Done(given, rows, verdicts, h)
 
 
 def added_fields(schema: Any, plan: Plan) -> list[Any]:

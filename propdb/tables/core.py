@@ -59,7 +59,7 @@ class Given(NamedTuple):
     temperature: FloatArray | None = None  # [K], NaN where there is none
     pressure: FloatArray | None = None  # [Pa]
     fractions: FloatArray | None = None  # rows x components, as given
-    vapour: FloatArray | None = None
+    flow: FloatArray | None = None  # in the unit of its column
 
 
 class Rows(NamedTuple):
@@ -71,6 +71,7 @@ class Rows(NamedTuple):
     verdicts: NDArray[np.int32]
     kinds: NDArray[np.int32] | None  # None for mixtures
     constant: bool  # everything follows from the kind of row
+    mix: tuple[FloatArray, NDArray[np.int32]] | None = None  # amount fractions and kinds of the components
 
 
 class Plan:

@@ -62,6 +62,8 @@ def mixture_rows(plan: Plan, given: Given) -> Rows:
     value, standard = np.full(size, math.nan), np.full(size, math.nan)
     scale = np.full(size, plan.settings.unit.factor)
     verdicts = np.zeros(size, np.int32)
+    fractions = np.zeros((size, len(components)))
+    kinds = np.zeros((size, len(components)), np.int32)
     for place, key in enumerate(keys):
         rows = np.flatnonzero(places == place)
         numbers = plan.kinds_of([Key(c.species, key.datum, key.phase, key.form) for c in components])
@@ -74,11 +76,13 @@ def mixture_rows(plan: Plan, given: Given) -> Rows:
             verdicts[row] = plan.verdict(BAD_ROW, shown)
         if np.count_nonzero(~good) > 1000:
             verdicts[rows[~good][1000:]] = plan.verdict(BAD_ROW, "the fractions do not sum to 1")
+        kinds[rows] = numbers
         rows, x = rows[good], x[good]
+        fractions[rows] = x
         if plan.settings.unit.basis == "mass":
             scale[rows] *= x @ molar
         value[rows], standard[rows], verdicts[rows] = _sum(plan, given, rows, x, numbers)
-    return Rows(value, standard, scale, verdicts, None, False)
+    return Rows(value, standard, scale, verdicts, None, False, (fractions, kinds))
 
 
 def _sum(
