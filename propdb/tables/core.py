@@ -93,6 +93,7 @@ class Plan:
         self.layout = layout
         self.kinds: list[Kind] = []
         self.users: dict[int, int] = {}
+        self.varies = settings.evaluate  # has a kind of row turned up that depends on T?
         self.verdicts: list[tuple[str, str]] = [(OK, "")]
         self._numbers: dict[tuple[str, str], int] = {(OK, ""): 0}
         self._index: dict[Key, int] = {}
@@ -149,6 +150,7 @@ class Plan:
                     has_t=has_t,
                 )
             if kind.varying is not None:
+                self.varies = True
                 for equation in kind.varying.equations():
                     self.users[equation] = self.users.get(equation, 0) + 1
             self.kinds.append(kind)

@@ -23,6 +23,7 @@ if TYPE_CHECKING:
 __all__ = ["Delimited", "open_delimited"]
 
 _AHEAD = 4
+_LOOK = 10_000  # rows that the decimals of a column are taken from
 
 
 class Part(NamedTuple):
@@ -98,7 +99,7 @@ def _quoted(text: str, delimiter: str) -> str:
 
 
 def digits_of(block: bytes | None, plan: Plan, dialect: Dialect) -> Digits:
-    """Decimals of the enthalpy column, from the first block."""
+    """Decimals of the enthalpy column, from its first rows."""
     import csv
 
     column = plan.layout.get("enthalpy")
@@ -106,7 +107,7 @@ def digits_of(block: bytes | None, plan: Plan, dialect: Dialect) -> Digits:
         return look((), plan.settings.digits)
     rows, _ = physical_rows(block, dialect.delimiter.encode())
     cells = []
-    for fields in csv.reader((decode(row) for row in rows), delimiter=dialect.delimiter):
+    for fields in csv.reader((decode(row) for row in rows[:_LOOK]), delimiter=dialect.delimiter):
         if column.index < len(fields):
             number = plain_number(fields[column.index], comma=dialect.comma)
             if number is not None:

@@ -36,11 +36,16 @@ def convert_block(block: bytes, first: int, work: BlockWork) -> Part:
         raise Refused
     lines, rest = _lines(block)
     count = len(lines)
-    table = _parse(block, work)
+    whole = plan.varies or work.tally.streams is not None
+    table = _parse(block, work, whole)
     if table.num_rows != count:
         raise Refused
-    given = _given(table, work, count)
+    given = _given(table, work, count, whole)
     rows = compute(plan, given)
+    if plan.varies and not whole:  # the first rows that depend on T
+        table = _parse(block, work, True)
+        given = _given(table, work, count, True)
+        rows = compute(plan, given)
     verdicts = rows.verdicts
     mark = text_array([work.dialect.delimiter])[0]
     h_column = plan.layout.get("enthalpy")
@@ -78,6 +83,9 @@ def convert_block(block: bytes, first: int, work: BlockWork) -> Part:
 
 _BLANK = {"null_handling": "replace", "null_replacement": ""}
 
+#: Columns that a shift which does not depend on T has no use for.
+_WHOLE = ("temperature", "pressure", "flow", "stream", "side", "vapour")
+
 #: Arrow writes small decimals with more places than this in scientific notation, and adds no more than 38 digits.
 MOST_SWIFT = 18
 
@@ -99,7 +107,8 @@ def _lines(block: bytes) -> tuple[Any, bytes]:
     return strings, b"\r\n" if windows else b"\n"
 
 
-def _parse(block: bytes, work: BlockWork) -> Any:
+def _parse(block: bytes, work: BlockWork, whole: bool) -> Any:
+    """The columns that matter; temperatures and what streams need only where ``whole``."""
     from pyarrow import csv
 
     pa = arrow()
@@ -110,7 +119,9 @@ def _parse(block: bytes, work: BlockWork) -> Any:
     for role, column in layout.columns.items():
         if role == "enthalpy":
             types[f"c{column.index}"] = pa.decimal128(MOST_SWIFT + digits.places, digits.places)
-        elif role in ("temperature", "pressure", "flow", "vapour"):
+        elif role in _WHOLE and not whole:
+            continue
+        elif role in ("temperature", "pressure", "flow"):
             types[f"c{column.index}"] = pa.float64()
         else:
             types[f"c{column.index}"] = text
@@ -144,26 +155,26 @@ def _column(table: Any, index: int) -> Any:
     return chunks[0]
 
 
-def _given(table: Any, work: BlockWork, count: int) -> Given:
+def _given(table: Any, work: BlockWork, count: int, whole: bool) -> Given:
     from propdb.tables.core import Given
 
     layout = work.plan.layout
     keys = {}
     for role in ("species", "datum", "phase", "form", "stream", "side"):
         column = layout.get(role)
-        if column is not None:
+        if column is not None and (whole or role not in _WHOLE):
             keys[role] = codes_of(_column(table, column.index))
     t = p = flow = fractions = None
-    if (column := layout.get("temperature")) is not None:
+    if whole and (column := layout.get("temperature")) is not None:
         t = _finite(floats(_column(table, column.index)))
         t = temperature_scale(column.unit, column.name)(t)
-    if (column := layout.get("pressure")) is not None:
+    if whole and (column := layout.get("pressure")) is not None:
         p = _finite(floats(_column(table, column.index))) * pressure_scale(column.unit, column.name)
     if layout.components:
         fractions = np.empty((count, len(layout.components)))
         for place, component in enumerate(layout.components):
             fractions[:, place] = _finite(floats(_column(table, component.index)))
-    if (column := layout.get("flow")) is not None:
+    if whole and (column := layout.get("flow")) is not None:
         flow = _finite(floats(_column(table, column.index)))
     return Given(count, keys, t, p, fractions, flow)
 
