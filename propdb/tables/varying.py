@@ -74,6 +74,7 @@ class _Cell:
     reason: str = ""
     base: float = math.nan  # value less the members' own antiderivatives [J/mol]
     grid: dict[int, float] = field(default_factory=dict)
+    only: tuple[float, ...] | None = None  # the few temperatures that are known, where there is no heat capacity [K]
 
     def middle(self) -> float:
         """The temperature at which the levels are asked [K]: the same whichever row comes first."""
@@ -147,6 +148,11 @@ class Varying:
             if not len(t):
                 continue
             p = None if pressures is None else pressures[mine]
+            if cell.only is not None and not np.isin(t, cell.only).any():
+                if not cell.ready:
+                    run(partial(self._prepare, cell))
+                verdicts[mine] = verdict(NO_DATA, cell.reason)
+                continue
             if cell.members is None:
                 value[mine], standard[mine], verdicts[mine] = self._each(t, p, run, verdict)
                 continue
@@ -235,7 +241,7 @@ class Varying:
             try:
                 point = self._ask(None if t < 0 else t, None if p < 0 else p)
             except PropdbError as error:
-                self._memory[(t, p)] = (math.nan, math.nan, NO_DATA, " ".join(str(error).split()))
+                self._memory[(t, p)] = (math.nan, math.nan, NO_DATA, out_of_range(error))
                 continue
             self._note(point)
             flag = EXTRAPOLATED if point.extrapolated else OK
@@ -273,8 +279,14 @@ def vary_enthalpy(
     def ask(t: float | None, p: float | None) -> Point:
         return enthalpy_at(levels, species, State(phase, t, state.form, p, saturated), target)  # type: ignore[arg-type]
 
-    track = levels.tree(species.name).tracks.get((phase, state.form))
-    if saturated or not isinstance(track, Curve) or levels._tables.get(species.name):
+    tree = levels.tree(species.name)
+    track = tree.tracks.get((phase, state.form))
+    if (
+        saturated
+        or phase == "fluid"
+        or (track is not None and not isinstance(track, Curve))
+        or levels._tables.get(species.name)
+    ):
         return Varying(ask, [_Cell(0.0, math.inf, None)])
     signed = [(-1.0, target)] if target.temperature == SAME_T else []
     return Varying(ask, _cells(levels, species, signed, phase=phase, own=state))
@@ -317,7 +329,11 @@ def _pieces(levels: Levels, low: float, high: float, members: Sequence[tuple[flo
     tracks = []
     marks: set[float] = set()
     for coefficient, name, phase, form in members:
-        track = levels.tree(name).tracks.get((phase, form))
+        tree = levels.tree(name)
+        track = tree.tracks.get((phase, form))
+        if track is None and not levels._tables.get(name):
+            known = tuple(n.temperature for n in tree.nodes if (n.phase, n.form) == (phase, form))
+            return [_Cell(low, high, None, only=known)]
         if not isinstance(track, Curve) or levels._tables.get(name):
             return [_Cell(low, high, None)]
         tracks.append((coefficient, track))
@@ -337,8 +353,8 @@ def _pieces(levels: Levels, low: float, high: float, members: Sequence[tuple[flo
     for a, b in zip(ends, ends[1:], strict=False):
         inside = _Cell(a, b, None).middle()
         chosen = [(coefficient, _equation(track, inside)) for coefficient, track in tracks]
-        known = all(equation is not None for _, equation in chosen)
-        cells.append(_Cell(a, b, _merged(chosen) if known else None))
+        complete = all(equation is not None for _, equation in chosen)
+        cells.append(_Cell(a, b, _merged(chosen) if complete else None))
     return cells
 
 
