@@ -8,7 +8,7 @@ from functools import partial
 from typing import TYPE_CHECKING
 
 from propdb.api.core import Core
-from propdb.errors import InvalidInput
+from propdb.errors import InvalidInput, TemperatureError
 from propdb.store.search import resolve
 
 if TYPE_CHECKING:
@@ -16,6 +16,7 @@ if TYPE_CHECKING:
 
     from propdb.tables.oracle import Basis
     from propdb.tables.record import TableReport
+    from propdb.tables.tabulate import Tabulation
 
 __all__ = ["Tables", "open_basis"]
 
@@ -176,6 +177,105 @@ class Tables(Core):
             return convert_table(oracle, request, Path(table), Path(out), progress)
         finally:
             oracle.close()
+
+    def tabulate(
+        self,
+        species: str | Sequence[str],
+        *,
+        datum: str,
+        low: Temperature = "25C",
+        high: Temperature = "1000C",
+        step: str | float = "25K",
+        phase: str | None = None,
+        form: str | None = None,
+        unit: str = "kJ/mol",
+        out: str | os.PathLike[str] | None = None,
+        overwrite: bool = False,
+        source: str | None = None,
+        extrapolate: bool = False,
+    ) -> Tabulation:
+        """Enthalpy and heat capacity over a range of temperature, across phases, each row with its entries.
+
+        Parameters
+        ----------
+        species : str or sequence of str
+            Names, synonyms, formulas, CAS RNs or InChIKeys.
+        datum : str
+            Named or inline.
+        low, high : str or float
+            Ends of the range: ``"25C"``, or a number in K. Temperatures are shown on the scale of ``low``.
+        step : str or float
+            ``"25K"``, ``"50F"``, or a number in K.
+        phase, form : str, optional
+            One phase; without it the stable ones at 1 atm, with two rows where one becomes the next.
+        unit : str
+            Of the enthalpies; that of the heat capacities follows: ``kJ/kg`` gives kJ/kg/K, ``kJ/mol`` J/mol/K.
+        out : path, optional
+            A file to write: .csv, .tsv, .xlsx, .parquet or .json.
+        overwrite : bool
+            Replace a file that exists.
+        source, extrapolate
+            As in :meth:`propdb.api.Store.enthalpy`.
+
+        Raises
+        ------
+        PropdbError
+            NotFound, Ambiguous, UnitError, InvalidInput; NoData where no row has an enthalpy, or where it is not known
+            which phase is stable.
+        """
+        from pathlib import Path
+
+        from propdb.levels.typed import read_phase, read_temperature
+        from propdb.tables.files import check_target, write_tabulation
+        from propdb.tables.tabulate import tabulate
+        from propdb.units import parse_unit
+
+        names = [species] if isinstance(species, str) else list(species)
+        if out is not None:
+            check_target(Path(out), overwrite=overwrite)
+        records = [resolve(self._reader, name) for name in names]
+        found = self.datum_show(datum)
+        per = parse_unit(unit)
+        first, last = read_temperature(low), read_temperature(high)
+        table = tabulate(
+            self._engine(source, extrapolate),
+            records,
+            low=first,
+            high=last,
+            step=_step(step),
+            scale=_scale_of(low),
+            datum=found,
+            unit=per,
+            phase=None if phase is None else read_phase(phase),
+            form=form,
+            stamp=self._stamp,
+        )
+        if out is not None:
+            write_tabulation(table, Path(out), overwrite=overwrite)
+        return table
+
+
+def _scale_of(temperature: Temperature) -> str:
+    from propdb.tables.scales import temperature_unit
+    from propdb.units.numbers import split_number
+
+    if not isinstance(temperature, str):
+        return "K"
+    _, unit = split_number(temperature, "a temperature", "600C", TemperatureError)
+    return temperature_unit(unit, "")
+
+
+def _step(step: str | float) -> float:
+    """A difference of temperatures [K]."""
+    from propdb.units import read_si
+    from propdb.units.numbers import split_number
+
+    if not isinstance(step, str):
+        return float(step)
+    number, unit = split_number(step, "a step", "25K", TemperatureError)
+    if not unit:
+        raise TemperatureError(f"the step {step!r} has no unit", where="--step", hint=f"did you mean {number}K?")
+    return read_si(number, unit, dimension="temperature", difference=True)
 
 
 def _one_of(option: str, value: str, choices: tuple[str, ...]) -> None:
