@@ -72,6 +72,8 @@ class Tables(Core):
         overwrite: bool = False,
         source: str | None = None,
         extrapolate: bool = False,
+        scheduler: str | None = None,
+        workers: int | None = None,
         progress: Callable[[str], None] | None = None,
     ) -> TableReport:
         """Convert every enthalpy of a table to another datum, or compute them where it has none.
@@ -85,7 +87,7 @@ class Tables(Core):
         table, out : path
             CSV, TSV, Excel, Parquet, or a directory of Parquet; the output has the same format.
         to : str
-            Datum wanted, named or inline.
+            Datum wanted, named or inline; ``suggest`` finds the one that serves the table best, says why, and takes it.
         from_ : str, optional
             Datum of the whole table, where no column says it.
         species, phase, form, temperature, pressure, saturated : optional
@@ -110,6 +112,10 @@ class Tables(Core):
             Replace an output that exists.
         source, extrapolate
             As in :meth:`propdb.api.Store.enthalpy`.
+        scheduler : str, optional
+            Address of a Dask scheduler, for a directory of Parquet: each task converts one file.
+        workers : int, optional
+            The same with so many processes on this machine.
         progress : callable, optional
             Gets a line now and then: share, rows, rate [rows/s] and time left.
 
@@ -134,7 +140,7 @@ class Tables(Core):
         from propdb.tables.columns import pairs
         from propdb.tables.core import Settings
         from propdb.tables.oracle import Oracle
-        from propdb.tables.run import Request, convert_table
+        from propdb.tables.run import SUGGEST, Request, convert_table
         from propdb.units import parse_pressure, parse_unit
 
         _one_of("composition", composition, ("wet", "dry"))
@@ -143,13 +149,15 @@ class Tables(Core):
             _one_of("saturated", saturated, ("liquid", "vapour"))
         if digits is not None and not 0 <= digits <= 15:
             raise InvalidInput(f"{digits} decimals", where="--digits", hint="give 0 to 15")
+        if workers is not None and not 1 <= workers <= 1000:
+            raise InvalidInput(f"{workers} workers", where="--workers", hint="give 1 or more")
         given = {"species": species, "phase": phase, "form": form, "temperature": temperature, "pressure": pressure}
         given["datum"] = from_
         names = {role: "--from" if role == "datum" else f"--{role}" for role in given}
         if phase is not None:
             read_phase(phase)
         settings = Settings(
-            to=self.datum_show(to).name,
+            to=SUGGEST if to == SUGGEST else self.datum_show(to).name,
             unit=parse_unit(unit or "kJ/mol"),
             species=species,
             datum=None if from_ is None else self.datum_show(from_).name,
@@ -171,6 +179,8 @@ class Tables(Core):
             sheet=sheet,
             across=across,
             overwrite=overwrite,
+            scheduler=scheduler,
+            workers=workers,
         )
         oracle = Oracle(partial(open_basis, str(self._path), self._as_of, source, extrapolate))
         try:

@@ -35,7 +35,7 @@ def convert_table(
         typer.Argument(metavar="IN", help="CSV, TSV, Excel, Parquet, or a directory of Parquet.", show_default=False),
     ],
     out: Annotated[str, typer.Argument(metavar="OUT", help="The converted table.", show_default=False)],
-    to: Annotated[str, _option("--to", "DATUM", f"Datum wanted. {DATUM_HELP}")],
+    to: Annotated[str, _option("--to", "DATUM", f"Datum wanted, or suggest. {DATUM_HELP}")],
     from_: Annotated[str | None, _option("--from", "DATUM", "Datum of all rows; else a column says it.")] = None,
     species: Annotated[str | None, _option("--species", "SPECIES", "Of all rows; else a column says it.")] = None,
     phase: Phase = None,
@@ -68,6 +68,10 @@ def convert_table(
     overwrite: Annotated[bool, typer.Option("--overwrite", help="Replace an output that exists.")] = False,
     source: SourceKey = None,
     extrapolate: Extrapolate = False,
+    scheduler: Annotated[
+        str | None, _option("--scheduler", "ADDRESS", "Dask scheduler that shares out a directory of Parquet.")
+    ] = None,
+    workers: Annotated[int | None, _option("--workers", "N", "The same with N processes of this machine.")] = None,
 ) -> None:
     """Convert every enthalpy of a table to another datum, or compute them where it has no column of them.
 
@@ -103,6 +107,8 @@ def convert_table(
         overwrite=overwrite,
         source=source,
         extrapolate=extrapolate,
+        scheduler=scheduler,
+        workers=workers,
         progress=tell if shown else None,
     )
     if shown:

@@ -67,6 +67,14 @@ class Whole:
             raise cannot(self.target, error) from None
         return self
 
+    def clear(self) -> None:
+        """Empty the place, to write to it again."""
+        if self._directory:
+            shutil.rmtree(self.part)
+            self.part.mkdir()
+        else:
+            self.part.write_bytes(b"")
+
     def commit(self, *beside: tuple[Path, bytes]) -> None:
         """Move the output to its place, then write the small files that go with it."""
         try:

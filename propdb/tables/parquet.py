@@ -79,12 +79,11 @@ def convert_parquet(
     *,
     share: Callable[[float], float],
     file: str = "",
-    workers: Any = None,
+    overlap: bool = True,
 ) -> None:
     """Convert one file to ``out``.
 
-    ``workers(batches, plan)`` may give the converted batches instead, in order: that is how they are spread over
-    machines.
+    Without ``overlap`` everything happens in the thread of the caller, which is what a worker among many wants.
     """
     pa = arrow()
     pq = need("pyarrow.parquet", extra="tables", what="Parquet")
@@ -108,23 +107,25 @@ def convert_parquet(
         write_statistics=True,
         write_batch_size=1 << 13,
     )
-    batches = _ahead(given.iter_batches(batch_size=_BATCH, use_threads=False))
+    source = given.iter_batches(batch_size=_BATCH, use_threads=False)
+    batches = _Ahead(source) if overlap else None
     done = 0
 
     def converted() -> Iterator[Any]:
         nonlocal done
-        for batch in batches:
+        for batch in source if batches is None else batches:
             new, what = convert_arrow(batch, plan)
             tally.add(what.given, what.rows, what.verdicts, partial(_same, what.h), first=done + 1, file=file)
             done += batch.num_rows
             progress.step(batch.num_rows, share(done / total))
             yield new
 
-    behind = _Writer(writer)
+    behind = _Writer(writer) if overlap else None
     try:
-        for batch in converted() if workers is None else workers(batches, plan, tally, progress):
-            behind.write(batch)
-        behind.finish()
+        for batch in converted():
+            (writer.write_batch if behind is None else behind.write)(batch)
+        if behind is not None:
+            behind.finish()
         # what readers take for the types: those of the input, not of our dictionaries
         text = base64.b64encode(_serialized(whole))
         writer.add_key_value_metadata({"ARROW:schema": text.decode()})
@@ -136,8 +137,10 @@ def convert_parquet(
             raise unreadable(path, error) from None
         raise
     finally:
-        batches.close()
-        behind.stop()
+        if batches is not None:
+            batches.close()
+        if behind is not None:
+            behind.stop()
 
 
 def _same(h: Any) -> Any:
@@ -183,10 +186,6 @@ class _Ahead:
             while not self._queue.empty():
                 self._queue.get_nowait()
             self._thread.join(0.01)
-
-
-def _ahead(source: Iterator[Any]) -> _Ahead:
-    return _Ahead(source)
 
 
 class _Writer:

@@ -23,10 +23,15 @@ from propdb.tables.progress import Progress
 from propdb.tables.record import TableReport, data_of, dump, sidecar_path, summary
 from propdb.tables.scales import flow_unit, pressure_scale, temperature_unit
 from propdb.tables.streams import Streams, lines
+from propdb.tables.suggest import suggest
 from propdb.tables.tally import Tally
 from propdb.units import parse_unit
 
-__all__ = ["Request", "convert_table", "make_plan"]
+__all__ = ["SUGGEST", "Request", "convert_table", "make_plan"]
+
+#: Instead of a datum: find the one that serves best.
+SUGGEST = "suggest"
+_ANY = "elements-298K"  # to read a table once before its datum is chosen
 
 _KINDS = {".csv": "csv", ".tsv": "csv", ".tab": "csv", ".txt": "csv", ".parquet": "parquet", ".pq": "parquet"}
 _KINDS |= {".xlsx": "excel", ".xlsm": "excel"}
@@ -174,28 +179,44 @@ def convert_table(
             where=str(target),
             hint=f"a table keeps its format: end the name with {source.suffix}",
         )
+    if kind != "directory" and (request.scheduler is not None or request.workers is not None):
+        raise InvalidInput(
+            "several machines share a directory of Parquet, not one file",
+            where=str(source),
+            hint="leave --scheduler and --workers out, or split the table",
+        )
     progress = Progress(tell)
     with Whole(target, directory=kind == "directory") as whole:
-        if kind == "csv":
-            done = _delimited(oracle, request, source, whole.part, progress)
-        elif kind == "excel":
-            from propdb.tables.excel import convert_excel
-
-            done = convert_excel(oracle, request, source, whole.part, progress)
-        elif kind == "parquet":
-            done = _parquet(oracle, request, source, whole.part, progress)
-        else:
-            done = _directory(oracle, request, source, whole.part, progress)
+        suggestion = None
+        if request.settings.to == SUGGEST:
+            survey = replace(request, settings=replace(request.settings, to=_ANY), across=True)
+            suggestion = suggest(_once(kind, oracle, survey, source, whole.part, Progress(None)).tally)
+            request = replace(request, settings=replace(request.settings, to=suggestion.datum))
+            whole.clear()
+        done = _once(kind, oracle, request, source, whole.part, progress)
         plan, tally = done.plan, done.tally
+        if suggestion is not None:
+            done.notes.insert(0, str(suggestion))
         files = {
             "input": {"name": source.name, "sha256": done.read},
             "output": {"name": target.name, "sha256": done.written},
         }
         streams = None if tally.streams is None else tally.streams.summary()
         data = data_of(plan, tally, stamp=plan.stamp, files=files, notes=done.notes, streams=streams)
+        if suggestion is not None:
+            data["suggestion"] = suggestion.as_dict()
         whole.commit((sidecar_path(target), dump(data)))
     shown = summary(data, target, progress.seconds()) + ([] if streams is None else lines(streams))
     return TableReport(target, data, tuple(shown))
+
+
+def _once(kind: str, oracle: Oracle, request: Request, source: Path, part: Path, progress: Progress) -> Done:
+    if kind == "excel":
+        from propdb.tables.excel import convert_excel
+
+        return convert_excel(oracle, request, source, part, progress)
+    run = {"csv": _delimited, "parquet": _parquet, "directory": _directory}[kind]
+    return run(oracle, request, source, part, progress)
 
 
 def _tally(plan: Plan, request: Request) -> Tally:
@@ -250,17 +271,26 @@ def _directory(oracle: Oracle, request: Request, source: Path, part: Path, progr
     files = parquet_files(source)
     plan = _parquet_plan(oracle, request, files[0])
     tally = _tally(plan, request)
-    for place, file in enumerate(files):
-        name = file.relative_to(source)
+    for file in files[1:]:
         if tuple(open_parquet(file).schema_arrow.names) != plan.layout.names:
             raise InvalidInput(
-                f"its columns are not those of {files[0].name}", where=str(name), hint="convert it by itself"
+                f"its columns are not those of {files[0].name}", where=file.name, hint="convert it by itself"
             )
+    names = [file.relative_to(source).as_posix() for file in files]
+    if request.scheduler is not None or request.workers is not None:
+        if tally.streams is not None:
+            raise InvalidInput("streams are added up on one machine", hint="leave --scheduler and --workers out")
+        from propdb.tables.spread import spread
+
+        jobs = [(file, part / name, name) for file, name in zip(files, names, strict=True)]
+        spread(plan, jobs, tally, progress, scheduler=request.scheduler, workers=request.workers)
+        return Done(plan, tally, sha256_of(source), sha256_of(part), _notes(plan))
+    for place, (file, name) in enumerate(zip(files, names, strict=True)):
         (part / name).parent.mkdir(parents=True, exist_ok=True)
         with (part / name).open("wb") as raw:
             out = HashedWriter(raw)
             share = partial(_share, place, len(files))
-            convert_parquet(file, plan, out, tally, progress, share=share, file=name.as_posix())
+            convert_parquet(file, plan, out, tally, progress, share=share, file=name)
             out.close()
     return Done(plan, tally, sha256_of(source), sha256_of(part), _notes(plan))
 

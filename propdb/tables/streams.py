@@ -89,7 +89,7 @@ class Streams:
                 stream.mass += float(sums[2][code])
                 stream.rows += int(sums[3][code]) + int(lost_count[code])
                 stream.lost += int(lost_count[code])
-            self._by_species(rows, np.where(lost, 0.0, flows), sides, read)
+            self._by_species(rows, np.where(np.isnan(flows), 0.0, flows), sides, read)
             t = given.temperature
             if t is not None and not np.isnan(t).all():
                 self.low = min(self.low, float(np.nanmin(t)))
@@ -113,7 +113,7 @@ class Streams:
                 for number in np.flatnonzero(sums).tolist():
                     self.moles[(number, side)] += float(sums[number])
         vary = varies[numbers].any(axis=1)
-        terms = (flows * rows.standard)[vary & (flows != 0.0)]
+        terms = (flows * rows.standard)[vary & (flows != 0.0) & ~np.isnan(rows.value)]
         self.lacking |= bool(np.isnan(terms).any())
         self.square += float(np.nansum(terms**2))
 

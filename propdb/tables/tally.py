@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Iterable
 from dataclasses import dataclass, field
 from threading import Lock
 from typing import TYPE_CHECKING, Any
@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 import numpy as np
 from numpy.typing import NDArray
 
-from propdb.tables.kinds import BAD_ROW, EXTRAPOLATED, NO_DATA, OK
+from propdb.tables.kinds import BAD_ROW, EXTRAPOLATED, NO_DATA, OK, Key
 
 if TYPE_CHECKING:
     from propdb.tables.core import Given, Plan, Rows
@@ -71,6 +71,25 @@ class Tally:
                 self.samples.append(Sample(first + row, flag, reason, file))
             if len(self.samples) > 50 * _SAMPLES:
                 self._trim()
+
+    def merge(
+        self,
+        rows: int,
+        verdicts: Iterable[tuple[str, str, int]],
+        kinds: Iterable[tuple[Key, int]],
+        samples: Iterable[Sample],
+    ) -> None:
+        """Add what another plan counted."""
+        self.rows += rows
+        for flag, reason, times in verdicts:
+            number = self.plan.verdict(flag, reason)
+            self.verdicts[number] = self.verdicts.get(number, 0) + times
+        pairs = list(kinds)
+        numbers = self.plan.kinds_of([key for key, _ in pairs]).tolist() if pairs else []
+        for number, (_, times) in zip(numbers, pairs, strict=True):
+            self.kinds[number] = self.kinds.get(number, 0) + times
+        self.samples += samples
+        self._trim()
 
     def _trim(self) -> None:
         self.samples.sort(key=lambda s: (s.file, s.row))
