@@ -5,6 +5,7 @@ from __future__ import annotations
 import base64
 import threading
 from collections.abc import Callable, Iterator
+from contextlib import suppress
 from functools import partial
 from pathlib import Path
 from queue import Queue
@@ -141,6 +142,9 @@ def convert_parquet(
             batches.close()
         if behind is not None:
             behind.stop()
+        if writer.is_open:  # something went wrong: the file is thrown away
+            with suppress(Exception):
+                writer.close()
 
 
 def _same(h: Any) -> Any:

@@ -80,7 +80,7 @@ def _client(scheduler: str | None, workers: int) -> Iterator[Any]:
         return
     with (
         distributed.LocalCluster(
-            n_workers=workers, threads_per_worker=1, processes=True, dashboard_address=None, silence_logs=50
+            n_workers=workers, threads_per_worker=1, processes=True, dashboard_address=":0", silence_logs=50
         ) as cluster,
         distributed.Client(cluster) as client,
     ):
@@ -109,12 +109,10 @@ def spread(
             client.submit(_task, plan, stamp, str(a.absolute()), str(b.absolute()), name, pure=False, retries=0)
             for a, b, name in files
         ]
-        done = 0
-        for future in futures:
+        for done, future in enumerate(futures, start=1):
             counts = future.result()
             if isinstance(counts, PropdbError):
                 client.cancel(futures)
                 raise counts
-            done += 1
             tally.merge(counts.rows, counts.verdicts, counts.kinds, counts.samples)
             progress.step(counts.rows, done / len(files))

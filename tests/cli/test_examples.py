@@ -9,6 +9,7 @@ from pathlib import Path
 from typing import Any
 
 import pytest
+from table_samples import write_samples
 from verbs import commands
 
 from propdb.cli.main import VERBS
@@ -39,6 +40,9 @@ def test_example_runs(
     monkeypatch.setenv("PROPDB_STORE", str(own_store))
     if "my-datums.toml" in example:
         (tmp_path / "my-datums.toml").write_text(line("datum show own:g@50C --toml").out, encoding="utf-8")
+    if "convert-table" in example:
+        pytest.importorskip("pyarrow")
+        write_samples(tmp_path)
     result = line(*shlex.split(example))
     assert result.code == 0, result.err
     assert result.out or result.err
