@@ -123,6 +123,7 @@ class BlockWork:
         self.dialect = dialect
         self.digits = digits
         self.tally = tally
+        self.tails: tuple[int, Any] | None = None  # what ends the rows of each kind, for so many kinds
 
     def __call__(self, block: bytes, first: int) -> Part:
         from propdb.tables.careful import convert_rows

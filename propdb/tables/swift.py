@@ -26,8 +26,6 @@ class Refused(Exception):
 
 def convert_block(block: bytes, first: int, work: BlockWork) -> Part:
     """Convert a block. Raises Refused where it must be taken field by field."""
-    import pyarrow.compute as pc
-
     from propdb.tables.core import compute
 
     pa = arrow()
@@ -62,17 +60,17 @@ def convert_block(block: bytes, first: int, work: BlockWork) -> Part:
         new_text = _text(new, digits, work)
         if rows.constant:
             tail = _constant_tails(work, rows, verdicts, missing)
-            joined = pc.binary_join_element_wise(lines, new_text, tail, mark, **_BLANK)
+            joined = _join(lines, new_text, tail, mark)
         else:
             shift, uncertainty = _varying_cells(work, rows, digits, missing)
             ends = text_array([added_tail(work, v) for v in range(len(plan.verdicts))])
             tail = ends.take(number_array(verdicts, pa.int32()))
-            joined = pc.binary_join_element_wise(lines, new_text, uncertainty, shift, tail, mark, **_BLANK)
+            joined = _join(lines, new_text, uncertainty, shift, tail, mark)
     else:
         value, uncertainty = _varying_cells(work, rows, digits, None)
         ends = text_array([added_tail(work, v) for v in range(len(plan.verdicts))])
         tail = ends.take(number_array(verdicts, pa.int32()))
-        joined = pc.binary_join_element_wise(lines, value, uncertainty, tail, mark, **_BLANK)
+        joined = _join(lines, value, uncertainty, tail, mark)
         new = None
     work.tally.add(
         given, rows, verdicts, lambda: floats(new) if new is not None else rows.value / rows.scale, first=first
@@ -81,7 +79,17 @@ def convert_block(block: bytes, first: int, work: BlockWork) -> Part:
     return Part(count, [buffers[2], rest])
 
 
-_BLANK = {"null_handling": "replace", "null_replacement": ""}
+def _join(*columns: Any) -> Any:
+    """Join the cells of each row; the last argument is what stands between them."""
+    import pyarrow.compute as pc
+
+    return pc.binary_join_element_wise(*columns, null_handling="replace", null_replacement="", memory_pool=pool())
+
+
+def pool() -> Any:
+    """Where blocks are allocated: the system's allocator keeps what it gets back, so memory is not faulted in anew."""
+    return arrow().system_memory_pool()
+
 
 #: Columns that a shift which does not depend on T has no use for.
 _WHOLE = ("temperature", "pressure", "flow", "stream", "side", "vapour")
@@ -136,6 +144,7 @@ def _parse(block: bytes, work: BlockWork, whole: bool) -> Any:
                 block_size=len(block) + 1,
             ),
             parse_options=csv.ParseOptions(delimiter=work.dialect.delimiter, ignore_empty_lines=False),
+            memory_pool=pool(),
             convert_options=csv.ConvertOptions(
                 include_columns=list(types) or ["c0"],
                 column_types=types,
@@ -206,9 +215,9 @@ def _sum(h: Any, rows: Rows, plan: Plan, digits: Digits) -> Any:
     if rows.constant and rows.kinds is not None:
         _, value, _, scale, _, _ = plan.arrays()
         kinds = number_array(rows.kinds, arrow().int32())
-        return pc.add(h, _decimals(value / scale, digits.scale, np.isnan(value)).take(kinds))
+        return pc.add(h, _decimals(value / scale, digits.scale, np.isnan(value)).take(kinds), memory_pool=pool())
     values = rows.value / rows.scale
-    return pc.add(h, _decimals(values, digits.scale, np.isnan(values)))
+    return pc.add(h, _decimals(values, digits.scale, np.isnan(values)), memory_pool=pool())
 
 
 def _text(new: Any, digits: Digits, work: BlockWork) -> Any:
@@ -221,7 +230,7 @@ def _text(new: Any, digits: Digits, work: BlockWork) -> Any:
         there = valid(new)
         if (small if there is None else small & there).any():  # Arrow would write an exponent
             raise Refused
-    text = new.cast(pa.string())
+    text = new.cast(pa.string(), memory_pool=pool())
     if digits.ragged and digits.places:
         text = pc.ascii_rtrim(pc.ascii_rtrim(text, characters="0"), characters=".")
     if work.dialect.comma:
@@ -230,22 +239,29 @@ def _text(new: Any, digits: Digits, work: BlockWork) -> Any:
 
 
 def _constant_tails(work: BlockWork, rows: Rows, verdicts: NDArray[np.int32], missing: NDArray[np.bool_] | None) -> Any:
-    """Uncertainty, shift, flag and reason: one text for each kind of row, or for a row without an enthalpy."""
-    pa = arrow()
+    """Uncertainty, shift, flag and reason: one text for each kind of row, and one for rows without an enthalpy."""
+    number = work.plan.arrays()[0]
+    if work.tails is None or work.tails[0] != number:
+        work.tails = (number, text_array(_tail_texts(work)))
+    known, texts = work.tails
+    assert rows.kinds is not None
+    kinds = rows.kinds
+    if missing is not None:
+        kinds = np.where(missing, np.int32(known), kinds).astype(np.int32)
+    return texts.take(number_array(kinds, arrow().int32()))
+
+
+def _tail_texts(work: BlockWork) -> list[str | None]:
     plan, mark = work.plan, work.dialect.delimiter
     number, value, standard, scale, verdict, _ = plan.arrays()
-    texts = []
+    texts: list[str | None] = []
     for i in range(number):
         cells = ["", ""]
         if not math.isnan(value[i]):
             cells = [uncertainty_text(standard[i] / scale[i]), shift_text(value[i] / scale[i], work.digits)]
         texts.append(mark.join([*(localised(work, c) for c in cells), added_tail(work, verdict[i])]))
-    assert rows.kinds is not None
-    kinds = rows.kinds
-    if missing is not None:
-        texts.append(mark.join(["", "", added_tail(work, plan.verdict(BAD_ROW, "no enthalpy"))]))
-        kinds = np.where(missing, np.int32(number), kinds).astype(np.int32)
-    return text_array(texts).take(number_array(kinds, pa.int32()))
+    texts.append(mark.join(["", "", added_tail(work, plan.verdict(BAD_ROW, "no enthalpy"))]))
+    return texts
 
 
 def _varying_cells(work: BlockWork, rows: Rows, digits: Digits, missing: NDArray[np.bool_] | None) -> tuple[Any, Any]:
