@@ -16,6 +16,7 @@ from propdb.api.fuels import Fuels
 from propdb.api.intake import Intake
 from propdb.api.opening import build_seed, to_stderr
 from propdb.api.review import Review
+from propdb.api.tables import Tables
 from propdb.errors import StoreError
 from propdb.store.open import default_path
 from propdb.store.read import Reader
@@ -26,7 +27,7 @@ if TYPE_CHECKING:
 __all__ = ["Store", "open"]
 
 
-class Store(Enthalpies, Care, Review, Fuels, Intake):
+class Store(Enthalpies, Tables, Care, Review, Fuels, Intake):
     """One store file. Reading is lazy; every method opens what it needs. One per thread.
 
     Parameters

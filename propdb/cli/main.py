@@ -27,6 +27,8 @@ VERBS: Mapping[str, tuple[str, str]] = MappingProxyType(
         "show": ("propdb.cli.show", "Show every entry of a species with source, range and datum."),
         "enthalpy": ("propdb.cli.enthalpy", "Give the enthalpy of a state on a datum, step by step."),
         "convert": ("propdb.cli.convert", "Move a tabulated enthalpy from one datum to another."),
+        "convert-table": ("propdb.cli.convert_table", "Convert or compute the enthalpies of a whole table."),
+        "tabulate": ("propdb.cli.tabulate", "Tabulate enthalpy and heat capacity over temperature."),
         "reaction": ("propdb.cli.reaction", "Give the enthalpy of a reaction by two routes."),
         "datum": ("propdb.cli.datum", "List, show and add datums."),
         "source": ("propdb.cli.source", "List, show and cite sources."),

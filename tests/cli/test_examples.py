@@ -9,6 +9,7 @@ from pathlib import Path
 from typing import Any
 
 import pytest
+from table_samples import write_samples
 from verbs import commands
 
 from propdb.cli.main import VERBS
@@ -58,6 +59,9 @@ def test_example_runs(
     if "my-values.csv" in example:
         text = line("add --template csv").out.replace("\n# ethanol,", "\nethanol,")
         (tmp_path / "my-values.csv").write_text(text, encoding="utf-8")
+    if "convert-table" in example:
+        pytest.importorskip("pyarrow")
+        write_samples(tmp_path)
     result = line(*shlex.split(example))
     assert result.code == 0, result.err
     assert result.out or result.err

@@ -1,0 +1,134 @@
+"""Rows that carry a composition: the shift is the sum of x_i (Z_A,i - Z_B,i); a mixing enthalpy stays untouched."""
+
+from __future__ import annotations
+
+import math
+from typing import TYPE_CHECKING
+
+import numpy as np
+from numpy.typing import NDArray
+
+from propdb.errors import InvalidInput
+from propdb.tables.kinds import BAD_ROW, EXTRAPOLATED, OK, Key
+
+if TYPE_CHECKING:
+    from propdb.tables.core import Given, Plan, Rows
+
+__all__ = ["amounts", "check_components", "mixture_rows"]
+
+#: Fractions that sum to one within this are rounded, and are divided by their sum [1].
+ROUNDING = 0.002
+
+
+def check_components(plan: Plan) -> None:
+    """Refuse compositions that mix amount and mass, and a dry basis without sense. Raises InvalidInput."""
+    components = plan.layout.components
+    if len({c.mass for c in components}) > 1:
+        raise InvalidInput("composition columns by amount (x) and by mass (w)", hint="give one kind")
+
+
+def amounts(
+    plan: Plan, given: Given, rows: NDArray[np.intp], molar: NDArray[np.float64]
+) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Amount fractions of some rows, and what the fractions sum to as given (NaN: one is negative).
+
+    ``molar`` are the molar masses of the components [kg/mol].
+    """
+    components = plan.layout.components
+    assert given.fractions is not None
+    given_x = given.fractions[rows] * np.array([c.scale for c in components])
+    x = np.where(np.isnan(given_x), 0.0, given_x)  # an empty cell is none of it
+    wet = np.array([plan.settings.dry and c.species.strip().lower() in ("water", "h2o") for c in components])
+    total = x[:, ~wet].sum(axis=1)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        if wet.any():
+            water = x[:, wet].sum(axis=1)
+            x = np.where(wet, x, x / total[:, None] * (1.0 - water)[:, None])
+        else:
+            x = x / total[:, None]
+        if components[0].mass:
+            x = x / molar
+            x = x / x.sum(axis=1)[:, None]
+    return x, np.where((given_x < 0.0).any(axis=1), math.nan, total)
+
+
+def mixture_rows(plan: Plan, given: Given) -> Rows:
+    """See :func:`propdb.tables.core.compute`, for rows with a composition."""
+    from propdb.tables.core import Rows
+
+    components = plan.layout.components
+    places, keys = plan.number(given, "*")
+    size = given.rows
+    value, standard = np.full(size, math.nan), np.full(size, math.nan)
+    scale = np.full(size, plan.settings.unit.factor)
+    verdicts = np.zeros(size, np.int32)
+    fractions = np.zeros((size, len(components)))
+    kinds = np.zeros((size, len(components)), np.int32)
+    for place, key in enumerate(keys):
+        rows = np.flatnonzero(places == place)
+        numbers = plan.kinds_of([Key(c.species, key.datum, key.phase, key.form) for c in components])
+        species = [plan.kinds[n].species for n in numbers]
+        molar = np.array([1.0 if s is None else s.molar_mass for s in species])
+        x, total = amounts(plan, given, rows, molar)
+        good = np.abs(total - 1.0) <= ROUNDING
+        for row, sum_ in zip(rows[~good][:1000].tolist(), total[~good].tolist(), strict=False):
+            shown = "a negative fraction" if math.isnan(sum_) else f"the fractions sum to {sum_:.4g}, not to 1"
+            verdicts[row] = plan.verdict(BAD_ROW, shown)
+        if np.count_nonzero(~good) > 1000:
+            verdicts[rows[~good][1000:]] = plan.verdict(BAD_ROW, "the fractions do not sum to 1")
+        kinds[rows] = numbers
+        rows, x = rows[good], x[good]
+        fractions[rows] = x
+        if plan.settings.unit.basis == "mass":
+            scale[rows] *= x @ molar
+        value[rows], standard[rows], verdicts[rows] = _sum(plan, given, rows, x, numbers)
+    return Rows(value, standard, scale, verdicts, None, False, (fractions, kinds))
+
+
+def _sum(
+    plan: Plan, given: Given, rows: NDArray[np.intp], x: NDArray[np.float64], numbers: NDArray[np.int32]
+) -> tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.int32]]:
+    """Values, standard uncertainties [J/mol] and verdicts of rows of one key.
+
+    Sensitivities of components whose shift is constant are added entry by entry, so what two components share is
+    fully correlated; components that vary with T are taken as independent.
+    """
+    from propdb.tables.core import vary
+
+    _, all_value, all_standard, _, all_verdict, varies = plan.arrays()
+    size, count = len(rows), len(numbers)
+    value, square = np.zeros(size), np.zeros(size)
+    lacking = np.zeros(size, np.bool_)
+    verdicts = np.zeros(size, np.int32)
+    entries: dict[str, NDArray[np.float64]] = {}
+    for place, number in enumerate(numbers.tolist()):
+        present = x[:, place] > 0.0
+        if varies[number]:
+            whole = [np.full(given.rows, math.nan), np.full(given.rows, math.nan)]
+            verdict = np.zeros(given.rows, np.int32)
+            kinds = np.full(given.rows, -1, np.int32)
+            kinds[rows] = number
+            vary(plan, given, kinds, np.array([number], np.int32), whole[0], whole[1], verdict)
+            mine, standards, verdict = whole[0][rows], whole[1][rows], verdict[rows]
+            square += np.where(present, x[:, place] * np.nan_to_num(standards), 0.0) ** 2
+        else:
+            mine = np.full(size, all_value[number])
+            standards = np.full(size, all_standard[number])
+            verdict = np.full(size, all_verdict[number], np.int32)
+            for part in plan.kinds[number].parts:
+                if part.stated:
+                    vector = entries.setdefault(part.entry, np.zeros(count))
+                    vector[place] += part.coefficient * part.standard
+        value += np.where(present, x[:, place] * mine, 0.0)
+        lacking |= present & np.isnan(standards)
+        verdicts = _worse(plan, verdicts, np.where(present, verdict, 0).astype(np.int32))
+    for vector in entries.values():
+        square += (x @ vector) ** 2
+    return value, np.where(lacking, math.nan, np.sqrt(square)), verdicts
+
+
+def _worse(plan: Plan, old: NDArray[np.int32], new: NDArray[np.int32]) -> NDArray[np.int32]:
+    """The worse of two verdicts of each row: no data and bad rows before extrapolated before ok."""
+    order = (OK, EXTRAPOLATED)
+    ranks = np.array([order.index(flag) if flag in order else 2 for flag, _ in plan.verdicts])
+    return np.where(ranks[new] > ranks[old], new, old).astype(np.int32)

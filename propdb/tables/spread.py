@@ -1,0 +1,118 @@
+"""A directory of Parquet over several processes or machines, with Dask: each task converts one file.
+
+A thin wrapper: a task opens the store where it runs, and calls what one machine calls. Workers need the files and the
+store under the same paths, and the same content in the store.
+"""
+
+from __future__ import annotations
+
+import contextlib
+from collections.abc import Iterator, Sequence
+from pathlib import Path
+from typing import Any, NamedTuple
+
+from propdb.errors import IntegrityError, PropdbError
+from propdb.tables.core import Plan
+from propdb.tables.extras import need
+from propdb.tables.kinds import Key
+from propdb.tables.progress import Progress
+from propdb.tables.tally import Sample, Tally
+
+__all__ = ["Counts", "convert_file", "spread"]
+
+
+class Counts(NamedTuple):
+    """What one file came to, without reference to the plan that counted it."""
+
+    rows: int
+    verdicts: list[tuple[str, str, int]]  # flag, reason, rows
+    kinds: list[tuple[Key, int]]
+    samples: list[Sample]
+
+
+def convert_file(plan: Plan, stamp: str, source: str, target: str, name: str) -> Counts:
+    """Convert one Parquet file; what a worker runs.
+
+    Raises
+    ------
+    IntegrityError
+        The store of the worker is not that of the plan.
+    """
+    from propdb.tables.output import HashedWriter
+    from propdb.tables.parquet import convert_parquet
+
+    if plan.stamp != stamp:
+        raise IntegrityError(
+            f"the store of a worker holds {plan.stamp}, that of the run {stamp}", hint="copy one store to all machines"
+        )
+    tally = Tally(plan)
+    place = Path(target)
+    place.parent.mkdir(parents=True, exist_ok=True)
+    with place.open("wb") as raw:
+        out = HashedWriter(raw)
+        convert_parquet(Path(source), plan, out, tally, Progress(None), share=float, file=name, overlap=False)
+        out.close()
+    verdicts = [(*plan.verdicts[n], times) for n, times in tally.verdicts.items()]
+    kinds = [(plan.kinds[n].key, times) for n, times in tally.kinds.items()]
+    return Counts(tally.rows, verdicts, kinds, tally.first_samples())
+
+
+def _task(plan: Plan, stamp: str, source: str, target: str, name: str) -> Counts | PropdbError:
+    try:
+        return convert_file(plan, stamp, source, target, name)
+    except PropdbError as error:  # as a value: Dask would retry an exception, and print it
+        return error
+    finally:
+        plan.oracle.close()
+
+
+@contextlib.contextmanager
+def _client(scheduler: str | None, workers: int) -> Iterator[Any]:
+    distributed = need("distributed", extra="dask", what="work on several machines")
+    if scheduler is not None:
+        try:
+            client = distributed.Client(scheduler, timeout="10s")
+        except (OSError, TimeoutError, ValueError) as error:
+            why = " ".join(str(error).split())[:120]
+            raise PropdbError(f"no scheduler answers: {why}", where=scheduler, hint="e.g. tcp://host:8786") from None
+        with client:
+            yield client
+        return
+    with (
+        distributed.LocalCluster(
+            n_workers=workers, threads_per_worker=1, processes=True, dashboard_address=":0", silence_logs=50
+        ) as cluster,
+        distributed.Client(cluster) as client,
+    ):
+        yield client
+
+
+def spread(
+    plan: Plan,
+    files: Sequence[tuple[Path, Path, str]],
+    tally: Tally,
+    progress: Progress,
+    *,
+    scheduler: str | None,
+    workers: int | None,
+) -> None:
+    """Convert files, each (input, output, name), on a cluster; a local one of ``workers`` without a ``scheduler``.
+
+    Raises
+    ------
+    PropdbError
+        What went wrong in a worker, or no scheduler at the address, or Dask is not installed.
+    """
+    stamp = plan.stamp
+    with _client(scheduler, workers or 2) as client:
+        futures = [
+            client.submit(_task, plan, stamp, str(a.absolute()), str(b.absolute()), name, pure=False, retries=0)
+            for a, b, name in files
+        ]
+        for done, future in enumerate(futures, start=1):
+            counts = future.result()
+            if isinstance(counts, PropdbError):
+                client.cancel(futures)
+                raise counts
+            tally.merge(counts.rows, counts.verdicts, counts.kinds, counts.samples)
+            progress.step(counts.rows, done / len(files))

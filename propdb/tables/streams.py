@@ -1,0 +1,281 @@
+"""Streams: enthalpy flows, their total, and the duty between inlets and outlets."""
+
+from __future__ import annotations
+
+import math
+from collections import defaultdict
+from dataclasses import dataclass, field
+from threading import Lock
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from propdb.datum import may_sum
+from propdb.errors import DatumMismatch
+from propdb.levels.parts import add_parts, combined
+from propdb.model.records import Part
+from propdb.tables.scales import flow_unit
+
+if TYPE_CHECKING:
+    from propdb.tables.core import Given, Plan, Rows
+
+__all__ = ["IN", "OUT", "Streams", "flows_of", "reaction_between"]
+
+IN, OUT = "in", "out"
+_SIDES = {
+    **dict.fromkeys(("in", "inlet", "input", "feed", "i"), IN),
+    **dict.fromkeys(("out", "outlet", "output", "product", "o"), OUT),
+}
+#: A species whose flow differs by more than this between inlets and outlets has reacted [1].
+REACTED = 1e-3
+
+
+@dataclass
+class _Stream:
+    name: str
+    side: str
+    watts: float = 0.0
+    moles: float = 0.0  # [mol/s]
+    mass: float = 0.0  # [kg/s]
+    rows: int = 0
+    lost: int = 0  # rows without an enthalpy or a flow
+
+
+@dataclass
+class Streams:
+    """Sums over all batches of a run.
+
+    Parameters
+    ----------
+    plan : Plan
+        A table with a flow column.
+    across : bool
+        Sum across a reaction whatever the datum.
+    """
+
+    plan: Plan
+    across: bool = False
+    found: dict[tuple[str, str], _Stream] = field(default_factory=dict)
+    moles: dict[tuple[int, str], float] = field(default_factory=lambda: defaultdict(float))
+    square: float = 0.0  # variance of the duty from rows that vary with T [W^2]
+    lacking: bool = False
+    low: float = math.inf  # of the temperatures [K]
+    high: float = -math.inf
+    _lock: Lock = field(default_factory=Lock)
+
+    def add(self, given: Given, rows: Rows, h: NDArray[np.float64]) -> None:
+        """Add a batch; ``h`` on the datum wanted [the table's unit]."""
+        flows, molar = flows_of(self.plan, given, rows)
+        watts = flows * molar_enthalpy(self.plan, rows, h)
+        lost = np.isnan(watts)
+        names, name_texts = _texts(given, "stream", "all")
+        sides, side_texts = _texts(given, "side", "")
+        read = [_SIDES.get(text.strip().lower(), text.strip().lower()) for text in side_texts]
+        codes = names * len(side_texts) + sides
+        size = len(name_texts) * len(side_texts)
+        sums = [
+            np.bincount(codes, weights=np.where(lost, 0.0, w), minlength=size)
+            for w in (watts, flows, flows * molar, np.ones(given.rows), lost)
+        ]
+        lost_count = np.bincount(codes, weights=lost, minlength=size)
+        with self._lock:
+            for code in np.flatnonzero(np.bincount(codes, minlength=size)).tolist():
+                name, side = divmod(code, len(side_texts))
+                key = (name_texts[name].strip(), read[side])
+                stream = self.found.setdefault(key, _Stream(*key))
+                stream.watts += float(sums[0][code])
+                stream.moles += float(sums[1][code])
+                stream.mass += float(sums[2][code])
+                stream.rows += int(sums[3][code]) + int(lost_count[code])
+                stream.lost += int(lost_count[code])
+            self._by_species(rows, np.where(np.isnan(flows), 0.0, flows), sides, read)
+            t = given.temperature
+            if t is not None and not np.isnan(t).all():
+                self.low = min(self.low, float(np.nanmin(t)))
+                self.high = max(self.high, float(np.nanmax(t)))
+
+    def _by_species(self, rows: Rows, flows: NDArray[np.float64], sides: NDArray[np.int32], read: list[str]) -> None:
+        """Amounts by kind of row and side, and what cannot be followed entry by entry."""
+        varies = self.plan.arrays()[5]
+        if rows.mix is not None:
+            x, numbers = rows.mix
+        else:
+            assert rows.kinds is not None
+            x, numbers = np.ones((len(flows), 1)), rows.kinds[:, None]
+        for place, side in enumerate(read):
+            here = sides == place
+            if not here.any():
+                continue
+            for column in range(x.shape[1]):
+                weights = flows[here] * x[here, column]
+                sums = np.bincount(numbers[here, column], weights=weights)
+                for number in np.flatnonzero(sums).tolist():
+                    self.moles[(number, side)] += float(sums[number])
+        vary = varies[numbers].any(axis=1)
+        terms = (flows * rows.standard)[vary & (flows != 0.0) & ~np.isnan(rows.value)]
+        self.lacking |= bool(np.isnan(terms).any())
+        self.square += float(np.nansum(terms**2))
+
+    # -- results --------------------------------------------------------------------------------------------------
+
+    def summary(self) -> dict[str, Any]:
+        """Enthalpy flow of each stream, their totals and the duty [kW].
+
+        Raises
+        ------
+        DatumMismatch
+            A datum on which these enthalpies may not be summed, unless that was asked for.
+        """
+        plan = self.plan
+        datum = plan.oracle.ask(lambda basis: basis.datum(plan.settings.to))
+        temperatures = [self.low, self.high] if self.low <= self.high else None
+        verdict = may_sum(datum, temperatures=temperatures)
+        per_side: dict[str, dict[str, float]] = {IN: defaultdict(float), OUT: defaultdict(float)}
+        for (number, side), moles in self.moles.items():
+            species = plan.kinds[number].species
+            if species is not None and side in per_side:
+                per_side[side][species.name] += moles
+        both = bool(per_side[IN]) and bool(per_side[OUT])
+        changed = reaction_between(per_side[IN], per_side[OUT]) if both else []
+        notes = []
+        if both and changed and not verdict.reaction:
+            if not self.across:
+                raise DatumMismatch(
+                    f"species in and out differ ({', '.join(changed[:4])}): there is a reaction, and {verdict.why}",
+                    hint="convert --to elements-298K or a basis datum; --across sums all the same",
+                )
+            notes.append(f"summed across a reaction on request; {verdict.why}")
+        elif not verdict.streams and not self.across:
+            raise DatumMismatch(verdict.why, hint="convert --to elements-298K; --across sums all the same")
+        totals = {side: sum(s.watts for s in self.found.values() if s.side == side) for side in (IN, OUT)}
+        lost = sum(s.lost for s in self.found.values())
+        if lost:
+            notes.append(f"{lost} rows without an enthalpy or a flow are left out, so totals and duty are incomplete")
+        if changed:
+            notes.append(f"a reaction: {', '.join(changed[:8])} differ between inlets and outlets")
+            notes += self._unbalanced(per_side)
+        found: dict[str, Any] = {
+            "datum": plan.settings.to,
+            "may_sum": verdict.why,
+            "streams": [
+                {
+                    "stream": s.name,
+                    "side": s.side or None,
+                    "enthalpy_flow": s.watts / 1e3,
+                    "flow_amount": s.moles,
+                    "flow_mass": s.mass,
+                    "rows": s.rows,
+                    "rows_left_out": s.lost,
+                }
+                for s in self.found.values()
+            ],
+            "units": {"enthalpy_flow": "kW", "flow_amount": "mol/s", "flow_mass": "kg/s", "duty": "kW"},
+            "total": sum(s.watts for s in self.found.values()) / 1e3,
+            "reaction": bool(changed),
+            "notes": notes,
+        }
+        if both:
+            standard, missing = self._duty_uncertainty()
+            found |= {
+                "total_in": totals[IN] / 1e3,
+                "total_out": totals[OUT] / 1e3,
+                "duty": (totals[OUT] - totals[IN]) / 1e3,
+                "duty_uncertainty": None if missing else standard / 1e3,
+                "duty_uncertainty_note": "standard, from the data alone; the uncertainty of the given enthalpies is "
+                "not in it"
+                if not missing
+                else f"not stated by {', '.join(missing[:4])}; the other entries make {standard / 1e3:.3g} kW",
+            }
+        return found
+
+    def _duty_uncertainty(self) -> tuple[float, list[str]]:
+        parts: list[Part] = []
+        for (number, side), moles in self.moles.items():
+            sign = {IN: -1.0, OUT: 1.0}.get(side, 0.0)
+            parts += [
+                Part(p.entry, p.coefficient * sign * moles, p.standard, p.stated)
+                for p in self.plan.kinds[number].parts
+                if sign
+            ]
+        standard, missing = combined(add_parts(parts))
+        names = [i[:8] for i in missing] + (["an entry of an evaluated row"] if self.lacking else [])
+        return math.hypot(standard, math.sqrt(self.square)), names
+
+    def _unbalanced(self, per_side: dict[str, dict[str, float]]) -> list[str]:
+        """Elements whose flows differ between inlets and outlets."""
+        composition = {k.species.name: k.species.composition for k in self.plan.kinds if k.species is not None}
+        flows: dict[str, dict[str, float]] = {IN: defaultdict(float), OUT: defaultdict(float)}
+        for side, species in per_side.items():
+            for name, moles in species.items():
+                for element, count in composition[name]:
+                    flows[side][element] += moles * float(count)
+        off = [
+            f"{element} {flows[IN][element]:.5g} in, {flows[OUT][element]:.5g} out mol/s"
+            for element in sorted({*flows[IN], *flows[OUT]})
+            if abs(flows[IN][element] - flows[OUT][element]) > REACTED * max(flows[IN][element], flows[OUT][element])
+        ]
+        return [f"the elements do not balance: {'; '.join(off)}"] if off else []
+
+
+def reaction_between(inlets: dict[str, float], outlets: dict[str, float]) -> list[str]:
+    """Species whose flows [mol/s] differ between inlets and outlets."""
+    biggest = max((*inlets.values(), *outlets.values()), default=0.0)
+    return [
+        name
+        for name in dict.fromkeys((*inlets, *outlets))
+        if abs(inlets.get(name, 0.0) - outlets.get(name, 0.0))
+        > REACTED * max(inlets.get(name, 0.0), outlets.get(name, 0.0), 1e-3 * biggest)
+    ]
+
+
+def flows_of(plan: Plan, given: Given, rows: Rows) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Amount flows [mol/s] and molar masses [kg/mol] of rows."""
+    column = plan.layout.get("flow")
+    assert column is not None
+    assert given.flow is not None
+    unit = flow_unit(column.unit, column.name)
+    if rows.mix is not None:
+        x, numbers = rows.mix
+        molar = (x * _molar(plan)[numbers]).sum(axis=1)
+    else:
+        assert rows.kinds is not None
+        molar = _molar(plan)[rows.kinds]
+    flows = given.flow * unit.factor
+    return (flows / molar if unit.mass else flows), molar
+
+
+def _molar(plan: Plan) -> NDArray[np.float64]:
+    return np.array([math.nan if k.species is None else k.species.molar_mass for k in plan.kinds])
+
+
+def molar_enthalpy(plan: Plan, rows: Rows, h: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Enthalpies in J/mol, from the table's unit."""
+    found: NDArray[np.float64] = h * rows.scale
+    return found
+
+
+def _texts(given: Given, role: str, none: str) -> tuple[NDArray[np.int32], list[str]]:
+    if role not in given.keys:
+        return np.zeros(given.rows, np.int32), [none]
+    codes, texts = given.keys[role]
+    return codes, [none if text is None else text for text in texts]
+
+
+def lines(found: dict[str, Any]) -> list[str]:
+    """The summary for a person."""
+    shown = [f"enthalpy flows on {found['datum']}:"]
+    width = max((len(s["stream"]) for s in found["streams"]), default=0)
+    shown += [
+        f"  {s['stream'].ljust(width)}  {(s['side'] or ''):4}{s['enthalpy_flow']:14.3f} kW" for s in found["streams"]
+    ]
+    if "duty" in found:
+        uncertainty = found["duty_uncertainty"]
+        size = f" ± {uncertainty:.2g} (standard)" if uncertainty is not None else ""
+        shown += [f"  in {found['total_in']:.3f} kW, out {found['total_out']:.3f} kW"]
+        shown += [f"  duty (out less in) {found['duty']:.3f}{size} kW"]
+        if uncertainty is None:
+            shown += [f"  its uncertainty is {found['duty_uncertainty_note']}"]
+    else:
+        shown += [f"  total {found['total']:.3f} kW"]
+    return shown + [f"  {note}" for note in found["notes"]]

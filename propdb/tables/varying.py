@@ -1,0 +1,376 @@
+"""Shifts and enthalpies as functions of temperature, for many rows at once.
+
+The temperature axis is cut into cells, in each of which every member (an element at the temperature of the state, the
+state itself) moves along one equation. At one temperature of a cell the levels give the value; from there the
+equations' own integrals lead to each row, so a row costs two evaluations per member and agrees with the scalar answer
+to rounding. Cells where a state does not move along an equation (water's formulation, a liquid above its boiling
+point, a pinned table) ask the levels for each distinct temperature.
+"""
+
+from __future__ import annotations
+
+import math
+from bisect import bisect_left
+from collections.abc import Callable, Mapping, Sequence
+from dataclasses import dataclass, field
+from functools import partial
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from propdb.errors import PropdbError
+from propdb.levels.curves import BOILING_SLACK, PRINTED_SLACK, Curve
+from propdb.levels.engine import Levels
+from propdb.levels.states import MELTING_SLACK
+from propdb.model.records import SAME_T, T_STANDARD, Datum, Species, State
+from propdb.tables.kinds import EXTRAPOLATED, NO_DATA, OK, Point, enthalpy_at, out_of_range, shift_at
+from propdb.tables.oracle import Basis
+
+__all__ = ["Shared", "Varying", "vary_enthalpy", "vary_shift"]
+
+FloatArray = NDArray[np.float64]
+
+#: Uncertainties are computed every so many kelvin and interpolated between [K].
+GRID = 50.0
+_MEMORY = 100_000
+
+
+class Shared:
+    """Integrals of equations over the temperatures of one batch: an element serves many species.
+
+    Parameters
+    ----------
+    temperatures : ndarray
+        Of the whole batch, each a temperature [K].
+    users : mapping
+        How many kinds of rows use an equation, by its id; the few that fewer than three use are evaluated for the
+        rows that need them only. Decides the speed and nothing else.
+    """
+
+    def __init__(self, temperatures: FloatArray, users: Mapping[int, int]) -> None:
+        self.temperatures = temperatures
+        self.users = users
+        self._found: dict[int, FloatArray] = {}
+
+    def h(self, equation: Any, rows: NDArray[np.intp], mine: FloatArray) -> FloatArray:
+        """Antiderivative of cp [J/mol] at ``rows``, whose temperatures are ``mine`` [K]."""
+        key = id(equation)
+        if self.users.get(key, 0) < 3 or len(rows) == len(self.temperatures):
+            found: FloatArray = equation.h(mine)
+            return found
+        if key not in self._found:
+            self._found[key] = equation.h(self.temperatures)
+        return self._found[key][rows]
+
+
+@dataclass
+class _Cell:
+    low: float
+    high: float
+    members: tuple[tuple[float, Any], ...] | None  # (coefficient, equation); None: ask for each temperature
+    ready: bool = False
+    flag: str = OK
+    reason: str = ""
+    base: float = math.nan  # value less the members' own antiderivatives [J/mol]
+    grid: dict[int, float] = field(default_factory=dict)
+    only: tuple[float, ...] | None = None  # the few temperatures that are known, where there is no heat capacity [K]
+
+    def middle(self) -> float:
+        """The temperature at which the levels are asked [K]: the same whichever row comes first."""
+        if self.low < T_STANDARD < self.high:
+            return T_STANDARD
+        if math.isinf(self.high):
+            return self.low + 1.0
+        return 0.5 * (self.low + self.high) if self.low > 0.0 else 0.9 * self.high
+
+
+class Varying:
+    """A function of T for one kind of row.
+
+    Parameters
+    ----------
+    ask : callable
+        ``ask(temperature [K] or None, pressure [Pa] or None) -> Point``; must be called in the oracle's thread.
+    cells : sequence
+        Going up in temperature, without gaps.
+    """
+
+    def __init__(self, ask: Callable[[float | None, float | None], Point], cells: Sequence[_Cell]) -> None:
+        self._ask = ask
+        self.cells = list(cells)
+        self._ends = [cell.high for cell in self.cells]
+        self._memory: dict[tuple[float, float], tuple[float, float, str, str]] = {}
+        self.entries: dict[str, None] = {}
+        self.sources: dict[str, Any] = {}
+        self.sample: Point | None = None
+
+    def equations(self) -> set[int]:
+        """Ids of the equations it uses."""
+        return {id(equation) for cell in self.cells for _, equation in cell.members or ()}
+
+    def at(
+        self,
+        rows: NDArray[np.intp],
+        temperatures: FloatArray,
+        pressures: FloatArray | None,
+        shared: Shared,
+        run: Callable[[Callable[[], Any]], Any],
+        verdict: Callable[[str, str], int],
+    ) -> tuple[FloatArray, FloatArray, NDArray[np.int32]]:
+        """Values and standard uncertainties [J/mol] and verdicts of some rows.
+
+        Parameters
+        ----------
+        rows : ndarray
+            Places in the batch.
+        temperatures : ndarray
+            Of those rows [K]; NaN where the pressure decides.
+        pressures : ndarray, optional
+            Of those rows [Pa].
+        shared : Shared
+            Integrals over the whole batch.
+        run : callable
+            Runs a function in the oracle's thread.
+        verdict : callable
+            ``verdict(flag, reason) -> number``.
+        """
+        size = len(rows)
+        value, standard = np.full(size, np.nan), np.full(size, np.nan)
+        verdicts = np.zeros(size, np.int32)
+        cells = np.searchsorted(np.asarray(self._ends[:-1]), temperatures, side="left") if len(self.cells) > 1 else None
+        first, last = (0, 0) if cells is None or not size else (int(cells.min()), int(cells.max()))
+        for number in range(first, last + 1):
+            cell = self.cells[number]
+            whole = first == last
+            mine = slice(None) if whole else np.flatnonzero(cells == number)
+            t = temperatures[mine]
+            if not len(t):
+                continue
+            p = None if pressures is None else pressures[mine]
+            if cell.only is not None and not np.isin(t, cell.only).any():
+                if not cell.ready:
+                    run(partial(self._prepare, cell))
+                verdicts[mine] = verdict(NO_DATA, cell.reason)
+                continue
+            if cell.members is None:
+                value[mine], standard[mine], verdicts[mine] = self._each(t, p, run, verdict)
+                continue
+            if not cell.ready:
+                run(partial(self._prepare, cell))
+            verdicts[mine] = verdict(cell.flag, cell.reason)
+            if cell.flag == NO_DATA:
+                continue
+            here = rows[mine]
+            total = np.full(len(t), cell.base)
+            for coefficient, equation in cell.members:
+                h = shared.h(equation, here, t)
+                if coefficient == 1.0:
+                    total += h
+                elif coefficient == -1.0:
+                    total -= h
+                else:
+                    total += coefficient * h
+            value[mine] = total
+            standard[mine] = self._standard(cell, t, run)
+        return value, standard, verdicts
+
+    def _prepare(self, cell: _Cell) -> None:
+        t = cell.middle()
+        try:
+            point = self._ask(t, None)
+        except PropdbError as error:
+            cell.flag, cell.reason = NO_DATA, out_of_range(error)
+        else:
+            self._note(point)
+            if point.extrapolated:
+                cell.flag = EXTRAPOLATED
+                cell.reason = next((w for w in point.warnings if "extrapolated" in w), "extrapolated")
+            cell.base = point.value - sum(c * float(e.h(t)) for c, e in cell.members or ())
+            if math.isnan(point.standard):
+                cell.grid[-1] = math.nan  # nothing to interpolate
+        cell.ready = True
+
+    def _note(self, point: Point) -> None:
+        self.sample = self.sample or point
+        self.entries.update(dict.fromkeys(point.entries))
+        self.sources.update(point.sources)
+
+    def _standard(self, cell: _Cell, t: FloatArray, run: Callable[[Callable[[], Any]], Any]) -> FloatArray | float:
+        if -1 in cell.grid:
+            return math.nan
+        low, high = int(t.min() // GRID), int(t.max() // GRID) + 1
+        missing = [k for k in range(low, high + 1) if k not in cell.grid]
+        if missing:
+            run(lambda: self._fill(cell, missing))
+        nodes = [min(max(k * GRID, cell.low + 1e-6), cell.high - 1e-6) for k in range(low, high + 1)]
+        return np.interp(t, nodes, [cell.grid[k] for k in range(low, high + 1)])
+
+    def _fill(self, cell: _Cell, nodes: Sequence[int]) -> None:
+        for k in nodes:
+            t = min(max(k * GRID, cell.low + 1e-6), cell.high - 1e-6)
+            try:
+                cell.grid[k] = self._ask(t, None).standard
+            except PropdbError:
+                cell.grid[k] = math.nan
+
+    def _each(
+        self,
+        t: FloatArray,
+        p: FloatArray | None,
+        run: Callable[[Callable[[], Any]], Any],
+        verdict: Callable[[str, str], int],
+    ) -> tuple[FloatArray, FloatArray, NDArray[np.int32]]:
+        pairs = list(zip(t.tolist(), [math.nan] * len(t) if p is None else p.tolist(), strict=True))
+        memory = self._memory
+        wanted = [pair for pair in dict.fromkeys(map(_hashable, pairs)) if pair not in memory]
+        if len(memory) + len(wanted) > _MEMORY:
+            memory.clear()
+            wanted = list(dict.fromkeys(map(_hashable, pairs)))
+        if wanted:
+            run(lambda: self._look(wanted))
+        found = [memory[_hashable(pair)] for pair in pairs]
+        return (
+            np.array([f[0] for f in found]),
+            np.array([f[1] for f in found]),
+            np.array([verdict(f[2], f[3]) for f in found], np.int32),
+        )
+
+    def _look(self, wanted: Sequence[tuple[float, float]]) -> None:
+        for t, p in wanted:
+            try:
+                point = self._ask(None if t < 0 else t, None if p < 0 else p)
+            except PropdbError as error:
+                self._memory[(t, p)] = (math.nan, math.nan, NO_DATA, out_of_range(error))
+                continue
+            self._note(point)
+            flag = EXTRAPOLATED if point.extrapolated else OK
+            reason = next((w for w in point.warnings if "extrapolated" in w), "") if point.extrapolated else ""
+            self._memory[(t, p)] = (point.value, point.standard, flag, reason)
+
+
+def _hashable(pair: tuple[float, float]) -> tuple[float, float]:
+    """NaN is not equal to itself, so a missing number is -1 as a key."""
+    t, p = pair
+    return (-1.0 if t != t else t, -1.0 if p != p else p)
+
+
+def vary_shift(basis: Basis, species: Species, source: Datum, target: Datum, *, phase: str) -> Varying:
+    """The shift between two datums of which one, or both, has its zero at the temperature of the state."""
+    levels = basis.levels
+
+    def ask(t: float | None, _: float | None) -> Point:
+        return shift_at(levels, species, source, target, phase=phase, temperature=t)
+
+    signed = [(sign, d) for sign, d in ((1.0, source), (-1.0, target)) if d.temperature == SAME_T]
+    return Varying(ask, _cells(levels, species, signed, phase=phase, own=None))
+
+
+def vary_enthalpy(
+    basis: Basis, species: Species, target: Datum, *, phase: str, form: str = "", saturated: str = ""
+) -> Varying:
+    """The enthalpy of a species in one phase on a datum.
+
+    Raises NotFound or Ambiguous where the phase or form is none of the store.
+    """
+    levels = basis.levels
+    state = levels.check(species.name, State(phase, None, form))
+
+    def ask(t: float | None, p: float | None) -> Point:
+        return enthalpy_at(levels, species, State(phase, t, state.form, p, saturated), target)  # type: ignore[arg-type]
+
+    tree = levels.tree(species.name)
+    track = tree.tracks.get((phase, state.form))
+    if (
+        saturated
+        or phase == "fluid"
+        or (track is not None and not isinstance(track, Curve))
+        or levels._tables.get(species.name)
+    ):
+        return Varying(ask, [_Cell(0.0, math.inf, None)])
+    signed = [(-1.0, target)] if target.temperature == SAME_T else []
+    return Varying(ask, _cells(levels, species, signed, phase=phase, own=state))
+
+
+def _cells(
+    levels: Levels, species: Species, signed: Sequence[tuple[float, Datum]], *, phase: str, own: State | None
+) -> list[_Cell]:
+    """Cut the axis wherever a member changes its equation, its form, or whether it can be at all."""
+    schedule = sorted(
+        {
+            upper
+            for _, datum in signed
+            for element, _ in species.composition
+            for upper, _ in datum.schedule.get(element, ())
+            if math.isfinite(upper)
+        }
+    )
+    cells: list[_Cell] = []
+    for low, high in zip([0.0, *schedule], [*schedule, math.inf], strict=True):
+        inside = _Cell(low, high, None).middle()
+        members: list[tuple[float, str, str, str]] = []
+        if own is not None:
+            members.append((1.0, species.name, own.phase, own.form))
+        try:
+            for sign, datum in signed:
+                for term in levels.zero_of(datum, species, phase=phase, temperature=inside).terms:
+                    if term.zero.temperature == SAME_T:
+                        state = State(term.zero.phase, None, term.zero.form)
+                        state = levels.check(term.species, state)
+                        members.append((sign * float(term.coefficient), term.species, state.phase, state.form))
+        except PropdbError:
+            cells.append(_Cell(low, high, None))
+            continue
+        cells += _pieces(levels, low, high, members)
+    return cells
+
+
+def _pieces(levels: Levels, low: float, high: float, members: Sequence[tuple[float, str, str, str]]) -> list[_Cell]:
+    tracks = []
+    marks: set[float] = set()
+    for coefficient, name, phase, form in members:
+        tree = levels.tree(name)
+        track = tree.tracks.get((phase, form))
+        if track is None and not levels._tables.get(name):
+            known = tuple(n.temperature for n in tree.nodes if (n.phase, n.form) == (phase, form))
+            return [_Cell(low, high, None, only=known)]
+        if not isinstance(track, Curve) or levels._tables.get(name):
+            return [_Cell(low, high, None)]
+        tracks.append((coefficient, track))
+        for i, piece in enumerate(track.pieces):
+            marks |= {piece.tmin - PRINTED_SLACK, piece.tmax + PRINTED_SLACK}
+            if i + 1 < len(track.pieces):
+                marks.add(track._border(i))
+        if phase == "l":
+            for quantity, slack in (("Tm", -MELTING_SLACK), ("Tc", 0.0)):
+                point = levels.value(name, quantity)
+                if point is not None:
+                    marks.add(point + slack)
+            if track.boiling is not None:
+                marks.add(track.boiling + BOILING_SLACK)
+    ends = [low, *sorted(t for t in marks if low < t < high), high]
+    cells = []
+    for a, b in zip(ends, ends[1:], strict=False):
+        inside = _Cell(a, b, None).middle()
+        chosen = [(coefficient, _equation(track, inside)) for coefficient, track in tracks]
+        complete = all(equation is not None for _, equation in chosen)
+        cells.append(_Cell(a, b, _merged(chosen) if complete else None))
+    return cells
+
+
+def _equation(track: Curve, t: float) -> Any:
+    """The equation that serves a temperature [K]; None where a heat capacity alone does not say the enthalpy."""
+    if track.phase == "l" and track.boiling is not None and t > track.boiling + BOILING_SLACK:
+        return None
+    borders = [track._border(i) for i in range(len(track.pieces) - 1)]
+    equation = track.pieces[bisect_left(borders, t)].equation
+    return None if getattr(equation, "unstated", ()) else equation
+
+
+def _merged(members: Sequence[tuple[float, Any]]) -> tuple[tuple[float, Any], ...]:
+    """Members that move along one equation are one; those that cancel are none."""
+    found: dict[int, tuple[float, Any]] = {}
+    for coefficient, equation in members:
+        old = found.get(id(equation), (0.0, equation))
+        found[id(equation)] = (old[0] + coefficient, equation)
+    return tuple((c, e) for c, e in found.values() if c)

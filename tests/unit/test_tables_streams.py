@@ -1,0 +1,236 @@
+"""Streams of a fictional plant: enthalpy flows add up to duties that are known from elsewhere."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from pathlib import Path
+from typing import Any, NamedTuple
+
+import pytest
+
+import propdb
+from propdb.errors import DatumMismatch, UnitError
+
+pytestmark = pytest.mark.extras
+pytest.importorskip("pyarrow")
+
+
+class Stream(NamedTuple):
+    """A stream of pure species; ``datum`` is what its own table is written on. Flows in kmol/h."""
+
+    side: str
+    species: str
+    phase: str
+    temperature: str
+    flow: float
+    datum: str
+    pressure: str | None = None
+
+
+#: Ten units of a plant that does not exist; flows and temperatures are invented.
+PLANT: dict[str, list[Stream]] = {
+    "air heater": [
+        Stream("in", "nitrogen", "g", "25C", 40, "gas-25C"),
+        Stream("out", "nitrogen", "g", "600C", 40, "gas-25C"),
+    ],
+    "two vendors": [
+        Stream("in", "oxygen", "g", "60F", 12, "gas-60F"),
+        Stream("out", "oxygen", "g", "400C", 12, "gas-0C"),
+    ],
+    "boiler": [
+        Stream("in", "water", "l", "105C", 55, "steam-triple-point"),
+        Stream("out", "water", "fluid", "400C", 55, "steam-triple-point", "40bar"),
+    ],
+    "deaerator": [
+        Stream("in", "water", "l", "20C", 50, "liquid-0C"),
+        Stream("in", "water", "fluid", "150C", 6, "steam-triple-point", "3bar"),
+        Stream("out", "water", "l", "95C", 56, "own:l@25C"),
+    ],
+    "condenser": [
+        Stream("in", "benzene", "g", "100C", 9, "gas-25C"),
+        Stream("out", "benzene", "l", "60C", 9, "own:l@25C"),
+    ],
+    "cooler": [
+        Stream("in", "carbon dioxide", "g", "500C", 8, "elements-298K"),
+        Stream("in", "water", "l", "20C", 100, "liquid-0C"),
+        Stream("out", "carbon dioxide", "g", "120C", 8, "gas-0C"),
+        Stream("out", "water", "l", "45C", 100, "liquid-0C"),
+    ],
+    "mixer": [
+        Stream("in", "nitrogen", "g", "25C", 30, "gas-25C"),
+        Stream("in", "methane", "g", "25C", 10, "gas-0C"),
+        Stream("out", "nitrogen", "g", "25C", 30, "gas-25C"),
+        Stream("out", "methane", "g", "25C", 10, "gas-25C"),
+    ],
+    "vaporiser": [
+        Stream("in", "ethanol", "l", "25C", 5, "own:l@25C"),
+        Stream("out", "ethanol", "g", "120C", 5, "gas-25C"),
+    ],
+    "economiser": [
+        Stream("in", "water", "l", "25C", 70, "liquid-25C"),
+        Stream("out", "water", "l", "90C", 70, "liquid-0C"),
+        Stream("in", "sulfur dioxide", "g", "300C", 20, "gas-25C"),
+        Stream("out", "sulfur dioxide", "g", "200C", 20, "gas-25C"),
+    ],
+    "burner": [
+        Stream("in", "methane", "g", "25C", 1, "elements-298K"),
+        Stream("in", "oxygen", "g", "25C", 2, "gas-25C"),
+        Stream("out", "carbon dioxide", "g", "25C", 1, "elements-0K"),
+        Stream("out", "water", "l", "25C", 2, "steam-triple-point"),
+    ],
+}  # fmt: skip
+
+
+@pytest.fixture(scope="module")
+def store() -> Iterator[propdb.Store]:
+    with propdb.open() as opened:
+        yield opened
+
+
+def enthalpy(store: propdb.Store, stream: Stream, datum: str) -> float:
+    """[kJ/kmol]"""
+    return store.enthalpy(
+        stream.species, phase=stream.phase, temperature=stream.temperature, pressure=stream.pressure, datum=datum,
+        unit="kJ/kmol",
+    ).value  # fmt: skip
+
+
+def write(path: Path, store: propdb.Store, streams: list[Stream]) -> None:
+    lines = ["stream,side,species,datum,h [kJ/kmol],flow [kmol/h]"]
+    lines += [
+        f"S{i},{s.side},{s.species},{s.datum},{enthalpy(store, s, s.datum):.4f},{s.flow}" for i, s in enumerate(streams)
+    ]
+    path.write_text("\n".join(lines) + "\n", encoding="utf-8")
+
+
+@pytest.mark.parametrize("unit", PLANT)
+def test_the_duty_is_the_known_one(store: propdb.Store, tmp_path: Path, unit: str) -> None:
+    streams = PLANT[unit]
+    write(tmp_path / "in.csv", store, streams)
+    report = store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to="elements-298K")
+    found = report.data["streams"]
+    rounding = sum(s.flow for s in streams) * 1e-4 / 3600.0
+    if unit == "burner":
+        # Gross calorific value of methane at 25 °C, 890.58 kJ/mol with a standard uncertainty of 0.19 kJ/mol: ISO 6976
+        known, allowed = -890.58e3 / 3600.0, 2 * 0.19e3 / 3600.0
+        assert found["reaction"]
+    else:
+        # Without a reaction the duty does not depend on the datum: here each species on its own state, by the states.
+        common = {s.species: next(o.datum for o in streams if o.species == s.species) for s in streams}
+        known = sum((1 if s.side == "out" else -1) * s.flow * enthalpy(store, s, common[s.species]) for s in streams)
+        known, allowed = known / 3600.0, rounding
+        assert not found["reaction"]
+    assert found["duty"] == pytest.approx(known, abs=allowed + rounding)
+    assert found["duty"] == pytest.approx(found["total_out"] - found["total_in"], abs=1e-9)
+    assert len(found["streams"]) == len(streams)
+    assert f"{found['duty']:.3f}" in str(report)
+
+
+def test_published_steam(store: propdb.Store, tmp_path: Path) -> None:
+    """Saturated steam at 40 bar from water at 20 °C: 2800.8 and 83.9 kJ/kg, steam tables on IAPWS-95."""
+    text = (
+        "stream,side,phase,species,datum,h [kJ/kg],flow [kg/s]\n"
+        "feed,in,l,water,steam-triple-point,83.9,2\nsteam,out,fluid,water,steam-triple-point,2800.8,2\n"
+    )
+    (tmp_path / "in.csv").write_text(text, encoding="utf-8")
+    for to in ("liquid-25C", "elements-298K", "elements-0K", "combustion-net-25C"):
+        report = store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to=to, overwrite=True)
+        assert report.data["streams"]["duty"] == pytest.approx(2 * (2800.8 - 83.9), abs=0.2)
+        assert report.data["streams"]["duty_uncertainty"] == pytest.approx(0.0, abs=1e-6)  # one shift on both sides
+
+
+def test_uncertainty_of_a_duty_is_that_of_the_difference(store: propdb.Store, tmp_path: Path) -> None:
+    text = (
+        "side,species,datum,h [kJ/mol],flow [mol/s]\nin,carbon dioxide,gas-25C,0.000,1\n"
+        "out,carbon dioxide,elements-298K,-393.510,1\n"
+    )
+    (tmp_path / "in.csv").write_text(text, encoding="utf-8")
+    found = store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to="elements-298K").data["streams"]
+    one = store.convert("0 kJ/mol", species="carbon dioxide", from_="gas-25C", to="elements-298K")
+    assert one.uncertainty is not None
+    assert found["duty_uncertainty"] == pytest.approx(one.uncertainty)
+
+
+def test_own_states_across_a_reaction_are_refused(store: propdb.Store, tmp_path: Path) -> None:
+    write(tmp_path / "in.csv", store, PLANT["burner"])
+    with pytest.raises(DatumMismatch, match="reaction") as caught:
+        store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to="gas-25C")
+    assert "--across" in str(caught.value)
+    assert [p.name for p in tmp_path.iterdir()] == ["in.csv"]
+    report = store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to="gas-25C", across=True)
+    assert any("on request" in note for note in report.data["streams"]["notes"])
+
+
+def test_elements_that_do_not_balance_are_named(store: propdb.Store, tmp_path: Path) -> None:
+    streams = [*PLANT["burner"][:3], PLANT["burner"][3]._replace(flow=1.5)]
+    write(tmp_path / "in.csv", store, streams)
+    report = store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to="elements-298K")
+    assert any("do not balance" in note and "H " in note for note in report.data["streams"]["notes"])
+
+
+def test_mass_flows_and_mixtures(store: propdb.Store, tmp_path: Path) -> None:
+    text = (
+        "stream,side,x[nitrogen],x[oxygen],phase,T [°C],flow [kg/h]\n"
+        "air,in,0.79,0.21,g,25,3600\nhot,out,0.79,0.21,g,525,3600\n"
+    )
+    (tmp_path / "in.csv").write_text(text, encoding="utf-8")
+    found = store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to="gas-25C").data["streams"]
+    per_mol = sum(
+        x * store.enthalpy(name, phase="g", temperature="525C", datum="gas-25C").value
+        for name, x in (("nitrogen", 0.79), ("oxygen", 0.21))
+    )
+    molar = 0.79 * 28.0134e-3 + 0.21 * 31.9988e-3
+    assert found["duty"] == pytest.approx(per_mol / molar, rel=1e-4)
+    assert found["streams"][0]["flow_mass"] == pytest.approx(1.0)
+
+
+def test_rows_without_a_number_are_named(store: propdb.Store, tmp_path: Path) -> None:
+    text = "side,species,datum,h [kJ/mol],flow [mol/s]\nin,methan,gas-25C,0,1\nout,nitrogen,gas-25C,1,1\n"
+    (tmp_path / "in.csv").write_text(text, encoding="utf-8")
+    report = store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to="gas-25C")
+    assert not report.clean
+    assert any("1 rows without" in note for note in report.data["streams"]["notes"])
+
+
+def test_a_flow_without_its_unit(store: propdb.Store, tmp_path: Path) -> None:
+    (tmp_path / "in.csv").write_text("species,datum,h [kJ/mol],flow\nmethane,gas-25C,0,1\n", encoding="utf-8")
+    with pytest.raises(UnitError, match="flow"):
+        store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to="gas-25C")
+    report = store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to="gas-25C", units=["flow=kmol/h"])
+    assert report.data["streams"]["total"] == 0.0
+
+
+# -- suggest -----------------------------------------------------------------------------------------------------------
+
+
+def suggestion(store: propdb.Store, tmp_path: Path, unit: str) -> dict[str, Any]:
+    write(tmp_path / "in.csv", store, PLANT[unit])
+    report = store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to="suggest")
+    assert "suggested datum" in str(report)
+    assert report.data["to"] == report.data["suggestion"]["datum"]
+    found: dict[str, Any] = report.data["suggestion"]
+    assert found["runner_up"] != found["datum"]
+    assert found["reason"]
+    return found
+
+
+def test_suggested_is_the_datum_that_the_tables_share(store: propdb.Store, tmp_path: Path) -> None:
+    found = suggestion(store, tmp_path, "air heater")
+    assert found["datum"] == "gas-25C"
+    assert "its own tables" in found["reason"]
+    assert found["runner_up"]
+
+
+@pytest.mark.parametrize("unit", ["two vendors", "condenser", "cooler"])
+def test_suggested_without_a_reaction_is_an_own_state(store: propdb.Store, tmp_path: Path, unit: str) -> None:
+    found = suggestion(store, tmp_path, unit)
+    assert not found["reaction"]
+    assert store.datum_show(found["datum"]).kind == "own"
+
+
+def test_suggested_with_a_reaction_conserves_its_zero(store: propdb.Store, tmp_path: Path) -> None:
+    found = suggestion(store, tmp_path, "burner")
+    assert found["reaction"]
+    assert store.datum_show(found["datum"]).kind in ("elements", "basis")
+    assert store.datum_show(found["runner_up"]).kind in ("elements", "basis")
+    assert "species in and out differ" in found["reason"]
