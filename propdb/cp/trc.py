@@ -162,7 +162,7 @@ class TrcGas(PiecewiseEquation):
     kernels: tuple[Kernel, ...] = field(init=False, repr=False, compare=False)
     joints: tuple[float, ...] = field(init=False, repr=False, compare=False)
 
-    name: ClassVar[str] = "trc-gas"
+    name: ClassVar[str] = "trc"
 
     def __post_init__(self) -> None:
         a = numbers(self.a, "a", count=8)
