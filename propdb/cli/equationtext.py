@@ -153,24 +153,24 @@ _WRITERS: Final[Mapping[str, Callable[[Params], list[str]]]] = {
         "ABCD",
         "coefficients",
     ),
-    "perry-latent": _named("dh = A (1 - Tr)^(B + C Tr + D Tr^2)", "J/mol", "ABCD", "coefficients"),
+    "perry-vaporisation": _named("dh = A (1 - Tr)^(B + C Tr + D Tr^2)", "J/mol", "ABCD", "coefficients"),
     "polynomial": _polynomial,
     "shomate": _shomate,
-    "trc": _named(
+    "trc-gas": _named(
         "cp/R = a0 + (a1/T^2) exp(-a2/T) + a3 y^2 + (a4 - a5/(T - a7)^2) y^8, y = (T - a7)/(T + a6), 0 below a7",
         "1",
         [f"a{number}" for number in range(8)],
         "a",
     ),
     "union": _union,
-    "vdi-latent": _named(
+    "vdi-vaporisation": _named(
         "dh = R Tc (A t^(1/3) + B t^(2/3) + C t + D t^2 + E t^6), t = 1 - T/Tc", "J/mol", "ABCDE", "coefficients"
     ),
     "watson": _watson,
     "zabransky-cubic": _named(
         "c/R = A1 + A2 (T/100) + A3 (T/100)^2 + A4 (T/100)^3", "1", ("A1", "A2", "A3", "A4"), "a"
     ),
-    "zabransky-quasi-polynomial": _named(
+    "zabransky-quasi": _named(
         "c/R = A1 ln(1 - Tr) + A2/(1 - Tr) + A3 + A4 Tr + A5 Tr^2 + A6 Tr^3",
         "1",
         [f"A{number}" for number in range(1, 7)],

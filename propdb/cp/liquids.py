@@ -109,7 +109,7 @@ class ZabranskyQuasi(PiecewiseEquation):
     kernels: tuple[Kernel, ...] = field(init=False, repr=False, compare=False)
     joints: tuple[float, ...] = field(init=False, repr=False, compare=False)
 
-    name: ClassVar[str] = "zabransky-quasi-polynomial"
+    name: ClassVar[str] = "zabransky-quasi"
 
     def __post_init__(self) -> None:
         a = numbers(self.a, "a", count=6)

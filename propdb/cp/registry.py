@@ -53,7 +53,7 @@ EQUATIONS: dict[str, EquationSpec] = {
     "aly-lee": EquationSpec(
         HEAT_CAPACITY, "cp = A + B [(C/T)/sinh(C/T)]^2 + D [(E/T)/cosh(E/T)]^2", AlyLee.from_params
     ),
-    "trc": EquationSpec(
+    "trc-gas": EquationSpec(
         HEAT_CAPACITY,
         "cp/R = a0 + (a1/T^2) exp(-a2/T) + a3 y^2 + (a4 - a5/(T - a7)^2) y^8, y = (T - a7)/(T + a6)",
         TrcGas.from_params,
@@ -61,7 +61,7 @@ EQUATIONS: dict[str, EquationSpec] = {
     "zabransky-cubic": EquationSpec(
         HEAT_CAPACITY, "c/R = A1 + A2 (T/100) + A3 (T/100)^2 + A4 (T/100)^3", ZabranskyCubic.from_params
     ),
-    "zabransky-quasi-polynomial": EquationSpec(
+    "zabransky-quasi": EquationSpec(
         HEAT_CAPACITY, "c/R = A1 ln(1 - Tr) + A2/(1 - Tr) + A3 + A4 Tr + A5 Tr^2 + A6 Tr^3", ZabranskyQuasi.from_params
     ),
     "perry-liquid": EquationSpec(
@@ -73,8 +73,10 @@ EQUATIONS: dict[str, EquationSpec] = {
     "union": EquationSpec(HEAT_CAPACITY, "pieces, each on its own range", Union.from_params),
     "constant-latent": EquationSpec(LATENT_HEAT, "dh at one T", ConstantLatent.from_params),
     "watson": EquationSpec(LATENT_HEAT, "dh = dh1 ((Tc - T)/(Tc - T1))^n", Watson.from_params),
-    "perry-latent": EquationSpec(LATENT_HEAT, "dh = A (1 - Tr)^(B + C Tr + D Tr^2)", PerryVaporisation.from_params),
-    "vdi-latent": EquationSpec(
+    "perry-vaporisation": EquationSpec(
+        LATENT_HEAT, "dh = A (1 - Tr)^(B + C Tr + D Tr^2)", PerryVaporisation.from_params
+    ),
+    "vdi-vaporisation": EquationSpec(
         LATENT_HEAT,
         "dh = R Tc (A t^(1/3) + B t^(2/3) + C t + D t^2 + E t^6), t = 1 - T/Tc",
         VdiVaporisation.from_params,

@@ -162,7 +162,7 @@ class TrcGas(PiecewiseEquation):
     kernels: tuple[Kernel, ...] = field(init=False, repr=False, compare=False)
     joints: tuple[float, ...] = field(init=False, repr=False, compare=False)
 
-    name: ClassVar[str] = "trc"
+    name: ClassVar[str] = "trc-gas"
 
     def __post_init__(self) -> None:
         a = numbers(self.a, "a", count=8)

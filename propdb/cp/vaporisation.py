@@ -117,7 +117,7 @@ class PerryVaporisation(_ToCritical):
     tmin: float = 0.0
     tmax: float = None  # type: ignore[assignment]  # Tc
 
-    name: ClassVar[str] = "perry-latent"
+    name: ClassVar[str] = "perry-vaporisation"
 
     def __post_init__(self) -> None:
         coefficients, tc = numbers(self.coefficients, "coefficients", count=4), number(self.Tc, "Tc")
@@ -176,7 +176,7 @@ class VdiVaporisation(_ToCritical):
     tmax: float = None  # type: ignore[assignment]  # Tc
     gas_constant: float = R_GAS
 
-    name: ClassVar[str] = "vdi-latent"
+    name: ClassVar[str] = "vdi-vaporisation"
 
     def __post_init__(self) -> None:
         coefficients, tc = numbers(self.coefficients, "coefficients", count=5), number(self.Tc, "Tc")

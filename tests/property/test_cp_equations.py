@@ -192,16 +192,16 @@ STRATEGIES: dict[str, st.SearchStrategy[Params]] = {
     "nasa9": _nasa([-2, -1, 0, 1, 2, 3, 4]),
     "shomate": _shomate(),
     "aly-lee": _aly_lee(),
-    "trc": _trc(),
+    "trc-gas": _trc(),
     "zabransky-cubic": _zabransky_cubic(),
-    "zabransky-quasi-polynomial": _liquid(reduced=False),
+    "zabransky-quasi": _liquid(reduced=False),
     "perry-liquid": _liquid(reduced=True),
     "table": _table(),
     "union": _union(),
     "constant-latent": st.fixed_dictionaries({"dh": _number(100.0, 60_000.0), "T": _number(10.0, 900.0)}),
     "watson": _watson(),
-    "perry-latent": _vaporisation(exponent=True),
-    "vdi-latent": _vaporisation(exponent=False),
+    "perry-vaporisation": _vaporisation(exponent=True),
+    "vdi-vaporisation": _vaporisation(exponent=False),
 }
 
 HEAT_CAPACITIES = sorted(name for name, spec in EQUATIONS.items() if spec.quantity == HEAT_CAPACITY)

@@ -293,14 +293,14 @@ CASES: dict[str, tuple[str, Params, list[Check]]] = {
     "methane by a polynomial": ("polynomial", METHANE, METHANE_CHECKS),
     "nitrogen by a table": ("table", NITROGEN_TABLE, NITROGEN_TABLE_CHECKS),
     "water by Watson": ("watson", WATER, WATER_CHECKS),
-    "tetrafluoromethane by the TRC equation": ("trc", TETRAFLUOROMETHANE, TETRAFLUOROMETHANE_CHECKS),
-    "chlorine dioxide by the TRC equation": ("trc", CHLORINE_DIOXIDE, CHLORINE_DIOXIDE_CHECKS),
+    "tetrafluoromethane by the TRC equation": ("trc-gas", TETRAFLUOROMETHANE, TETRAFLUOROMETHANE_CHECKS),
+    "chlorine dioxide by the TRC equation": ("trc-gas", CHLORINE_DIOXIDE, CHLORINE_DIOXIDE_CHECKS),
     "steam by Aly and Lee": ("aly-lee", STEAM, STEAM_CHECKS),
     "water by Zabransky's cubic": ("zabransky-cubic", WATER_CUBIC, WATER_CUBIC_CHECKS),
-    "toluene by Zabransky's quasi-polynomial": ("zabransky-quasi-polynomial", TOLUENE, TOLUENE_CHECKS),
+    "toluene by Zabransky's quasi-polynomial": ("zabransky-quasi", TOLUENE, TOLUENE_CHECKS),
     "heptane by Perry's equation": ("perry-liquid", HEPTANE, HEPTANE_CHECKS),
-    "water by Perry's power": ("perry-latent", WATER_PERRY, WATER_PERRY_CHECKS),
-    "toluene by the VDI's powers": ("vdi-latent", TOLUENE_VDI, TOLUENE_VDI_CHECKS),
+    "water by Perry's power": ("perry-vaporisation", WATER_PERRY, WATER_PERRY_CHECKS),
+    "toluene by the VDI's powers": ("vdi-vaporisation", TOLUENE_VDI, TOLUENE_VDI_CHECKS),
 }
 
 
