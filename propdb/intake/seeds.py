@@ -30,7 +30,7 @@ from propdb.intake.sources import read_source
 from propdb.model.records import QUANTITIES, Datum, Entry, Source, Species
 from propdb.store.content import Content
 
-__all__ = ["load_seed"]
+__all__ = ["atomic_weights", "load_seed"]
 
 _ELEMENT_COLUMNS = ("symbol", "name", "atomic_number", "atomic_weight", "note")
 
@@ -70,7 +70,7 @@ def load_seed(root: Path, *, identifiers: bool = True) -> Content:
         path.name: read_source(_needed(path / "source.toml", root), file=_name(path / "source.toml", root))
         for path in folders
     }
-    weights = _atomic_weights(root)
+    weights = atomic_weights(root)
     found = species.merge_species(_species_tables(root, folders), weights=weights, identifiers=identifiers)
     datum_tables = read_toml(_needed(root / "datums.toml", root), file="datums.toml")
     datums = _datums(datum_tables, found, sources)
@@ -122,7 +122,7 @@ def _species_tables(root: Path, folders: list[Path]) -> Iterator[Table]:
             yield read_csv(path, file=_name(path, root), columns=species.COLUMNS, optional=species.OPTIONAL)
 
 
-def _atomic_weights(root: Path) -> dict[str, float]:
+def atomic_weights(root: Path) -> dict[str, float]:
     """Atomic weights [g/mol] by symbol."""
     weights: dict[str, float] = {}
     for row in read_csv(_needed(root / "elements.csv", root), file="elements.csv", columns=_ELEMENT_COLUMNS):
