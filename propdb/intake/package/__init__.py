@@ -1,7 +1,7 @@
 """The open data that the ``chemicals`` package carries, read from where it is installed, at build time.
 
 ``files.toml`` lists the files with their SHA-256, ``sources.toml`` the publications behind them, ``aliases.toml`` CAS RNs
-of single forms. Every row becomes entries or a refusal with its reason; the report of each file is stored.
+of single forms, ``formulas.csv`` formulas that only a name tells. Every row becomes entries or a refusal with its reason; the report of each file is stored.
 """
 
 from __future__ import annotations
@@ -18,7 +18,7 @@ from propdb.intake.package.registry import Registry
 from propdb.intake.package.report import FileReport
 from propdb.intake.package.sheet import Context, Row, Sheet
 from propdb.intake.package.vapour import Estimator
-from propdb.intake.rows import read_toml
+from propdb.intake.rows import Table, read_csv, read_toml
 from propdb.intake.seeds import atomic_weights
 from propdb.model.records import Source
 from propdb.store.content import Content
@@ -106,6 +106,7 @@ def load_package(
         identifiers=known,
         by_name=by_name,
         aliases=_toml(root, "aliases.toml"),
+        formulas={row.text("cas"): (row.text("formula"), row.text("name")) for row in _formulas(root)},
     )
     context = Context(
         registry,
@@ -172,6 +173,11 @@ def _identifiers() -> tuple[Mapping[int, Any], Mapping[str, Any], Mapping[str, f
 
 def _toml(root: Path, name: str) -> dict[str, Any]:
     return read_toml(root / "_package" / name, file=f"_package/{name}")
+
+
+def _formulas(root: Path) -> Table:
+    name = "_package/formulas.csv"
+    return read_csv(root / name, file=name, columns=("cas", "formula", "name"))
 
 
 def _sources(root: Path, seed: Content) -> list[Source]:

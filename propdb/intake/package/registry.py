@@ -112,6 +112,8 @@ class Registry:
     by_name : mapping
     aliases : mapping
         CAS RN to ``species``, ``form`` and perhaps ``formula``: what ``aliases.toml`` says.
+    formulas : mapping
+        CAS RN to (formula, name) where only the name tells the formula: what ``formulas.csv`` says.
     """
 
     def __init__(
@@ -122,11 +124,13 @@ class Registry:
         identifiers: Mapping[int, Any],
         by_name: Mapping[str, Any],
         aliases: Mapping[str, Mapping[str, str]],
+        formulas: Mapping[str, tuple[str, str]],
     ) -> None:
         self.weights = weights
         self.identifiers = identifiers
         self.by_name = by_name
         self.aliases = aliases
+        self.formulas = formulas
         self.drafts: dict[str, Draft] = {}
         self._by_cas: dict[str, Draft] = {}
         self._by_inchikey: dict[str, Draft] = {}
@@ -244,6 +248,9 @@ class Registry:
             listed, exact = stated, False
         if listed is None:
             listed, exact = stated, False
+        if listed is None and number in self.formulas:
+            formula, own = self.formulas[number]
+            listed, note, name = read_formula(formula), "formula worked out from its name", name or own
         if listed is None:
             listed, note = self._by_its_name(name)
         if listed is None:
