@@ -28,6 +28,8 @@ _CODE: Final = re.compile(
 
 def decoded(name: str) -> str:
     """A name as its file has it, without the blanks around it and with misread brackets put right."""
+    if name.isascii() and name.isprintable():  # nearly all
+        return " ".join(name.split()) if "  " in name else name.strip()
     plain = " ".join(name.translate(_MISREAD).split())
     return "".join(char for char in plain if char.isprintable())
 
@@ -53,19 +55,16 @@ def wanted_synonyms(file_names: Sequence[str], known: Any) -> list[str]:
         offered.append(known.common_name)
         if known.iupac_name:
             offered.append(known.iupac_name)
-        offered += sorted((s for s in known.synonyms[2:] if 3 <= len(s) <= 40), key=len)
-    chosen: list[str] = []
-    seen: set[str] = set()
+        offered += sorted((text for text in known.synonyms[2:60] if 3 <= len(text) <= 40), key=len)
+    chosen: dict[str, str] = {}
     for text in offered:
         plain = decoded(text)
         folded = plain.casefold()
-        if len(plain) < 3 or len(plain) > _LONGEST or folded in seen or _CODE.fullmatch(plain):
-            continue
-        seen.add(folded)
-        chosen.append(plain)
-        if len(chosen) == _MOST:
-            break
-    return chosen
+        if 3 <= len(plain) <= _LONGEST and folded not in chosen and not _CODE.fullmatch(plain):
+            chosen[folded] = plain
+            if len(chosen) == _MOST:
+                break
+    return list(chosen.values())
 
 
 def prune(asked: Mapping[str, Sequence[str]], taken: Iterable[str]) -> list[list[str]]:

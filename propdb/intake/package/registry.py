@@ -50,7 +50,9 @@ class Draft:
     seed: Species | None = None
     mark: str = ""  # the identity that entries hash
     names: list[str] = field(default_factory=list)  # as the files call it
+    called: set[str] = field(default_factory=set)  # every name that a row has given it
     known: Any = None  # what the identifiers have
+    heard: set[str] = field(default_factory=set)  # names (small letters) that do not contradict the formula
     vapour: str = ""
     notes: list[str] = field(default_factory=list)
 
@@ -205,6 +207,10 @@ class Registry:
             return self._note(self._elsewhere(number, name, stated, problem), name), "", True
         return self._note(self._without_cas(number, name, stated), name), "", False
 
+    def known_by(self, cas: str) -> bool:
+        """Has a species with this CAS RN been met?"""
+        return cas.strip() in self._by_cas
+
     def _alias(self, number: str, alias: Mapping[str, str]) -> Draft:
         if not alias["species"]:
             raise Refused("formula in doubt", f"the formula listed for CAS RN {number} is in doubt")
@@ -221,9 +227,10 @@ class Registry:
         self._by_cas[number] = draft
         return draft
 
-    @staticmethod
-    def _checked(number: str) -> str:
+    def _checked(self, number: str) -> str:
         """The CAS RN, or "" for what is none (blank, "None", a number of the package's own)."""
+        if number in self._by_cas:
+            return number
         if number in ("", "None"):
             return ""
         try:
@@ -233,8 +240,10 @@ class Registry:
 
     @staticmethod
     def _note(draft: Draft, name: str) -> Draft:
-        if name and name not in draft.names and fold(name) != fold(draft.name):
-            draft.names.append(name)
+        if name and name not in draft.called:
+            draft.called.add(name)
+            if fold(name) != fold(draft.name):
+                draft.names.append(name)
         return draft
 
     def _new_by_cas(self, number: str, name: str, stated: tuple[Counts, int] | None) -> Draft | None:
@@ -304,13 +313,16 @@ class Registry:
         if draft.known is None and draft.seed is None:
             return ""
         folded = name.lower()
-        if draft.known is not None and folded in {text.lower() for text in draft.known.synonyms}:
+        if not draft.heard and draft.known is not None:
+            draft.heard.update(text.lower() for text in draft.known.synonyms)
+        if folded in draft.heard:
             return ""
         counts = formula_of_name(name)
         if counts is not None and dict(mine[0]) != counts and not mine[1]:
             return hill(counts)
         other = self.by_name.get(folded) if folded else None
         if other is None or draft.known is None or other is draft.known:
+            draft.heard.add(folded)
             return ""
         read = read_formula(other.formula)
         if read is None or dict(read[0]) == dict(mine[0]) or _but_hydrogen(read, mine):

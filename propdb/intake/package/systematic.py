@@ -12,7 +12,7 @@ from __future__ import annotations
 import re
 from collections.abc import Iterator
 from functools import lru_cache
-from typing import Final
+from typing import Any, Final
 
 __all__ = ["formula_of_name"]
 
@@ -219,6 +219,20 @@ _LINKS: Final = {
 #: Replacement nomenclature: an atom of the chain, with its hydrogen, becomes another.
 _REPLACEMENTS: Final = {"oxa": _atoms("OC-1H-2"), "thia": _atoms("SC-1H-2"), "aza": _atoms("NC-1H-1")}
 
+
+
+def _by_start(table: dict[str, Any]) -> dict[str, list[tuple[str, Any]]]:
+    """The table by the first two letters of its keys: most words begin with none of them."""
+    found: dict[str, list[tuple[str, Any]]] = {}
+    for key, value in table.items():
+        found.setdefault(key[:2], []).append((key, value))
+    return found
+
+
+_CHAINS_BY: Final = _by_start(CHAINS)
+_GROUPS_BY: Final = _by_start(_GROUPS)
+_MULTIPLES_BY: Final = _by_start(_MULTIPLES)
+
 _STEREO: Final = re.compile(
     r"\((?:[0-9]*(?:rs|sr|[rsez*])|[+\-±]|d|l|dl)(?:,(?:[0-9]*(?:rs|sr|[rsez*])|[+\-±]))*\)-?"
     r"|(?<![a-z])(?:cis|trans|[ezrs]|d|l|dl|n|t|sec|s|tert|meso|erythro|threo|endo|exo|syn|anti|o|m|p|alpha|beta|gamma)"
@@ -326,7 +340,7 @@ def _substituted(text: str) -> tuple[tuple[_Atoms, str], ...]:
 
 def _multiple(text: str) -> Iterator[tuple[int, str]]:
     yield 1, text
-    for word, times in _MULTIPLES.items():
+    for word, times in _MULTIPLES_BY.get(text[:2], ()):
         rest = text[len(word) :]
         # "tetradecyl" and "hexatriacontyl" are chains; of ten groups one would say tetrakis(decyl)
         if text.startswith(word) and not (times > 2 and rest.startswith(_LONG)):
@@ -344,13 +358,13 @@ def _group(text: str) -> Iterator[tuple[_Atoms, str]]:
                 yield from ((atoms, rest) for atoms in _radical(inside))
                 return
         return
-    for name, atoms in _GROUPS.items():
+    for name, atoms in _GROUPS_BY.get(text[:2], ()):
         if text.startswith(name):
             yield atoms, text[len(name) :]
     start = text.removeprefix("iso")
     cyclic = start.startswith("cyclo")
     body = start[5:] if cyclic else start
-    for stem, n in CHAINS.items():
+    for stem, n in _CHAINS_BY.get(body[:2], ()):
         if not body.startswith(stem):
             continue
         left = body[len(stem) :]
@@ -371,7 +385,7 @@ def _parent(text: str) -> Iterator[_Atoms]:
             return
     cyclic = text.startswith("cyclo")
     body = text[5:] if cyclic else text
-    for stem, n in CHAINS.items():
+    for stem, n in _CHAINS_BY.get(body[:2], ()):
         if not body.startswith(stem):
             continue
         chain = _tidy({"C": n, "H": 2 * n + 2 - 2 * cyclic})

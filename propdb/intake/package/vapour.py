@@ -95,9 +95,12 @@ class Estimator:
     def _estimate(
         self, sheet: Sheet, row: Row, name: str, pressure: Pressure, low: float | None, high: float | None
     ) -> None:
+        nothing = Refused("nothing else known", "no other number of this species, so an estimated latent heat has no use")
+        if not sheet.context.registry.known_by(row.text("CAS")):
+            raise nothing
         draft, _ = sheet.place(row.text("CAS"), row.text(name))
         if draft.name not in self._known:
-            raise Refused("nothing else known", "no other number of this species, so an estimated latent heat has no use")
+            raise nothing
         if draft.name in self._have:
             raise Refused("not needed", "the species has an enthalpy of vaporisation of its own")
         if draft.vapour == "associating":
