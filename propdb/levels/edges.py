@@ -175,7 +175,9 @@ def collect(
         edges.append(edge)
     for e in by_quantity.get("dH0", ()):
         if e.value is not None:
-            start, end = Node(e.phase, e.form, 0.0), Node(e.phase, e.form, T_STANDARD)
+            # What is liquid at 298.15 K (bromine, mercury, water) is counted from its crystal at 0 K.
+            start = Node("cr" if e.phase == "l" else e.phase, e.form, 0.0)
+            end = Node(e.phase, e.form, T_STANDARD)
             edges.append(entry_edge(e, start, end, e.value, "increment H(298.15) - H(0)", "increment", policy))
     edges += _latent_edges(by_quantity, policy, boiling, melting)
     vapours = {n for edge in edges for n in (edge.start, edge.end) if n.saturated}
