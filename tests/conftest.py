@@ -33,6 +33,7 @@ def root() -> Path:
 def _no_user_data(tmp_path_factory: pytest.TempPathFactory) -> Iterator[None]:
     """Keep every test away from the store of the person who runs it."""
     with pytest.MonkeyPatch.context() as patch:
+        patch.setenv("PROPDB_BUILD", "seed")  # the full store is built where a test asks for it
         if "PROPDB_STORE" not in os.environ:
             patch.setenv("PROPDB_STORE", str(tmp_path_factory.getbasetemp() / "propdb.db"))
         yield

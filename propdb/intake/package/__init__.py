@@ -20,6 +20,7 @@ from propdb.intake.package.sheet import Context, Row, Sheet
 from propdb.intake.package.vapour import Estimator
 from propdb.intake.rows import Table, read_csv, read_toml
 from propdb.intake.seeds import atomic_weights
+from propdb.intake.trc import resolve
 from propdb.model.records import Source
 from propdb.store.content import Content
 
@@ -135,7 +136,10 @@ def load_package(
         statuses=seed.statuses,
         notes=seed.notes,
     )
-    return Package(content, tuple(reports), version)
+    resolution = resolve(content)
+    if progress is not None:
+        progress(resolution.line())
+    return Package(resolution.content, tuple(reports), version)
 
 
 def _read(spec: FileSpec, loaded: Loaded, context: Context, estimator: Estimator | None) -> FileReport:
