@@ -24,6 +24,7 @@ from propdb.intake.trc import (
     element_increments,
     hear,
     resolve,
+    undecided,
 )
 from propdb.intake.where import seed_root
 from propdb.model.records import USABLE_STATUSES, Entry, Source, Species
@@ -191,7 +192,7 @@ def test_what_becomes_of_decided_and_undecided_rows(seed: Content, tmp_path: Pat
     methyl = _trc(resolution.content, METHYL, "Hf")
     assert (methyl.temperature, methyl.datum, methyl.status, methyl.conditions) == (0.0, "elements-0K", "base", "")
     assert (methyl.value, methyl.carried) == (-20000.0, "-20000.0")
-    assert "test-1 agrees" in methyl.note
+    assert "confirmed by test-1" in methyl.note
     increment = _trc(resolution.content, METHYL, "dH0")
     assert increment.temperature == 298.15
     assert increment.value == pytest.approx(resolution.decisions[0].increment)
@@ -217,6 +218,11 @@ def test_what_becomes_of_decided_and_undecided_rows(seed: Content, tmp_path: Pat
     again = resolve(resolution.content)
     assert [d.entry.species for d in again.decisions] == [ALKANE.name]
     assert {e.id for e in again.content.entries} == {e.id for e in resolution.content.entries}
+
+    # back to where it was
+    back = undecided(resolution.content)
+    assert [decision.verdict for decision in resolve(back).decisions] == [AT_0, AT_298, UNKNOWN]
+    assert len(back.entries) == len(content.entries)
 
     # deciding also where the constant stands alone
     bold = resolve(content, alone=True)
@@ -255,7 +261,7 @@ def test_a_liquid_with_its_latent_heat_is_a_witness(seed: Content) -> None:
 
 # --- on the package's rows --------------------------------------------------------------------------------------------
 def test_with_the_referees_withheld(seed: Content, root: Path) -> None:
-    data = load_package(seed, seed_root()).content
+    data = undecided(load_package(seed, seed_root()).content)
     full = resolve(data)
     usable = [e for e in full.content.entries if e.source == "trc-1994" and e.quantity == "Hf" and e.status == "base"]
     verdicts = Counter(decision.verdict for decision in full.decisions)
