@@ -372,7 +372,7 @@ def perry_mixed(sheet: Sheet, row: Row) -> None:
     phase = {"c": "cr", "gls": "am", "l": "l", "g": "g"}.get(main)
     if phase is None:
         raise Refused("unknown phase", f"{main!r} is none of c, gls, l, g")
-    draft, form = sheet.place(row.text("Ful CAS"), formula, formula)
+    draft, form = sheet.place(row.text("Ful CAS"), formula, formula, trust="formula")
     if phase == "cr":
         form = form_in(draft, sub) or (sub.lower() if sub else "") or crystal_form(sheet, draft, "", form)
     else:

@@ -207,6 +207,17 @@ class Registry:
             return self._note(self._elsewhere(number, name, stated, problem), name), "", True
         return self._note(self._without_cas(number, name, stated), name), "", False
 
+    def place_by_formula(self, cas: str, name: str, formula: str) -> tuple[Draft, str, bool]:
+        """As :meth:`place`, for a file whose CAS RNs are not to be trusted: the formula goes first where it can."""
+        number = cas.strip()
+        stated = read_formula(formula)
+        if stated is not None and number not in self.aliases and not _organic(stated[0]):
+            among = self._by_formula.get(stated, [])
+            listed = self._by_cas.get(number)
+            if len(among) == 1 and among[0] is not listed:
+                return self._note(among[0], decoded(name)), "", bool(number)
+        return self.place(cas, name, formula)
+
     def known_by(self, cas: str) -> bool:
         """Has a species with this CAS RN been met?"""
         return cas.strip() in self._by_cas
@@ -252,6 +263,10 @@ class Registry:
         listed = read_formula(known.formula) if known is not None else None
         exact = listed is not None
         note = ""
+        if listed is not None and (shown := _formula_shown(known.common_name)) not in (None, listed):
+            if shown is not None and {e for e, _ in shown[0]} == {e for e, _ in listed[0]}:
+                note = f"formula by its name; the identifiers of the package list {known.formula}"
+                listed, exact = shown, False
         if known is not None and stated is not None and listed != stated and _but_hydrogen(listed, stated):
             # The identifiers complete radicals with hydrogen, and call ions by the acid.
             listed, exact = stated, False
@@ -415,6 +430,12 @@ class Registry:
         taken = {fold(text) for d in kept for text in (d.name, *(d.seed.synonyms if d.seed else ()))}
         taken |= {hill(dict(d.counts), d.charge).casefold() for d in kept if d.counts}
         return [draft.species(names) for draft, names in zip(kept, prune(asked, taken), strict=True)]
+
+
+def _formula_shown(name: str) -> tuple[Counts, int] | None:
+    """The formula that stands in brackets behind a name: "rhodium oxide (Rh2O3)"."""
+    found = re.search(r" \(([A-Z][A-Za-z0-9()]*\d[A-Za-z0-9()]*)\)$", name)
+    return read_formula(found.group(1)) if found else None
 
 
 def _sorted_key(key: tuple[Counts, int]) -> tuple[Counts, int]:

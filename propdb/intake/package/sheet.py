@@ -103,9 +103,11 @@ class Sheet:
 
     # -- species --------------------------------------------------------------------------------------------------
 
-    def place(self, cas: str, name: str, formula: str = "") -> tuple[Draft, str]:
-        """Species and form of the row; see :meth:`Registry.place`."""
-        draft, form, moved = self.context.registry.place(cas, name, formula)
+    def place(self, cas: str, name: str, formula: str = "", *, trust: str = "cas") -> tuple[Draft, str]:
+        """Species and form of the row; see :meth:`Registry.place`, and :meth:`Registry.place_by_formula`."""
+        registry = self.context.registry
+        way = registry.place_by_formula if trust == "formula" else registry.place
+        draft, form, moved = way(cas, name, formula)
         self._name = decoded(name) or draft.name
         if moved:
             self.report.moves.append((self._row.number, f"{cas.strip()} {self._name}", draft.name))
@@ -271,6 +273,9 @@ class Sheet:
     def _add(
         self, draft: Draft, row: tuple[Any, ...], params: Mapping[str, Any], status: str, note: str
     ) -> None:
+        if draft.charge and row[1] not in ("g", "aq"):
+            self.refuse("ion in a condensed phase", f"{row[0]} of an ion as {row[1]}: another species must be meant")
+            return
         number = row_id(draft.mark, row)
         carrier = Carrier("chemicals", self.loaded.version, self.loaded.file, self._row.number, self._how)
         self._made.add(number)
