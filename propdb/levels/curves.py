@@ -102,7 +102,7 @@ class Curve:
         return merged
 
     def covers(self, t1: float, t2: float | None = None) -> bool:
-        """Do the stated ranges cover ``t1`` (and all up to ``t2``) without a gap or a split whose enthalpy is unknown?"""
+        """Do the stated ranges cover ``t1`` (and all up to ``t2``) without a gap or an unstated split?"""
         low, high = (t1, t1) if t2 is None else (min(t1, t2), max(t1, t2))
         if any(split.stated is None for split in self.between(low, high)):
             return False
@@ -155,7 +155,8 @@ class Curve:
 
     def _transition_leg(self, split: Split) -> Leg:
         entry = split.stated
-        assert entry is not None and entry.value is not None
+        assert entry is not None
+        assert entry.value is not None
         size, unit, stated = self.policy.standard(entry)
         return Leg(
             what="transition",
@@ -263,7 +264,8 @@ def build_curve(
     """The composite curve: at each temperature the best usable entry whose range covers it. None where there is none.
 
     A table with a doubled temperature serves side by side; the enthalpy between the sides is what an entry of
-    ``transitions`` states, best first, and otherwise nobody's guess. A heat capacity given at one temperature only is a curve of no length: it serves when extrapolation is asked for.
+    ``transitions`` states, best first, and otherwise nobody's guess. A heat capacity given at one temperature only is a
+    curve of no length: it serves when extrapolation is asked for.
     """
     usable = [e for e in choose(entries, policy) if e.equation and e.equation != "iapws95"]
     spans = [side for e in usable if e.tmin is not None and e.tmax is not None for side in _sides(e)]

@@ -264,7 +264,7 @@ def _storable(text: str, what: str, where: str) -> None:
 
 
 def validate_entry(entry: Entry, species: Species, mark: str = "") -> tuple[Any, ...]:
-    """Refuse what the store would refuse, in words; else the hashed fields. ``mark``: identity of the species, if known.
+    """Refuse what the store would refuse, in words; else the hashed fields. ``mark``: identity of the species.
 
     Raises
     ------

@@ -1,7 +1,8 @@
 """The open data that the ``chemicals`` package carries, read from where it is installed, at build time.
 
-``files.toml`` lists the files with their SHA-256, ``sources.toml`` the publications behind them, ``aliases.toml`` CAS RNs
-of single forms, ``formulas.csv`` formulas that only a name tells. Every row becomes entries or a refusal with its reason; the report of each file is stored.
+``files.toml`` lists the files with their SHA-256, ``sources.toml`` the publications behind them, ``aliases.toml`` CAS
+RNs of single forms, ``formulas.csv`` formulas that only a name tells. Every row becomes entries or a refusal with its
+reason; the report of each file is stored.
 """
 
 from __future__ import annotations

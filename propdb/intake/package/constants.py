@@ -3,11 +3,11 @@
 from __future__ import annotations
 
 import re
-from typing import Final
+from collections.abc import Callable
+from typing import Any, Final
 
-from propdb.intake.package.registry import Draft, Refused
+from propdb.intake.package.registry import Draft
 from propdb.intake.package.sheet import Row, Sheet
-from propdb.model.records import T_STANDARD
 
 __all__ = [
     "albahri_gas",
@@ -88,19 +88,19 @@ def crystal_form(sheet: Sheet, draft: Draft, name: str, form: str, *, melting: b
     return form or _form_of_name(draft, name) or _reference_form(sheet, draft, melting=melting)
 
 
-def atct(phase: str) -> "Reader":  # noqa: UP037
+def atct(phase: str) -> Callable[[Sheet, Row], None]:
     """ATcT: formation enthalpies at 298.15 K and 0 K, 95 % uncertainty."""
 
     def read(sheet: Sheet, row: Row) -> None:
         draft, _ = sheet.place(row.text("CAS"), row.text("Chemical"), row.text("Formula"))
         doubt = sheet.number("uncertainty")
         doubt = doubt or None  # exactly 0 by definition of the elements: no uncertainty is meant
-        shown = {"uncertainty": doubt, "kind": "expanded-95"}
-        sheet.constant(draft, "Hf", phase, f"Hf{phase}", datum=STATIONARY if draft.charge else DATUM, **shown)  # type: ignore[arg-type]
+        shown: dict[str, Any] = {"uncertainty": doubt, "kind": "expanded-95"}
+        sheet.constant(draft, "Hf", phase, f"Hf{phase}", datum=STATIONARY if draft.charge else DATUM, **shown)
         if phase == "g":
-            sheet.constant(draft, "Hf", "g", "Hfg_0K", temperature=0.0, datum="elements-0K", **shown)  # type: ignore[arg-type]
+            sheet.constant(draft, "Hf", "g", "Hfg_0K", temperature=0.0, datum="elements-0K", **shown)
         elif row.text("Hfl_0K"):
-            sheet.refuse("liquid at 0 K", "a liquid has no state at 0 K, and the file does not say what is meant", "Hfl_0K")
+            sheet.refuse("liquid at 0 K", "no liquid exists at 0 K, and the file does not say what is meant", "Hfl_0K")
 
     return read
 
@@ -214,6 +214,4 @@ def crc_critical(sheet: Sheet, row: Row) -> None:
     draft, _ = sheet.place(row.text("CAS"), row.text("Chemical"))
     for quantity in ("Tc", "Pc"):
         doubt = sheet.number(f"{quantity}_error")
-        sheet.constant(
-            draft, quantity, "l", quantity, temperature=None, uncertainty=doubt or None, kind="expanded-95"
-        )
+        sheet.constant(draft, quantity, "l", quantity, temperature=None, uncertainty=doubt or None, kind="expanded-95")

@@ -69,15 +69,15 @@ def tidy_points(points: list[tuple[float, float]]) -> tuple[list[tuple[float, fl
     notes = []
     kept = [(float(t), float(cp)) for t, cp in points]
     if kept and kept[0][0] == 0.0:
-        notes.append("the point at 0 K is left out: it is a limit, or a blank printed as 0, and no curve goes through it")
+        notes.append("the point at 0 K is left out: a limit, or a blank printed as 0, through which no curve goes")
         kept = kept[1:]
     if any(b[0] < a[0] for a, b in zip(kept, kept[1:], strict=False)):
         raise Refused("temperatures go down", "the temperatures of the table do not go up")
     if any(not cp > 0.0 for _, cp in kept):
         raise Refused("not positive", "a heat capacity of the table is not positive")
-    single = [
-        point for i, point in enumerate(kept) if not (0 < i < len(kept) - 1 and kept[i - 1][0] == point[0] == kept[i + 1][0])
-    ]
+    inner = range(1, len(kept) - 1)
+    middle = {i for i in inner if kept[i - 1][0] == kept[i][0] == kept[i + 1][0]}
+    single = [point for i, point in enumerate(kept) if i not in middle]
     if len(single) < len(kept):
         notes.append("a temperature printed three times or more keeps its first and last value")
     sides: list[list[tuple[float, float]]] = []
@@ -388,9 +388,7 @@ def perry_mixed(sheet: Sheet, row: Row) -> None:
     low, high = sheet.number("Tmin"), sheet.number("Tmax")
     if low is not None and high is not None and low < high:
         more = {"form": form, "conditions": glass, "uncertainty": doubt, "kind": "maximum", "note": note}
-        _polynomial(
-            sheet, draft, phase, numbers, _CALORIE, low, high, carried, unit, exponents=(0, 1, -2, 2), **more
-        )
+        _polynomial(sheet, draft, phase, numbers, _CALORIE, low, high, carried, unit, exponents=(0, 1, -2, 2), **more)
         return
     if any(numbers[1:]):
         raise Refused("no range", "the file gives no range, and an equation without one is not used")

@@ -44,7 +44,7 @@ class Manifest:
 
 @dataclass(frozen=True, slots=True)
 class Loaded:
-    """One file as it was found. ``trouble``: why there are no rows. ``remark``: how it differs from what is recorded."""
+    """One file as found. ``trouble``: why there are no rows. ``remark``: how it differs from what is recorded."""
 
     spec: FileSpec
     file: str  # its name below the package's directory
@@ -67,9 +67,7 @@ def read_manifest(root: Path) -> Manifest:
     name = "_package/files.toml"
     data = read_toml(root / "_package" / "files.toml", file=name)
     try:
-        files = tuple(
-            FileSpec(**{**row, "columns": tuple(row.get("columns", ()))}) for row in data["file"]
-        )
+        files = tuple(FileSpec(**{**row, "columns": tuple(row.get("columns", ()))}) for row in data["file"])
         return Manifest(str(data["version"]), files)
     except (KeyError, TypeError) as error:
         raise SeedError(f"cannot be read: {error}", where=name, hint="version, and a [[file]] for each file") from error
@@ -118,7 +116,8 @@ def _text_rows(text: str, spec: FileSpec) -> tuple[list[tuple[int, Mapping[str, 
     lines = csv.reader(text.splitlines(), delimiter="\t", quoting=csv.QUOTE_NONE)
     header = tuple(next(lines, ()))
     if header != spec.columns:
-        odd = next((b or "nothing" for a, b in zip(spec.columns, (*header, *[""] * 99), strict=False) if a != b), "more")
+        pairs = zip(spec.columns, (*header, *[""] * len(spec.columns)), strict=False)
+        odd = next((found or "nothing" for wanted, found in pairs if wanted != found), "one more")
         raise ValueError(f"its columns have changed, first at {odd!r}: another layout than the one recorded")
     rows: list[tuple[int, Mapping[str, Any]]] = []
     ragged: list[tuple[int, int]] = []

@@ -1,4 +1,4 @@
-"""Names: decoding those that were misread, choosing synonyms worth typing, and leaving out those that two would share."""
+"""Names: those that were misread, synonyms worth typing, and those that two species would share."""
 
 from __future__ import annotations
 

@@ -11,7 +11,7 @@ import re
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field
 from fractions import Fraction
-from functools import lru_cache
+from functools import cache
 from typing import Any, Final
 
 from propdb.errors import FormulaError
@@ -88,7 +88,7 @@ class Draft:
         )
 
 
-@lru_cache(maxsize=None)
+@cache
 def read_formula(text: str) -> tuple[Counts, int] | None:
     """Atoms in Hill order and charge of a formula as files write it, or None."""
     plain = re.sub(r"\s*\((?:g|l|cr|s|aq)\)\s*$", "", text.strip())
@@ -259,14 +259,14 @@ class Registry:
 
     def _new_by_cas(self, number: str, name: str, stated: tuple[Counts, int] | None) -> Draft | None:
         """A species for a CAS RN that is met for the first time; None where nothing gives its formula."""
-        known = self.identifiers.get(_number(number))
+        known: Any = self.identifiers.get(_number(number))
         listed = read_formula(known.formula) if known is not None else None
         exact = listed is not None
         note = ""
-        if listed is not None and (shown := _formula_shown(known.common_name)) not in (None, listed):
-            if shown is not None and {e for e, _ in shown[0]} == {e for e, _ in listed[0]}:
-                note = f"formula by its name; the identifiers of the package list {known.formula}"
-                listed, exact = shown, False
+        shown = _formula_shown(known.common_name) if known is not None else None
+        if listed and shown and shown != listed and {e for e, _ in shown[0]} == {e for e, _ in listed[0]}:
+            note = f"formula by its name; the identifiers of the package list {known.formula}"
+            listed, exact = shown, False
         if known is not None and stated is not None and listed != stated and _but_hydrogen(listed, stated):
             # The identifiers complete radicals with hydrogen, and call ions by the acid.
             listed, exact = stated, False
@@ -340,7 +340,9 @@ class Registry:
             draft.heard.add(folded)
             return ""
         read = read_formula(other.formula)
-        if read is None or dict(read[0]) == dict(mine[0]) or _but_hydrogen(read, mine):
+        if read is None or dict(read[0]) == dict(mine[0]):
+            return ""
+        if _but_hydrogen(read, mine) and any(e in _HYDROGEN for e, _ in read[0]):
             return ""
         return hill(dict(read[0]), read[1])
 
@@ -387,9 +389,7 @@ class Registry:
             )
         return self._make(name, stated, number, None, "", name)
 
-    def _make(
-        self, name: str, listed: tuple[Counts, int], cas: str, known: Any, note: str, file_name: str
-    ) -> Draft:
+    def _make(self, name: str, listed: tuple[Counts, int], cas: str, known: Any, note: str, file_name: str) -> Draft:
         counts, charge = listed
         try:
             mass = molar_mass(dict(counts), self.weights)
@@ -460,7 +460,11 @@ _NONMETALS: Final = frozenset("H D C N O F P S Cl Se Br I B Si".split())
 def _organic(counts: Counts) -> bool:
     """Carbon with hydrogen or more carbon, and no metal: a formula that isomers may share."""
     elements = dict(counts)
-    return elements.keys() <= _NONMETALS and "C" in elements and (len({"H", "D"} & elements.keys()) > 0 or elements["C"] > 1)
+    return (
+        elements.keys() <= _NONMETALS
+        and "C" in elements
+        and (len({"H", "D"} & elements.keys()) > 0 or elements["C"] > 1)
+    )
 
 
 def _has_name(draft: Draft, name: str) -> bool:

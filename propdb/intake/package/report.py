@@ -10,7 +10,6 @@ from typing import Any
 __all__ = ["FileReport", "Refusal"]
 
 
-
 @dataclass(frozen=True, slots=True)
 class Refusal:
     """A row, or a cell of it (``column``), that became no entry."""

@@ -74,10 +74,10 @@ class Sheet:
         """Read every row. One that gives neither an entry nor a refusal is refused as empty."""
         report = self.report
         report.rows = len(self.loaded.rows) + len(self.loaded.ragged)
-        for number, cells in self.loaded.ragged:
+        for number, found in self.loaded.ragged:
             wanted = len(self.loaded.spec.columns) or 2
             report.refusals.append(
-                Refusal(number, "", "cut off", f"{cells} cells where there are {wanted} columns: the row is cut off")
+                Refusal(number, "", "cut off", f"{found} cells where there are {wanted} columns: the row is cut off")
             )
         for number, cells in self.loaded.rows:
             self._row = Row(number, cells)
@@ -270,9 +270,7 @@ class Sheet:
         """Table and name, as the file lists them."""
         return f"{self.title}: {self._name}"
 
-    def _add(
-        self, draft: Draft, row: tuple[Any, ...], params: Mapping[str, Any], status: str, note: str
-    ) -> None:
+    def _add(self, draft: Draft, row: tuple[Any, ...], params: Mapping[str, Any], status: str, note: str) -> None:
         if draft.charge and row[1] not in ("g", "aq"):
             self.refuse("ion in a condensed phase", f"{row[0]} of an ion as {row[1]}: another species must be meant")
             return
@@ -280,5 +278,5 @@ class Sheet:
         carrier = Carrier("chemicals", self.loaded.version, self.loaded.file, self._row.number, self._how)
         self._made.add(number)
         self.context.entries.append(
-            Entry(number, draft.name, *row[:10], params, *row[11:], False, status, note, (carrier,))
+            Entry(number, draft.name, *row[:10], params, *row[11:], False, status, note, (carrier,))  # type: ignore[call-arg]
         )

@@ -18,7 +18,7 @@ __all__ = ["formula_of_name"]
 
 _Atoms = tuple[tuple[str, int], ...]  # sorted (element, count); counts may be negative while a name is read
 
-_STEMS: Final = {"meth": 1, "eth": 2, "prop": 3, "but": 4, "pent": 5, "hex": 6, "hept": 7, "oct": 8, "non": 9, "dec": 10}
+_STEMS: Final = dict(zip("meth eth prop but pent hex hept oct non dec".split(), range(1, 11), strict=True))
 _UNITS: Final = {
     "hen": 1,
     "un": 1,
@@ -218,7 +218,6 @@ _LINKS: Final = {
 
 #: Replacement nomenclature: an atom of the chain, with its hydrogen, becomes another.
 _REPLACEMENTS: Final = {"oxa": _atoms("OC-1H-2"), "thia": _atoms("SC-1H-2"), "aza": _atoms("NC-1H-1")}
-
 
 
 def _by_start(table: dict[str, Any]) -> dict[str, list[tuple[str, Any]]]:

@@ -95,7 +95,9 @@ class Estimator:
     def _estimate(
         self, sheet: Sheet, row: Row, name: str, pressure: Pressure, low: float | None, high: float | None
     ) -> None:
-        nothing = Refused("nothing else known", "no other number of this species, so an estimated latent heat has no use")
+        nothing = Refused(
+            "nothing else known", "no other number of this species, so an estimated latent heat has no use"
+        )
         if not sheet.context.registry.known_by(row.text("CAS")):
             raise nothing
         draft, _ = sheet.place(row.text("CAS"), row.text(name))
@@ -104,7 +106,7 @@ class Estimator:
         if draft.name in self._have:
             raise Refused("not needed", "the species has an enthalpy of vaporisation of its own")
         if draft.vapour == "associating":
-            raise Refused("associating vapour", "its vapour associates, and the relation would need its compressibility")
+            raise Refused("associating vapour", "its vapour associates, and its compressibility is not known")
         if low is None or high is None or not 0.0 < low <= high:
             raise Refused("no range", "the file gives no range, and an equation without one is not used")
         at = min(max(T_STANDARD, low), high)
@@ -116,7 +118,7 @@ class Estimator:
         except (ValueError, OverflowError, ZeroDivisionError):
             raise Refused("no pressure", f"the equation has no value at {at:g} K") from None
         if p > _HIGHEST:
-            raise Refused("pressure too high", f"at {at:g} K, the nearest to 298.15 K, the vapour is at {p / 1e5:.3g} bar")
+            raise Refused("pressure too high", f"{p / 1e5:.3g} bar at {at:g} K, the nearest to 298.15 K")
         point = self._critical.get(draft.name, {})
         change, remark = 1.0, "vapour taken for ideal"
         if "Tc" in point and "Pc" in point and at < point["Tc"]:
