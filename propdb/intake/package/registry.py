@@ -133,6 +133,7 @@ class Registry:
         self.by_name = by_name
         self.aliases = aliases
         self.formulas = formulas
+        self._forms = {alias["form"]: (cas, alias) for cas, alias in aliases.items() if alias["form"]}
         self.drafts: dict[str, Draft] = {}
         self._by_cas: dict[str, Draft] = {}
         self._by_inchikey: dict[str, Draft] = {}
@@ -191,6 +192,9 @@ class Registry:
         alias = self.aliases.get(number)
         if alias is not None:
             return self._note(self._alias(number, alias), name), alias["form"], False
+        if name.lower() in self._forms:  # "Graphite" under the CAS RN of methane
+            cas, alias = self._forms[name.lower()]
+            return self._note(self._alias(cas, alias), name), alias["form"], True
         number = self._checked(number)
         stated = read_formula(formula) if formula else self._claims.get(number)
         if formula and stated is None:
@@ -282,9 +286,10 @@ class Registry:
         if known is not None and exact and not any(e == "C" for e, _ in listed[0]) and not listed[1]:
             # The identifiers drop or add hydrogen of some inorganic compounds; a systematic name knows better.
             counts = formula_of_name(name)
-            if counts is not None and counts != dict(listed[0]):
+            named = None if counts is None else (tuple(Formula(counts).counts.items()), 0)
+            if named is not None and named != listed and _but_hydrogen(named, listed):
                 note = f"formula by its systematic name; the identifiers of the package list {known.formula}"
-                listed, exact = (tuple(Formula(counts).counts.items()), 0), False
+                listed, exact = named, False
         if known is not None and not exact:
             known = None
         twin = self._twin(listed, known)
