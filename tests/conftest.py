@@ -5,8 +5,13 @@ from __future__ import annotations
 import os
 from collections.abc import Iterator
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 import pytest
+
+if TYPE_CHECKING:
+    from propdb.api import Store
+    from propdb.intake.package import Package
 
 ROOT = Path(__file__).resolve().parent.parent
 
@@ -38,3 +43,25 @@ def _no_user_data(tmp_path_factory: pytest.TempPathFactory) -> Iterator[None]:
         if "PROPDB_STORE" not in os.environ:
             patch.setenv("PROPDB_STORE", str(tmp_path_factory.getbasetemp() / "propdb.db"))
         yield
+
+
+@pytest.fixture(scope="session")
+def package() -> Package:
+    """Seed and package files as a build reads them; about as slow as a build."""
+    from propdb.intake.package import load_package
+    from propdb.intake.seeds import load_seed
+    from propdb.intake.where import seed_root
+
+    return load_package(load_seed(seed_root(), identifiers=False), seed_root())
+
+
+@pytest.fixture(scope="session")
+def full_store(package: Package, tmp_path_factory: pytest.TempPathFactory) -> Iterator[Store]:
+    """A store with the packages."""
+    import propdb
+    from propdb.store.write import build
+
+    path = tmp_path_factory.mktemp("full") / "propdb.db"
+    build(path, package.content, versions={"chemicals": package.version})
+    with propdb.open(path) as opened:
+        yield opened

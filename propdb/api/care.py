@@ -16,38 +16,65 @@ __all__ = ["Care"]
 
 
 class Care(Core):
-    """``store info|check|path|rebuild|backup``."""
+    """``store info|intake|check|path|rebuild|backup``."""
 
     def store_info(self, *, coverage: bool = False) -> dict[str, Any]:
         """What the store holds: counts, content hash, log head, versions; with ``coverage`` by quantity and source."""
         info = dict(self._reader.info())
         if coverage:
             info.update(self._reader.coverage())
-            info["paths"] = self._paths()
+            info["connected"] = self._connected()
         return info
 
-    def _paths(self) -> dict[str, int]:
-        """Species whose phases are connected by data: liquid to ideal gas, solid to ideal gas."""
+    def _connected(self) -> dict[str, int]:
+        """Of the species under ``paths`` those whose phases the chosen entries connect at known temperatures."""
         from propdb.errors import PropdbError
-        from propdb.levels.edges import ROOT
 
         levels = self._engine(None, False)
-        counts = {"liquid_to_gas": 0, "solid_to_gas": 0, "elements-298K": 0}
-        for record in self._reader.all_species():
-            name = record.name
-            try:
-                tree = levels.tree(name)
-            except PropdbError:
-                continue
-            by_phase: dict[str, set[int]] = {}
-            for node, component in tree.component.items():
-                if node != ROOT:
-                    by_phase.setdefault(node.phase, set()).add(component)
-            gas = by_phase.get("g", set())
-            counts["liquid_to_gas"] += bool(gas & by_phase.get("l", set()))
-            counts["solid_to_gas"] += bool(gas & by_phase.get("cr", set()))
-            counts["elements-298K"] += any(tree.rooted(n) for n in tree.nodes if n != ROOT)
+        counts = {}
+        for path, names in self._reader.path_species().items():
+            wanted = {"g", "l"} if path == "liquid_to_gas" else {"g", "l", "cr"}
+            counts[path] = 0
+            for name in names:
+                try:
+                    tree = levels.tree(name)
+                except PropdbError:
+                    continue
+                phases: dict[int, set[str]] = {}
+                for node, component in tree.component.items():
+                    if (node.phase, node.form) in tree.tracks:
+                        phases.setdefault(component, set()).add(node.phase)
+                counts[path] += any(wanted <= found for found in phases.values())
         return counts
+
+    def store_intake(self, *, refused: bool = False) -> dict[str, Any]:
+        """What became of each row of the package files at the last build; with ``refused`` each row that gave nothing.
+
+        Returns ``rows, entries, refused, files[{key, file, source, version, sha256, rows, used, refused, entries,
+        moved, points_left_out, trouble, remark, reasons}]`` and, if asked for, ``refusals[{key, row, what, kind,
+        reason, column}]`` and ``moved[{key, row, what, species}]``.
+        """
+        reports = self._reader.policies().get("package-report", [])
+        totals = {name: sum(report[name] for report in reports) for name in ("rows", "entries", "refused")}
+        files = [
+            {name: value for name, value in report.items() if name not in ("refusals", "moves")}
+            | {"moved": len(report["moves"])}
+            for report in reports
+        ]
+        found: dict[str, Any] = {**totals, "files": files}
+        if refused:
+            keys = ("row", "what", "kind", "reason", "column")
+            found["refusals"] = [
+                {"key": report["key"], **dict(zip(keys, row, strict=True))}
+                for report in reports
+                for row in report["refusals"]
+            ]
+            found["moved"] = [
+                {"key": report["key"], "row": row, "what": what, "species": species}
+                for report in reports
+                for row, what, species in report["moves"]
+            ]
+        return found
 
     def store_check(self) -> dict[str, Any]:
         """Check the file, its content hash and the chain of its log. Raises IntegrityError with the first problems."""
@@ -73,9 +100,15 @@ class Care(Core):
         """Where the store is."""
         return self._path
 
-    def store_rebuild(self, progress: Callable[[str], None] | None = None) -> dict[str, Any]:
-        """Bring in the seed of this version again; own entries, datums and decisions stay."""
-        report = build_seed(self._path, progress)
+    def store_rebuild(
+        self, progress: Callable[[str], None] | None = None, *, open_data: bool = False
+    ) -> dict[str, Any]:
+        """Bring in the seed of this version again; own entries, datums and decisions stay.
+
+        With ``open_data`` also what the installed ``chemicals`` library carries; without it entries that came from there
+        become inactive.
+        """
+        report = build_seed(self._path, progress, open_data=open_data)
         self.close()
         self._forget()
         return asdict(report)

@@ -1,13 +1,18 @@
-"""Building a store from the seed of this version."""
+"""Building a store from the seed of this version, and if asked for from the open data of the packages it stands on."""
 
 from __future__ import annotations
 
 import sys
 from collections.abc import Callable
 from pathlib import Path
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 from propdb._version import __version__
+
+if TYPE_CHECKING:
+    from propdb.model.crosscheck import Crosscheck
+    from propdb.model.records import Entry, Species
+    from propdb.vetting.crosscheck import Checker
 
 __all__ = ["build_seed", "to_stderr"]
 
@@ -17,8 +22,17 @@ def to_stderr(text: str) -> None:
     print(text, file=sys.stderr, flush=True)
 
 
-def build_seed(path: Path, progress: Callable[[str], None] | None) -> Any:
-    """Bring the seed of this version into a store, in one transaction."""
+def build_seed(path: Path, progress: Callable[[str], None] | None, *, open_data: bool = False) -> Any:
+    """Bring the seed of this version into a store: one base, one transaction.
+
+    Parameters
+    ----------
+    path : Path
+    progress : callable or None
+        Called with one line of text now and then.
+    open_data : bool
+        Bring in what the installed ``chemicals`` library carries, too.
+    """
     import sqlite3
 
     import chemicals
@@ -28,11 +42,30 @@ def build_seed(path: Path, progress: Callable[[str], None] | None) -> Any:
     from propdb.store.write import build
     from propdb.vetting.crosscheck import Checker, settle
 
-    if progress is not None:
-        progress(f"propdb: building the store {path}")
-    content = load_seed(seed_root())
+    tell = None if progress is None else lambda text: progress(f"propdb: {text}")
+    if tell is not None:
+        tell(f"building the store {path}")
+    root = seed_root()
+    content = load_seed(root)
+    checker = Checker(content.policy["lineage"], content.sources)
+    content = settle(content, checker)
     versions = {"propdb": __version__, "python": sys.version.split()[0], "sqlite": sqlite3.sqlite_version}
     versions["chemicals"] = chemicals.__version__
-    tell = None if progress is None else lambda text: progress(f"propdb: {text}")
-    checker = Checker(content.policy["lineage"], content.sources)
-    return build(path, settle(content, checker), versions=versions, progress=tell, checker=checker)
+    if open_data:
+        from propdb.intake.package import load_package
+
+        content = load_package(content, root, progress=tell).content
+    return build(path, content, versions=versions, progress=tell, checker=_Typed(checker))
+
+
+class _Typed:
+    """Checks what was typed only: comparing the rows of the library with the library itself says nothing."""
+
+    def __init__(self, checker: Checker) -> None:
+        self._checker = checker
+        self.package = checker.package
+
+    def __call__(self, entry: Entry, species: Species) -> tuple[Crosscheck, ...]:
+        if entry.carriers and all(carrier.package == "chemicals" for carrier in entry.carriers):
+            return ()
+        return self._checker(entry, species)

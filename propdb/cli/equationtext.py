@@ -118,15 +118,64 @@ def _watson(params: Params) -> list[str]:
     return [f"dh = {_number(params['dh'])} ((Tc - T)/(Tc - T1))^{exponent}   [J/mol], {known}"]
 
 
+def _named(head: str, unit: str, names: Sequence[str], key: str) -> Callable[[Params], list[str]]:
+    """The formula, what it needs beside its coefficients, and a line with these."""
+
+    def write(params: Params) -> list[str]:
+        more = "".join(
+            f", {name} = {_number(params[name])} {unit_}".rstrip() for name, unit_ in _BESIDE if name in params
+        )
+        line = ", ".join(f"{name} = {_number(value)}" for name, value in zip(names, params[key], strict=False))
+        return [f"{head}   [{unit}]{more}", f"  {line}"]
+
+    return write
+
+
+#: Parameters of an equation beside its coefficients, with their units.
+_BESIDE: Final = (
+    ("Tc", "K"),
+    ("I", "K"),
+    ("J", ""),
+    ("scale", ""),
+    ("gas_constant", "J/mol/K"),
+)
+
+
 _WRITERS: Final[Mapping[str, Callable[[Params], list[str]]]] = {
+    "aly-lee": _named("cp = A + B [(C/T)/sinh(C/T)]^2 + D [(E/T)/cosh(E/T)]^2", "J/mol/K", "ABCDE", "coefficients"),
     "constant": _constant,
     "constant-latent": _constant_latent,
     "nasa7": _nasa("cp/R = a1 + a2 T + a3 T^2 + a4 T^3 + a5 T^4", ("a6", "a7"), 5),
     "nasa9": _nasa("cp/R = a1/T^2 + a2/T + a3 + a4 T + a5 T^2 + a6 T^3 + a7 T^4", ("b1", "b2"), 7),
+    "perry-liquid": _named(
+        "cp = scale (A^2/t + B - 2AC t - AD t^2 - C^2 t^3/3 - CD t^4/2 - D^2 t^5/5), t = 1 - T/Tc",
+        "J/mol/K",
+        "ABCD",
+        "coefficients",
+    ),
+    "perry-vaporisation": _named("dh = A (1 - Tr)^(B + C Tr + D Tr^2)", "J/mol", "ABCD", "coefficients"),
     "polynomial": _polynomial,
     "shomate": _shomate,
+    "trc-gas": _named(
+        "cp/R = a0 + (a1/T^2) exp(-a2/T) + a3 y^2 + (a4 - a5/(T - a7)^2) y^8, y = (T - a7)/(T + a6), 0 below a7",
+        "1",
+        [f"a{number}" for number in range(8)],
+        "a",
+    ),
     "union": _union,
+    "vdi-vaporisation": _named(
+        "dh = R Tc (A t^(1/3) + B t^(2/3) + C t + D t^2 + E t^6), t = 1 - T/Tc", "J/mol", "ABCDE", "coefficients"
+    ),
     "watson": _watson,
+    "zabransky-cubic": _named(
+        "c/R = A1 + A2 (T/100) + A3 (T/100)^2 + A4 (T/100)^3", "1", ("A1", "A2", "A3", "A4"), "a"
+    ),
+    "zabransky-quasi": _named(
+        "c/R = A1 ln(1 - Tr) + A2/(1 - Tr) + A3 + A4 Tr + A5 Tr^2 + A6 Tr^3",
+        "1",
+        [f"A{number}" for number in range(1, 7)],
+        "a",
+    ),
 }
 #: Equations that have a text of their own; a test compares them with the registered ones.
 KNOWN: Final = frozenset(_WRITERS) | {"table"}

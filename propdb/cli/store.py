@@ -1,4 +1,4 @@
-"""``propdb store info|check|path|log|setting|rebuild|backup``."""
+"""``propdb store info|intake|check|path|log|setting|rebuild|backup``."""
 
 from __future__ import annotations
 
@@ -9,7 +9,7 @@ import typer
 
 from propdb.cli.app import Call, family, note, verb, write
 
-app = family("Look after the store: info, check, path, log, setting, rebuild, backup.")
+app = family("Look after the store: info, intake, check, path, log, setting, rebuild, backup.")
 
 
 @verb(app, "propdb store info", "propdb store info --coverage")
@@ -24,6 +24,18 @@ def info(
 
     found = call.store.store_info(coverage=coverage)
     call.show(lambda: found, lambda: info_text(found))
+
+
+@verb(app, "propdb store intake", "propdb store intake --refused")
+def intake(
+    call: Call,
+    refused: Annotated[bool, typer.Option("--refused", help="List every row that gave nothing, and why.")] = False,
+) -> None:
+    """Show what became of each row of the package files when the store was built."""
+    from propdb.cli.storetext import intake_text
+
+    found = call.store.store_intake(refused=refused)
+    call.show(lambda: found, lambda: intake_text(found))
 
 
 @verb(app, "propdb store check")
@@ -87,11 +99,20 @@ def setting(
 
 
 @verb(app, "propdb store rebuild", without=("as_of", "json"))
-def rebuild(call: Call) -> None:
-    """Bring in the data of this version again; what you added or decided stays."""
+def rebuild(
+    call: Call,
+    open_data: Annotated[
+        bool,
+        typer.Option("--open-data", help="Bring in what the chemicals library carries, too: 50,000 entries, unvetted."),
+    ] = False,
+) -> None:
+    """Bring in the data of this version again; what you added or decided stays.
+
+    Without --open-data, entries that came from the library by an earlier rebuild become inactive.
+    """
     from propdb.cli.storetext import info_text
 
-    write(info_text(call.unopened.store_rebuild(note)))
+    write(info_text(call.unopened.store_rebuild(note, open_data=open_data)))
 
 
 @verb(app, "propdb store backup my-backup.db", without=("as_of", "json"))

@@ -24,6 +24,30 @@ def info_text(found: Any) -> str:
     return "\n".join(lines)
 
 
+def intake_text(found: Mapping[str, Any]) -> str:
+    """One line for each file, what was refused and why; then, if asked for, each row."""
+    if not found["files"]:
+        return "The store was built without the open data; propdb store rebuild --open-data brings it in."
+    heading = ("file", "rows", "entries", "refused", "moved", "source")
+    keys = ("key", "rows", "entries", "refused", "moved", "source")
+    rows = [heading, *(tuple(str(report[key]) for key in keys) for report in found["files"])]
+    lines = columns(rows, right=(1, 2, 3, 4))
+    lines += ["", f"{found['rows']} rows, {found['entries']} entries, {found['refused']} rows refused"]
+    for report in found["files"]:
+        said = [f"{count} {kind}" for kind, count in report["reasons"].items()]
+        said += [report["trouble"], report["remark"]]
+        if report["points_left_out"]:
+            said.append(f"{report['points_left_out']} points of tables left out")
+        if any(said):
+            lines.append(f"{report['key']}: {'; '.join(filter(None, said))}")
+    for row in found.get("refusals", ()):
+        place = f"{row['key']}, row {row['row']}" + (f", {row['column']}" if row["column"] else "")
+        lines.append(f"{place}: {row['what']}: {row['reason']}")
+    for row in found.get("moved", ()):
+        lines.append(f"{row['key']}, row {row['row']}: {row['what']}: filed under {row['species']}")
+    return "\n".join(lines)
+
+
 def _is_table(value: Any) -> bool:
     return isinstance(value, (list, tuple)) and bool(value) and all(isinstance(row, Mapping) for row in value)
 

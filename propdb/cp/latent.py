@@ -14,7 +14,7 @@ from propdb.cp._blocks import FloatArray, Temperatures, not_a_temperature, refus
 from propdb.cp._params import number, only
 from propdb.errors import EquationError, TemperatureOutOfRange
 
-__all__ = ["ConstantLatent", "LatentHeat", "Watson"]
+__all__ = ["ConstantLatent", "LatentHeat", "RangeTest", "Watson", "checked"]
 
 
 @runtime_checkable
@@ -46,7 +46,8 @@ class LatentHeat(Protocol):
         """Its slope [J/mol/K]."""
 
 
-def _checked(T: float | Temperatures) -> float | FloatArray:
+def checked(T: float | Temperatures) -> float | FloatArray:
+    """`T` [K] as a float or float64 array, refused where it is no temperature."""
     if isinstance(T, (int, float)):
         t = float(T)
         if not 0.0 < t < math.inf:
@@ -58,8 +59,8 @@ def _checked(T: float | Temperatures) -> float | FloatArray:
     return x
 
 
-class _Range:
-    """Range test shared by both equations."""
+class RangeTest:
+    """Range test that latent heats share."""
 
     __slots__ = ()
     tmin: float
@@ -80,7 +81,7 @@ class _Range:
 
 
 @dataclass(frozen=True, slots=True)
-class ConstantLatent(_Range):
+class ConstantLatent(RangeTest):
     """The enthalpy of a transition known at one temperature only.
 
     Parameters
@@ -129,7 +130,7 @@ class ConstantLatent(_Range):
         TemperatureError
             If a temperature is not a finite number above 0 K.
         """
-        t = _checked(T)
+        t = checked(T)
         return self.value if isinstance(t, float) else np.full(t.shape, self.value)
 
     @overload
@@ -144,7 +145,7 @@ class ConstantLatent(_Range):
         TemperatureError
             If a temperature is not a finite number above 0 K.
         """
-        t = _checked(T)
+        t = checked(T)
         return 0.0 if isinstance(t, float) else np.zeros(t.shape)
 
     @classmethod
@@ -159,7 +160,7 @@ class ConstantLatent(_Range):
 
 
 @dataclass(frozen=True, slots=True)
-class Watson(_Range):
+class Watson(RangeTest):
     """Enthalpy of vaporisation from one known value: dh = dh1 ((Tc - T)/(Tc - T1))^exponent.
 
     K. M. Watson, Ind. Eng. Chem. 35 (1943).
@@ -208,7 +209,7 @@ class Watson(_Range):
         return self.Tc
 
     def _reduced(self, T: float | Temperatures, *, below: bool) -> float | FloatArray:
-        t = _checked(T)
+        t = checked(T)
         gap = (self.Tc - t) / (self.Tc - self.T1)
         low = float(np.min(gap)) if np.size(gap) else 1.0
         if low < 0.0 or (below and low == 0.0):

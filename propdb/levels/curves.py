@@ -6,8 +6,8 @@ ranges. ``Formulation`` is water's real fluid, liquid included. Both give the le
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-from dataclasses import dataclass, field
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass, field, replace
 from typing import Any, NamedTuple, Protocol
 
 from propdb.errors import SplitError, TemperatureOutOfRange
@@ -46,14 +46,30 @@ class Track(Protocol):
     def legs(self, start: Any, end: Any) -> list[Leg]: ...
 
 
+#: A transition belongs to the split of a table whose temperature differs by no more than this [K].
+SPLIT_SLACK = 2.0
+
+
 @dataclass(frozen=True, slots=True)
 class Piece:
-    """One entry of a composite curve over the part of its range where it is the best."""
+    """One entry of a composite curve over the part of its range where it is the best.
+
+    ``side`` numbers the sides of a table that a doubled temperature splits.
+    """
 
     tmin: float
     tmax: float
     entry: Entry
     equation: Any
+    side: int = 0
+
+
+@dataclass(frozen=True, slots=True)
+class Split:
+    """A doubled temperature of a table within a curve, and the entry that states its enthalpy, if one does."""
+
+    temperature: float
+    stated: Entry | None = None
 
 
 def range_text(ranges: Sequence[tuple[float, float]]) -> str:
@@ -70,6 +86,7 @@ class Curve:
     form: str
     pieces: tuple[Piece, ...]
     policy: Policy = field(repr=False)
+    splits: tuple[Split, ...] = ()
     boiling: float | None = None  # [K], of a liquid: above it the curve runs along saturation
     critical: Critical | None = None
     extrapolate: bool = False
@@ -85,8 +102,10 @@ class Curve:
         return merged
 
     def covers(self, t1: float, t2: float | None = None) -> bool:
-        """Do the stated ranges cover ``t1`` (and all up to ``t2``) without a gap? [K]"""
+        """Do the stated ranges cover ``t1`` (and all up to ``t2``) without a gap or an unstated split?"""
         low, high = (t1, t1) if t2 is None else (min(t1, t2), max(t1, t2))
+        if any(split.stated is None for split in self.between(low, high)):
+            return False
         return any(a - PRINTED_SLACK <= low and high <= b + PRINTED_SLACK for a, b in self.ranges())
 
     def legs(self, start: float, end: float) -> list[Leg]:
@@ -98,9 +117,21 @@ class Curve:
             return []
         covered = self.covers(start, end)
         if not covered and not self.extrapolate:
+            unknown = next((s for s in self.between(min(start, end), max(start, end)) if s.stated is None), None)
+            if unknown is not None:
+                raise self.split_error(unknown.temperature)
             raise self.out_of_range(start if not self.covers(start) else end)
         low, high = min(start, end), max(start, end)
-        legs = [self._leg(piece, a, b) for piece, a, b in self._cuts(low, high)]
+        crossed = list(self.between(low, high))
+        unknown = next((split for split in crossed if split.stated is None), None)
+        if unknown is not None:
+            raise self.split_error(unknown.temperature)
+        legs = []
+        for piece, a, b in self._cuts(low, high):
+            while crossed and crossed[0].temperature <= a:
+                legs.append(self._transition_leg(crossed.pop(0)))
+            legs.append(self._leg(piece, a, b))
+        legs += [self._transition_leg(split) for split in crossed]
         if self.phase == "l" and self.boiling is not None and high > self.boiling + BOILING_SLACK:
             legs.append(self._saturation_leg(max(low, self.boiling), high))
         if end > start:
@@ -108,6 +139,36 @@ class Curve:
         from propdb.levels.parts import scale
 
         return [scale(leg, -1.0) for leg in reversed(legs)]
+
+    def between(self, low: float, high: float) -> Iterator[Split]:
+        """Splits from ``low`` up to ``high`` [K]; a state at a split belongs to the side below."""
+        return (split for split in self.splits if low <= split.temperature < high)
+
+    def split_error(self, t: float) -> SplitError:
+        """The enthalpy across a split is not known."""
+        return SplitError(
+            f"{self.species}, {self.phase}: the table of heat capacities is split at {t:g} K and the enthalpy of the "
+            "transition is not stated",
+            hint="add an entry Htr at that temperature (0 if there is none), or stay on one side",
+            T=t,
+        )
+
+    def _transition_leg(self, split: Split) -> Leg:
+        entry = split.stated
+        assert entry is not None
+        assert entry.value is not None
+        size, unit, stated = self.policy.standard(entry)
+        return Leg(
+            what="transition",
+            species=self.species,
+            start=f"{self.phase}, {celsius(split.temperature)}",
+            end=f"{self.phase}, {celsius(split.temperature)}",
+            value=entry.value,
+            parts=(Part(entry.id, entry.value if unit == "%" else 1.0, size, stated),),
+            entry=entry.id,
+            source=entry.source,
+            note=f"the split of the table at {split.temperature:g} K",
+        )
 
     def out_of_range(self, t: float) -> TemperatureOutOfRange:
         name = f"{self.phase} ({self.form})" if self.form else self.phase
@@ -199,32 +260,71 @@ def build_curve(
     extrapolate: bool = False,
     boiling: float | None = None,
     critical: Critical | None = None,
+    transitions: Sequence[Entry] = (),
 ) -> Curve | None:
     """The composite curve: at each temperature the best usable entry whose range covers it. None where there is none.
 
-    A heat capacity given at one temperature only is a curve of no length: it serves when extrapolation is asked for.
+    A table with a doubled temperature serves side by side; the enthalpy between the sides is what an entry of
+    ``transitions`` states, best first, and otherwise nobody's guess. A heat capacity given at one temperature only is a
+    curve of no length: it serves when extrapolation is asked for.
     """
     usable = [e for e in choose(entries, policy) if e.equation and e.equation != "iapws95"]
-    spans = [(e, float(e.tmin), float(e.tmax)) for e in usable if e.tmin is not None and e.tmax is not None]
+    spans = [side for e in usable if e.tmin is not None and e.tmax is not None for side in _sides(e)]
     if not spans and extrapolate:
         points = [e for e in choose(entries, policy) if not e.equation and e.value is not None]
-        spans = [(e, e.temperature or 298.15, e.temperature or 298.15) for e in points[:1]]
+        spans = [Piece(e.temperature or 298.15, e.temperature or 298.15, e, None) for e in points[:1]]
     if not spans:
         return None
-    marks = sorted({t for _, a, b in spans for t in (a, b)})
+    marks = sorted({t for span in spans for t in (span.tmin, span.tmax)})
     pieces: list[Piece] = []
     stretches = list(zip(marks, marks[1:], strict=False)) or [(marks[0], marks[0])]
     for a, b in stretches:
-        best = next((e for e, low, high in spans if low <= a and b <= high), None)
+        best = next((span for span in spans if span.tmin <= a and b <= span.tmax), None)
         if best is None:
             continue
-        if pieces and pieces[-1].entry.id == best.id and pieces[-1].tmax == a:
-            pieces[-1] = Piece(pieces[-1].tmin, b, best, pieces[-1].equation)
+        last = pieces[-1] if pieces else None
+        if last is not None and last.entry.id == best.entry.id and last.side == best.side and last.tmax == a:
+            pieces[-1] = replace(last, tmax=b)
         else:
-            pieces.append(Piece(a, b, best, _equation(best)))
-    return Curve(
-        species, phase, form, tuple(pieces), policy, boiling=boiling, critical=critical, extrapolate=extrapolate
+            pieces.append(Piece(a, b, best.entry, best.equation or _equation(best.entry), best.side))
+    splits = tuple(
+        Split(a.tmax, _stated(a.tmax, transitions))
+        for a, b in zip(pieces, pieces[1:], strict=False)
+        if a.entry.id == b.entry.id and a.side != b.side and a.tmax == b.tmin
     )
+    return Curve(
+        species,
+        phase,
+        form,
+        tuple(pieces),
+        policy,
+        splits=splits,
+        boiling=boiling,
+        critical=critical,
+        extrapolate=extrapolate,
+    )
+
+
+def _sides(entry: Entry) -> list[Piece]:
+    """The entry over its range; a table with doubled temperatures in its sides."""
+    nodes = entry.params.get("T", ()) if entry.equation == "table" else ()
+    if len(set(nodes)) < len(nodes):
+        from propdb.cp.registry import build_heat_capacity
+
+        table: Any = build_heat_capacity(entry.equation, entry.params)
+        if table.unstated:
+            return [Piece(part.tmin, part.tmax, entry, part, side) for side, part in enumerate(table.parts())]
+    return [Piece(float(entry.tmin or 0.0), float(entry.tmax or 0.0), entry, None)]
+
+
+def _stated(t: float, transitions: Sequence[Entry]) -> Entry | None:
+    """The entry that states the enthalpy of the split at ``t`` [K]: the nearest in temperature, the best of these."""
+    near = [
+        (abs(e.temperature - t), place, e)
+        for place, e in enumerate(transitions)
+        if e.value is not None and e.temperature is not None and abs(e.temperature - t) <= SPLIT_SLACK
+    ]
+    return min(near, key=lambda item: item[:2])[2] if near else None
 
 
 def _equation(entry: Entry) -> Any:

@@ -214,6 +214,8 @@ def _latent_edges(
             low = e.tmin if e.tmin is not None else 0.0
             high = e.tmax if e.tmax is not None else float("inf")
             points = [(t, float(equation.dh(t))) for t in (T_STANDARD, boiling) if t is not None and low <= t <= high]
+            if not points and low > 0.0:  # neither lies in the range: its lower end, where the vapour is thin
+                points = [(low, float(equation.dh(low)))]
         elif e.value is not None:
             at = e.temperature if e.temperature is not None else boiling
             points = [] if at is None else [(at, e.value)]

@@ -5,7 +5,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import replace
 from fractions import Fraction
 
@@ -91,6 +91,7 @@ class Levels(States):
                 extrapolate=self.extrapolate,
                 boiling=boiling if phase == "l" else None,
                 critical=critical if phase == "l" else None,
+                transitions=self._transitions(entries, phase, form),
             )
             if curve is not None:
                 tree.tracks[(phase, form)] = curve
@@ -111,6 +112,23 @@ class Levels(States):
         )
         tree.grow(edges, extrapolate=self.extrapolate)
         return tree
+
+    def _transitions(self, entries: Sequence[Entry], phase: str, form: str) -> list[Entry]:
+        """Entries that may state the enthalpy of a split in a table of this phase and form, best first.
+
+        A crystal's table goes through its forms; a table of one named form through transitions of that form within
+        itself only, and a liquid's through its glass step.
+        """
+        return [
+            e
+            for e in choose(entries, self.policy)
+            if e.quantity == "Htr"
+            and (
+                (phase == "cr" and e.phase == "cr" and e.to.partition(":")[0] == "cr" and form in ("", e.form))
+                or (phase == "l" and e.phase == "am" and e.to.partition(":")[0] == "l")
+                or (phase == "l" and e.phase == "l" and e.to.partition(":")[0] == "l")
+            )
+        ]
 
     def _foreign_zero(self, record: Species) -> Callable[[Entry, Node], tuple[float, tuple[Part, ...]]]:
         def shift(entry: Entry, node: Node) -> tuple[float, tuple[Part, ...]]:

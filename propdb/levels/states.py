@@ -195,6 +195,9 @@ class States:
                 return "cr", forms[0]
             if zero_forms:
                 return "cr", zero_forms[0]
+            if "" in forms and t == T_STANDARD:  # sources that name no form mean the one stable at 298.15 K
+                named = [f for f in forms if f]
+                return "cr", named[0] if len(named) == 1 else ""
             raise NoData(
                 f"which crystal form of {species} is stable at {t:.7g} K is not stated in the store",
                 hint=f"it knows {', '.join(f for f in forms if f) or 'no crystal'}; name one, e.g. own:cr:FORM@25C",

@@ -87,6 +87,7 @@ class Member:
     note: str
     printed: bool
     carriers: tuple[Carrier, ...]
+    row: tuple[Any, ...] = ()  # the hashed fields, once they have been validated
 
 
 def members(content: Content) -> dict[str, Member]:
@@ -256,12 +257,14 @@ def _bad(problem: str, where: str, hint: str = "") -> InvalidInput:
 
 def _storable(text: str, what: str, where: str) -> None:
     """Refuse what SQLite cannot hold, and control characters in what people must type."""
+    if text.isprintable():
+        return
     if any(unicodedata.category(char) in ("Cc", "Cs") for char in text):
         raise _bad(f"{what} {text!r} holds a control character", where, "leave it out")
 
 
-def validate_entry(entry: Entry, species: Species) -> None:
-    """Refuse what the store would refuse, in words.
+def validate_entry(entry: Entry, species: Species, mark: str = "") -> tuple[Any, ...]:
+    """Refuse what the store would refuse, in words; else the hashed fields. ``mark``: identity of the species.
 
     Raises
     ------
@@ -294,9 +297,10 @@ def validate_entry(entry: Entry, species: Species) -> None:
         raise _bad(f"the uncertainty {entry.uncertainty:g} is negative", where)
     if entry.species != species.name:
         raise _bad(f"the entry is of {entry.species!r}, not of {species.name!r}", where)
-    right = entry_id(entry, species)
-    if entry.id != right:
+    row = hashed_row(entry)
+    if entry.id != row_id(mark or identity(species), row):
         raise _bad(f"the id {entry.id!r} is not that of its fields", where, "set it with propdb.store.content.with_id")
+    return row
 
 
 def validate(content: Content) -> dict[str, Member]:
@@ -321,6 +325,7 @@ def validate(content: Content) -> dict[str, Member]:
         if mark in by_identity:
             raise _bad(f"the same species as {by_identity[mark]!r}: CAS RN, formula and charge are alike", where)
         by_name[species.name], by_identity[mark] = species, species.name
+    marks = {name: mark for mark, name in by_identity.items()}
     keys: set[str] = set()
     for source in content.sources:
         _storable(source.key, "the key", f"source {source.key!r}")
@@ -330,10 +335,14 @@ def validate(content: Content) -> dict[str, Member]:
     for number, status in content.statuses.items():
         if status not in STATUSES:
             raise _bad(f"unknown status {status!r}", f"entry {number}", f"one of {' '.join(STATUSES)}")
+    rows: dict[str, tuple[Any, ...]] = {}
     for entry in content.entries:
         if entry.species not in by_name:
             raise NotFound(f"the base holds no species {entry.species!r}", where=f"entry {entry.id}")
         if entry.source not in keys and entry.source:
             raise NotFound(f"the base holds no source {entry.source!r}", where=f"entry {entry.id}")
-        validate_entry(entry, by_name[entry.species])
-    return members(content)
+        rows[entry.id] = validate_entry(entry, by_name[entry.species], marks[entry.species])
+    held = members(content)
+    for number, member in held.items():
+        member.row = rows[number]
+    return held

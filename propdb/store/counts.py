@@ -15,7 +15,7 @@ from propdb.store.view import LOGGED, MEMBER
 if TYPE_CHECKING:
     from propdb.store.read import Reader
 
-__all__ = ["coverage", "info"]
+__all__ = ["coverage", "info", "path_species"]
 
 #: Active entries with their present status, each once (a base's word goes before the user's).
 _ACTIVE: Final = f"""
@@ -25,6 +25,14 @@ _ACTIVE: Final = f"""
     WHERE {MEMBER} GROUP BY e.num
 """
 _USABLE: Final = ", ".join(f"'{status}'" for status in USABLE_STATUSES)
+_TOTAL_KEYS: Final = ("quantity", "phase", "stored", "without_estimates", "usable", "over_temperature")
+_TOTALS: Final = f"""
+    SELECT quantity, phase, count(DISTINCT species),
+           count(DISTINCT CASE WHEN status <> 'estimate' THEN species END),
+           count(DISTINCT CASE WHEN status IN ({_USABLE}) THEN species END),
+           count(DISTINCT CASE WHEN equation <> '' AND status IN ({_USABLE}) THEN species END)
+    FROM active_entry GROUP BY quantity, phase ORDER BY quantity, phase
+"""
 
 
 def info(reader: Reader) -> dict[str, Any]:
@@ -82,6 +90,8 @@ def coverage(reader: Reader, *, usable: bool = True) -> dict[str, Any]:
     -------
     dict
         ``species`` (with at least one such entry), ``coverage[{quantity, phase, source, species, entries}]``,
+        ``totals[{quantity, phase, stored, without_estimates, usable, over_temperature}]``: the species with such an
+        entry whatever its status, with one that is no estimate, one that may enter a computation, and an equation;
         ``paths{liquid_to_gas, solid_to_gas}``: the species with a heat-capacity equation in each phase and a link
         between them (a latent heat, or formation enthalpies of both phases at one temperature). It counts what is
         there; whether the ranges meet, an evaluation says.
@@ -98,18 +108,34 @@ def coverage(reader: Reader, *, usable: bool = True) -> dict[str, Any]:
                 "SELECT quantity, phase, source, count(DISTINCT species), count(*) FROM active_entry"
                 f" WHERE {counted} GROUP BY quantity, phase, source ORDER BY quantity, phase, source"
             ).fetchall()
-            paths = _paths(conn)
+            totals = conn.execute(_TOTALS).fetchall()
+            paths = {name: len(found) for name, found in _paths(conn).items()}
         finally:
             conn.execute("DROP TABLE temp.active_entry")
     keys = ("quantity", "phase", "source", "species", "entries")
     return {
         "species": species,
         "coverage": [dict(zip(keys, row, strict=True)) for row in rows],
+        "totals": [dict(zip(_TOTAL_KEYS, row, strict=True)) for row in totals],
         "paths": paths,
     }
 
 
-def _paths(conn: sqlite3.Connection) -> dict[str, int]:
+def path_species(reader: Reader) -> dict[str, list[str]]:
+    """Names of the species that :func:`coverage` counts under ``paths``."""
+    conn = reader.conn
+    with reader._snapshot():
+        conn.execute("DROP TABLE IF EXISTS temp.active_entry")
+        conn.execute(f"CREATE TEMP TABLE active_entry AS {_ACTIVE}", reader._view)
+        try:
+            paths = _paths(conn)
+        finally:
+            conn.execute("DROP TABLE temp.active_entry")
+        names = dict(conn.execute("SELECT id, name FROM species"))
+    return {name: sorted(names[number] for number in found) for name, found in paths.items()}
+
+
+def _paths(conn: sqlite3.Connection) -> dict[str, set[int]]:
     def having(condition: str) -> set[int]:
         sql = f"SELECT DISTINCT species FROM active_entry WHERE status IN ({_USABLE}) AND {condition}"
         return {row[0] for row in conn.execute(sql)}
@@ -128,4 +154,4 @@ def _paths(conn: sqlite3.Connection) -> dict[str, int]:
     vaporising = having("quantity = 'Hvap'") | linked("l", "g")
     melting = having("quantity = 'Hfus'") | linked("cr", "l")
     liquid_to_gas = curve["l"] & curve["g"] & vaporising
-    return {"liquid_to_gas": len(liquid_to_gas), "solid_to_gas": len(liquid_to_gas & curve["cr"] & melting)}
+    return {"liquid_to_gas": liquid_to_gas, "solid_to_gas": liquid_to_gas & curve["cr"] & melting}

@@ -316,6 +316,12 @@ class Reader(View):
 
         return counts.coverage(self, usable=usable)
 
+    def path_species(self) -> dict[str, list[str]]:
+        """Species with a complete path; see :func:`propdb.store.counts.path_species`."""
+        from propdb.store import counts
+
+        return counts.path_species(self)
+
 
 def _order(entry: Entry) -> tuple[Any, ...]:
     return (

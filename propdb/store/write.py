@@ -131,7 +131,8 @@ def _write(
     put_bodies(db, "policy", "key", "value", {key: canonical(value) for key, value in content.policy.items()}, own=0)
     rows, added, changed = _put_base_species(db, content.species)
     entries_before = conn.execute("SELECT count(*) FROM entry").fetchone()[0]
-    numbers = put_entries(conn, list(held.values()), {s.name: s for s in content.species}, tell)
+    # In the order of their ids, which is that of the index: a third faster than as they come.
+    numbers = put_entries(conn, [held[number] for number in sorted(held)], {s.name: s for s in content.species}, tell)
     listed = [(rows[m.entry.species], number, m.status, m.note, int(m.printed)) for number, m in held.items()]
     payload = {
         "content_hash": digest,
@@ -260,9 +261,10 @@ def insert_species(db: Database, new: Sequence[tuple[Species, Mapping[str, Any]]
     conn = db.conn
     start = conn.execute("SELECT coalesce(max(id), 0) + 1 FROM species").fetchone()[0]
     rows = {one.name: start + i for i, (one, _) in enumerate(new)}
-    db.table("species").insert_all(
-        {"id": rows[one.name], "canon": rows[one.name], "own": own, "active": 1, **row} for one, row in new
-    )
+    if new:
+        columns = ("id", "canon", "own", "active", *new[0][1])
+        sql = f"INSERT INTO species ({', '.join(columns)}) VALUES ({', '.join('?' * len(columns))})"
+        conn.executemany(sql, ((rows[one.name], rows[one.name], own, 1, *row.values()) for one, row in new))
     _insert_names(conn, ((rows[one.name], *name) for one, _ in new for name in sorted(name_rows(one))))
     return rows
 
@@ -309,7 +311,7 @@ def put_entries(
     done = 0
     todo = iter(held)
     while chunk := list(islice(todo, _CHUNK)):
-        conn.executemany(sql, ((m.entry.id, marks[m.entry.species], *hashed_row(m.entry)) for m in chunk))
+        conn.executemany(sql, ((m.entry.id, marks[m.entry.species], *(m.row or hashed_row(m.entry))) for m in chunk))
         done += len(chunk)
         if tell is not None:
             tell(f"wrote {done} of {len(held)} entries")

@@ -16,7 +16,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from scipy.integrate import fixed_quad
 
-from propdb.cp import EQUATIONS, Equation, LatentHeat, build
+from propdb.cp import EQUATIONS, Equation, LatentHeat, TrcGas, build
 from propdb.cp._blocks import BLOCK
 from propdb.cp.registry import HEAT_CAPACITY, LATENT_HEAT
 from propdb.errors import TemperatureError
@@ -123,16 +123,85 @@ def _watson(draw: st.DrawFn) -> Params:
     return {"dh": draw(_number(500.0, 60_000.0)), "T1": t1, "Tc": tc, "exponent": draw(_number(0.1, 1.5))}
 
 
+@st.composite
+def _aly_lee(draw: st.DrawFn) -> Params:
+    ((low, high),) = draw(_ranges(1))
+    sizes, temperatures = _number(-20.0, 100.0), st.one_of(_number(20.0, 4000.0), _number(-4000.0, -20.0))
+    kept = draw(st.sampled_from([(1, 1), (1, 0), (0, 1), (0, 0)]))
+    b, d = (draw(sizes) * keep for keep in kept)
+    c, e = (draw(temperatures) if keep else draw(st.sampled_from([0.0, 500.0])) for keep in kept)
+    return {"coefficients": [draw(_number(10.0, 80.0)), b, c, d, e], "tmin": low, "tmax": high}
+
+
+@st.composite
+def _trc(draw: st.DrawFn) -> Params:
+    ((low, high),) = draw(_ranges(1))
+    a = [draw(_number(2.0, 5.0)), draw(_number(-1e6, 5e6)), draw(st.one_of(st.just(0.0), _number(20.0, 900.0)))]
+    a += [draw(_number(-20.0, 150.0)), draw(_number(-60.0, 60.0)), draw(_number(-5e7, 5e7))]
+    a += draw(
+        st.one_of(
+            st.tuples(_number(5.0, 600.0), _number(5.0, 600.0)),  # a7/a6 on both sides of the switch to the series
+            st.tuples(_number(5.0, 600.0), st.just(0.0)),
+            st.tuples(st.just(0.0), _number(5.0, 600.0)),
+        )
+    )
+    if draw(st.integers(0, 9)) == 0:
+        a[1:] = [0.0] * 7  # a monatomic gas
+    params = {"a": a, "tmin": low, "tmax": high}
+    if draw(st.booleans()):
+        params |= {"I": draw(_number(-300.0, 300.0)), "J": draw(_number(-20.0, 30.0))}
+    return params
+
+
+@st.composite
+def _liquid(draw: st.DrawFn, *, reduced: bool) -> Params:
+    tc = draw(_number(100.0, 900.0))
+    tmax = tc * draw(_number(0.5, 0.9))  # the tests go a tenth beyond, and the equation ends at Tc
+    params: Params = {"Tc": tc, "tmin": tmax * draw(_number(0.1, 0.9)), "tmax": tmax}
+    if reduced:
+        coefficients = [draw(_number(-100.0, 100.0)), draw(_number(-1e5, 5e5))]
+        coefficients += [draw(_number(-3e3, 3e3)), draw(_number(-3e3, 3e3))]
+        return params | {"coefficients": coefficients, "scale": draw(st.sampled_from([1.0, 0.001]))}
+    return params | {"a": draw(st.lists(_number(-20.0, 40.0), min_size=6, max_size=6))}
+
+
+@st.composite
+def _zabransky_cubic(draw: st.DrawFn) -> Params:
+    ((low, high),) = draw(_ranges(1))
+    return {"a": draw(st.lists(_number(-20.0, 40.0), min_size=1, max_size=4)), "tmin": low, "tmax": high}
+
+
+@st.composite
+def _vaporisation(draw: st.DrawFn, *, exponent: bool) -> Params:
+    tc = draw(_number(50.0, 900.0))
+    if exponent:
+        b, c = draw(_number(0.2, 0.6)), draw(_number(-0.5, 0.5))
+        coefficients = [draw(_number(500.0, 90_000.0)), b, c, 0.2 - min(0.0, c)]
+    else:
+        coefficients = draw(st.lists(_number(-10.0, 15.0), min_size=5, max_size=5))
+    params: Params = {"coefficients": coefficients, "Tc": tc}
+    if draw(st.booleans()):
+        params |= {"tmin": tc * draw(_number(0.2, 0.8)), "tmax": tc}
+    return params
+
+
 STRATEGIES: dict[str, st.SearchStrategy[Params]] = {
     "constant": _constant(),
     "polynomial": _polynomial(),
     "nasa7": _nasa([0, 1, 2, 3, 4]),
     "nasa9": _nasa([-2, -1, 0, 1, 2, 3, 4]),
     "shomate": _shomate(),
+    "aly-lee": _aly_lee(),
+    "trc-gas": _trc(),
+    "zabransky-cubic": _zabransky_cubic(),
+    "zabransky-quasi": _liquid(reduced=False),
+    "perry-liquid": _liquid(reduced=True),
     "table": _table(),
     "union": _union(),
     "constant-latent": st.fixed_dictionaries({"dh": _number(100.0, 60_000.0), "T": _number(10.0, 900.0)}),
     "watson": _watson(),
+    "perry-vaporisation": _vaporisation(exponent=True),
+    "vdi-vaporisation": _vaporisation(exponent=False),
 }
 
 HEAT_CAPACITIES = sorted(name for name, spec in EQUATIONS.items() if spec.quantity == HEAT_CAPACITY)
@@ -157,6 +226,8 @@ def _inside(data: st.DataObject, equation: Equation, count: int) -> list[float]:
 def _stretches(equation: Equation, low: float, high: float) -> list[tuple[float, float]]:
     """Cuts at every temperature where a formula changes, and short ones, so that quadrature is exact."""
     edges = {low, high, *equation.joints, *getattr(equation, "temperatures", ())}
+    if isinstance(equation, TrcGas):
+        edges.add(equation.a[7])  # its second derivative jumps there
     for piece in getattr(equation, "pieces", ()):
         edges |= set(getattr(piece, "temperatures", ()))
     cuts = [low]

@@ -185,6 +185,107 @@ WATER_CHECKS = [
     Check("at 100 C", "the point given", 2257.0 * _M, 1e-6, lambda e: e.dh(373.15)),
 ]
 
+# --- gases by the equation of the Thermodynamics Research Center ---------------------------------------------------
+# Frenkel et al. (1994), Thermodynamics of Organic Compounds in the Gas State, against the tables of Chase (1998),
+# NIST-JANAF, 4th ed.; both as carried by the chemicals library 1.5.2. CF4 without its constant I, ClO2 without its J.
+_JANAF_TABLES = "Chase (1998), NIST-JANAF, 4th ed."
+TETRAFLUOROMETHANE: Params = {
+    "a": [4.0, 283000.0, 504.0, 11.638, -2.554, -3270000.0, 124.0, 100.0],
+    "tmin": 50.0,
+    "tmax": 3000.0,
+    "J": 7.08,
+}
+TETRAFLUOROMETHANE_CHECKS = [
+    Check("S(298.15 K)", _JANAF_TABLES, 261.419, 0.05, lambda e: e.s(298.15)),
+    *(
+    # the fit is less close below 250 K
+    Check(f"Cp({t} K)", _JANAF_TABLES, cp, (0.0005 if t > 250.0 else 0.0015) * cp, lambda e, t=t: e.cp(t))
+    for t, cp in [(100.0, 34.745), (200.0, 47.370), (298.15, 61.054), (400.0, 72.400), (500.0, 80.712), (700.0, 91.209),
+                  (1000.0, 98.797), (1500.0, 103.669), (2000.0, 105.540), (3000.0, 106.935)]
+    ),
+]  # fmt: skip
+# The full equation, with constants: ClO2 is the example of the library's own functions for it.
+_LIBRARY = "chemicals 1.5.2, heat_capacity: an implementation of its own"
+CHLORINE_DIOXIDE: Params = {
+    "a": [4.0, 765000.0, 720.0, 3.565, -0.052, -1550000.0, 52.0, 201.0],
+    "tmin": 50.0,
+    "tmax": 3000.0,
+    "I": 1.2,
+}
+CHLORINE_DIOXIDE_CHECKS = [
+    Check("Cp(300 K)", _LIBRARY, 42.065271080974654, 1e-9, lambda e: e.cp(300.0)),
+    Check("H(298.15 K) - H(0 K)", _LIBRARY, 10802.536262068483, 1e-6, lambda e: e.h(298.15)),
+    Check("Cp(298.15 K)", _JANAF_TABLES, 41.995, 0.02, lambda e: e.cp(298.15)),
+]
+
+# --- steam by hyperbolic functions ----------------------------------------------------------------------------------
+# Perry's Chemical Engineers' Handbook, 8th ed. (2007), ideal-gas heat capacities, water; typed from memory of it.
+STEAM: Params = {"coefficients": [33.363, 26.790, 2610.5, 8.896, 1169.0], "tmin": 100.0, "tmax": 2273.15}
+_JANAF_H2O = "Chase (1998), NIST-JANAF, 4th ed., H2O(g)"
+STEAM_CHECKS = [
+    Check("Cp(298.15 K)", _JANAF_H2O, 33.590, 0.02, lambda e: e.cp(298.15)),
+    Check("Cp(500 K)", _JANAF_H2O, 35.226, 0.01, lambda e: e.cp(500.0)),
+    Check("Cp(1000 K)", _JANAF_H2O, 41.268, 0.08, lambda e: e.cp(1000.0)),
+    Check("H(1000 K) - H(298.15 K)", _JANAF_H2O, 26000.0, 0.001 * 26000.0, lambda e: e.dh(298.15, 1000.0)),
+    Check("H(2000 K) - H(298.15 K)", _JANAF_H2O, 72790.0, 0.001 * 72790.0, lambda e: e.dh(298.15, 2000.0)),
+    Check("S(1000 K) - S(298.15 K)", _JANAF_H2O, 232.738 - 188.834, 0.04, lambda e: e.ds(298.15, 1000.0)),
+]
+
+# --- liquids --------------------------------------------------------------------------------------------------------
+# Zabransky et al. (1996), as carried by the chemicals library; CRC Handbook, 95th ed., Cp of liquids at 298.15 K.
+WATER_CUBIC: Params = {"a": [20.9634, -10.1344, 2.8253, -0.256738], "tmin": 273.6, "tmax": 380.0}
+WATER_CUBIC_CHECKS = [
+    Check("Cp(298.15 K)", "CRC Handbook, 95th ed.", 75.3, 0.05, lambda e: e.cp(298.15)),
+    Check("H(373.15 K) - H(298.15 K)", "IAPWS-95: 419.17 less 104.92 J/g", 5661.2, 8.0, lambda e: e.dh(298.15, 373.15)),
+]
+TOLUENE: Params = {
+    "a": [-3.12743, 0.0857315, 13.7282, 1.28971, 6.42297, 4.10989],
+    "Tc": 591.79,
+    "tmin": 162.0,
+    "tmax": 570.0,
+}
+TOLUENE_CHECKS = [
+    Check("Cp(298.15 K)", "CRC Handbook, 95th ed.", 157.3, 0.3, lambda e: e.cp(298.15)),
+    Check("Cp(330 K)", _LIBRARY, 165.472878778683, 1e-9, lambda e: e.cp(330.0)),
+    Check("H(300 K) - H(200 K)", _LIBRARY, 14662.031376528757, 1e-6, lambda e: e.dh(200.0, 300.0)),
+]
+# Perry's Handbook, 8th ed. (2007), table 2-153 and Tc of table 2-150, as carried by the chemicals library.
+HEPTANE: Params = {
+    "coefficients": [61.26, 314410.0, 1824.6, -2547.9],
+    "Tc": 540.2,
+    "tmin": 182.57,
+    "tmax": 520.0,
+    "scale": 0.001,
+}
+HEPTANE_CHECKS = [
+    Check("Cp(298.15 K)", "CRC Handbook, 95th ed.", 224.7, 0.4, lambda e: e.cp(298.15)),
+]
+
+# --- enthalpies of vaporisation -------------------------------------------------------------------------------------
+# Perry's Handbook, 8th ed., table 2-150, and VDI Heat Atlas, 2nd ed. (2010), as carried by the chemicals library.
+# IAPWS-95 at saturation [J/g]; Perry's fit departs from it by up to 0.4 % over this range, and 0.7 % at 0 C.
+_IAPWS = "IAPWS-95, saturation"
+WATER_PERRY: Params = {
+    "coefficients": [52053.0, 0.3199, -0.212, 0.25795], "Tc": 647.096, "tmin": 273.16, "tmax": 647.096,
+}  # fmt: skip
+WATER_PERRY_CHECKS = [
+    Check(f"at {t} K", _IAPWS, dh * 18.015268, 0.005 * dh * 18.015268, lambda e, t=t: e.dh(t))
+    for t, dh in [(298.15, 2441.7), (373.15, 2256.4), (473.15, 1939.7), (573.15, 1404.8), (623.15, 892.7)]
+]
+TOLUENE_VDI: Params = {"coefficients": [4.60584, 13.97224, -10.592315, 2.120205, 4.277128], "Tc": 591.75}
+_CRC_VAPORISATION = "CRC Handbook, 95th ed., enthalpy of vaporisation"
+TOLUENE_VDI_CHECKS = [
+    Check(
+        "at 300 K",
+        "chemicals 1.5.2, phase_change: an implementation of its own",
+        37948.76862035925,
+        1e-6,
+        lambda e: e.dh(300.0),
+    ),
+    Check("at 298.15 K", _CRC_VAPORISATION, 38010.0, 150.0, lambda e: e.dh(298.15)),
+    Check("at 383.78 K", _CRC_VAPORISATION, 33180.0, 150.0, lambda e: e.dh(383.78)),
+]
+
 CASES: dict[str, tuple[str, Params, list[Check]]] = {
     "nitrogen by nine coefficients": ("nasa9", NITROGEN_9, NITROGEN_9_CHECKS),
     "nitrogen by seven coefficients": ("nasa7", NITROGEN_7, NITROGEN_7_CHECKS),
@@ -192,6 +293,14 @@ CASES: dict[str, tuple[str, Params, list[Check]]] = {
     "methane by a polynomial": ("polynomial", METHANE, METHANE_CHECKS),
     "nitrogen by a table": ("table", NITROGEN_TABLE, NITROGEN_TABLE_CHECKS),
     "water by Watson": ("watson", WATER, WATER_CHECKS),
+    "tetrafluoromethane by the TRC equation": ("trc-gas", TETRAFLUOROMETHANE, TETRAFLUOROMETHANE_CHECKS),
+    "chlorine dioxide by the TRC equation": ("trc-gas", CHLORINE_DIOXIDE, CHLORINE_DIOXIDE_CHECKS),
+    "steam by Aly and Lee": ("aly-lee", STEAM, STEAM_CHECKS),
+    "water by Zabransky's cubic": ("zabransky-cubic", WATER_CUBIC, WATER_CUBIC_CHECKS),
+    "toluene by Zabransky's quasi-polynomial": ("zabransky-quasi", TOLUENE, TOLUENE_CHECKS),
+    "heptane by Perry's equation": ("perry-liquid", HEPTANE, HEPTANE_CHECKS),
+    "water by Perry's power": ("perry-vaporisation", WATER_PERRY, WATER_PERRY_CHECKS),
+    "toluene by the VDI's powers": ("vdi-vaporisation", TOLUENE_VDI, TOLUENE_VDI_CHECKS),
 }
 
 
