@@ -105,8 +105,8 @@ class Care(Core):
     ) -> dict[str, Any]:
         """Bring in the seed of this version again; own entries, datums and decisions stay.
 
-        With ``open_data`` also what the installed ``chemicals`` library carries; without it entries that came from there
-        become inactive.
+        With ``open_data`` also what the installed ``chemicals`` library carries; without it, entries that an earlier
+        rebuild took from there become inactive.
         """
         report = build_seed(self._path, progress, open_data=open_data)
         self.close()
