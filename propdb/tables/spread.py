@@ -10,6 +10,7 @@ import contextlib
 from collections.abc import Iterator, Sequence
 from pathlib import Path
 from typing import Any, NamedTuple
+from uuid import uuid4
 
 from propdb.errors import IntegrityError, PropdbError
 from propdb.tables.core import Plan
@@ -57,13 +58,15 @@ def convert_file(plan: Plan, stamp: str, source: str, target: str, name: str) ->
     return Counts(tally.rows, verdicts, kinds, tally.first_samples())
 
 
-def _task(plan: Plan, stamp: str, source: str, target: str, name: str) -> Counts | PropdbError:
+_plans: dict[str, Plan] = {}
+
+
+def _task(token: str, plan: Plan, stamp: str, source: str, target: str, name: str) -> Counts | PropdbError:
+    """Convert with the plan that is here already, if it is: its store is open."""
     try:
-        return convert_file(plan, stamp, source, target, name)
+        return convert_file(_plans.setdefault(token, plan), stamp, source, target, name)
     except PropdbError as error:  # as a value: Dask would retry an exception, and print it
         return error
-    finally:
-        plan.oracle.close()
 
 
 @contextlib.contextmanager
@@ -103,10 +106,10 @@ def spread(
     PropdbError
         What went wrong in a worker, or no scheduler at the address, or Dask is not installed.
     """
-    stamp = plan.stamp
+    stamp, token = plan.stamp, uuid4().hex
     with _client(scheduler, workers or 2) as client:
         futures = [
-            client.submit(_task, plan, stamp, str(a.absolute()), str(b.absolute()), name, pure=False, retries=0)
+            client.submit(_task, token, plan, stamp, str(a.absolute()), str(b.absolute()), name, pure=False, retries=0)
             for a, b, name in files
         ]
         for done, future in enumerate(futures, start=1):

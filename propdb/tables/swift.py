@@ -279,5 +279,10 @@ def _uncertainties(standards: NDArray[np.float64]) -> tuple[list[str], NDArray[n
     """Distinct texts of uncertainties to two digits, and which row has which."""
     if np.isnan(standards).all():
         return [""], np.zeros(len(standards), np.int32)
-    unique, codes = np.unique(standards, return_inverse=True)
-    return [uncertainty_text(u) for u in unique.tolist()], codes.astype(np.int32)
+    there = standards > 0.0
+    exponent = np.floor(np.log10(np.where(there, standards, 1.0))) - 1.0
+    with np.errstate(invalid="ignore"):
+        digits = np.rint(standards / 10.0**exponent)
+    keys = np.where(there, exponent * 1000.0 + digits, np.where(standards == 0.0, -1e9, 1e9))
+    _, first, codes = np.unique(keys, return_index=True, return_inverse=True)
+    return [uncertainty_text(u) for u in standards[first].tolist()], codes.astype(np.int32)

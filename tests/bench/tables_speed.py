@@ -161,6 +161,7 @@ def run() -> Iterator[Ratio]:
         yield from _parquet(directory)
         yield from _csv(directory)
         yield from _same_t(directory)
+        yield from _dask(directory)
 
 
 def _parquet(directory: Path) -> Iterator[Ratio]:
@@ -204,6 +205,28 @@ def _same_t(directory: Path) -> Iterator[Ratio]:
         )
         detail = f"{varying:.2f} / {constant:.2f} s"
         yield Ratio(f"{kind}: shift that depends on T / constant shift", varying / constant, 2.0, detail=detail)
+
+
+def _dask(directory: Path) -> Iterator[Ratio]:
+    """A directory of Parquet on clusters of one and of two processes that are running already."""
+    if find_spec("distributed") is None:
+        return
+    from distributed import LocalCluster
+
+    source = directory / "year"
+    source.mkdir()
+    for month in range(8):
+        write_tables(directory, ROWS // 8, name=f"year/{month}")
+        (source / f"{month}.csv").unlink()
+    options: dict[str, Any] = {"threads_per_worker": 1, "dashboard_address": ":0", "silence_logs": 50}
+    with LocalCluster(n_workers=1, **options) as one, LocalCluster(n_workers=2, **options) as two:
+        alone, both = medians(
+            ours(source, directory / "one", scheduler=one.scheduler_address),
+            ours(source, directory / "two", scheduler=two.scheduler_address),
+            rounds=ROUNDS,
+        )
+    detail = f"{alone:.2f} / {both:.2f} s, {os.cpu_count()} processors"
+    yield Ratio("Parquet on Dask: one worker / two workers", alone / both, 1.6, at_least=True, detail=detail)
 
 
 if __name__ == "__main__":
