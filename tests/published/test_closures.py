@@ -90,3 +90,12 @@ def test_transition_of_sulfur(store: Store) -> None:
     entries = {(e.quantity, e.form): e.value for e in store.show("sulfur").entries if e.source == "chase-1998"}
     assert entries[("Htr", "rhombic")] == pytest.approx(401.0, abs=2.0)
     assert entries[("Hfus", "monoclinic")] == pytest.approx(1721.0, abs=10.0)
+
+
+def test_quartz_passes_into_its_high_temperature_form(store: Store) -> None:
+    """Equal Gibbs energies at the transition: its enthalpy is T times the entropy step, 410.0 J/mol by NASA/TP-2002."""
+    low = store.enthalpy("silicon dioxide", phase="cr", form="quartz", temperature=848.0, datum="elements-298K")
+    high = store.enthalpy("silicon dioxide", phase="cr", form="beta-quartz", temperature=848.0, datum="elements-298K")
+    assert high.si - low.si == pytest.approx(410.0, abs=1.0)
+    above = store.enthalpy("silicon dioxide", phase="cr", form="beta-quartz", temperature=1000.0, datum="elements-298K")
+    assert above.si > high.si
