@@ -27,13 +27,12 @@ _READ: Final = ("entries.csv", "curves.csv", "nasa9.csv", "nasa7.csv")
 Row = list[str]
 
 
-def copy_seed(to: Path, *, rows: int | None = None) -> Path:
-    """A copy of the seed of this version, with ``rows`` of each file of entries if a number is given."""
+def copy_seed(to: Path, *, keep: Callable[[Row], bool]) -> Path:
+    """A copy of the seed of this version with some rows (species, quantity, phase ...) of its files of entries."""
     shutil.copytree(seed_root(), to)
-    if rows is not None:
-        for file in to.glob("*/*.csv"):
-            if file.name in _READ:
-                change_rows(file, lambda found: found[:rows])
+    for file in to.glob("*/*.csv"):
+        if file.name in _READ:
+            change_rows(file, lambda rows: [row for row in rows if keep(row)])
     return to
 
 

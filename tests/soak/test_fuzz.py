@@ -35,6 +35,7 @@ VERBS = commands()
 SLOW = {"store rebuild": 60, "store check": 6, "--verify": 6, "--coverage": 6, "--crosscheck": 3}
 #: Options that are given in so many of 40 lines; 8 for the others.
 OFTEN = {"temperature": 36, "store": 0, "as_of": 1, "source": 2, "form": 3, "saturated": 3, "pressure": 3}
+JSON = {verb for verb, command in VERBS.items() if any(param.name == "json" for param in command.params)}
 #: What these print is no JSON, whatever else is asked for.
 OTHER = ("--help", "--version", "--template", "--toml")
 BUG = 70
@@ -256,7 +257,7 @@ def attempt(world: World, line: list[str], user: str) -> None:
         assert last.startswith("propdb: "), (shown, err)
         assert len(last) > len("propdb: x"), shown
         assert after == before, (shown, "refused, and something was written")
-    elif "--json" in words and not any(word.startswith(OTHER) for word in words):
+    elif "--json" in words and verb in JSON and not any(word.startswith(OTHER) for word in words):
         for text in _texts(out):
             json.loads(text, parse_constant=_no_constant)
     if sum(world.codes.values()) % 100 == 0:

@@ -14,7 +14,19 @@ from dataclasses import dataclass
 from pathlib import Path
 
 import pytest
-from soak_samples import DRAFTS, EVENTS, Held, change_rows, copy_seed, held, settle, start, template_csv, template_toml
+from soak_samples import (
+    DRAFTS,
+    EVENTS,
+    Held,
+    Row,
+    change_rows,
+    copy_seed,
+    held,
+    settle,
+    start,
+    template_csv,
+    template_toml,
+)
 
 from propdb.api import Store, opening
 from propdb.store.backup import check
@@ -66,11 +78,16 @@ class Command:
     seed: int = 0
 
 
+def _few(row: Row) -> bool:
+    """Constants that are quickly compared: what is loaded before the writing takes long enough."""
+    return row[0] in ("water", "ammonia", "methane", "nitrogen") and row[1] in ("Hf", "S", "Tb")
+
+
 @pytest.fixture(scope="module")
 def pristine(tmp_path_factory: pytest.TempPathFactory) -> World:
     folder = tmp_path_factory.mktemp("kill")
-    seeds = (copy_seed(folder / "seed-0", rows=12), copy_seed(folder / "seed-1", rows=12))
-    change_rows(seeds[1] / "crc-95" / "entries.csv", lambda rows: rows[1:-1])
+    seeds = (copy_seed(folder / "seed-0", keep=_few), copy_seed(folder / "seed-1", keep=_few))
+    change_rows(seeds[1] / "crc-95" / "entries.csv", lambda rows: rows[1:])
     change_rows(seeds[1] / "codata-1989" / "entries.csv", lambda rows: [[*r[:6], r[6] + "5", *r[7:]] for r in rows])
     path = folder / "pristine.db"
     with pytest.MonkeyPatch.context() as patch:
@@ -191,10 +208,12 @@ def soak(world: World, make: Maker, kills: int, seed: int) -> Counter[str]:
         before = after
         command = make(world, f"kill-{number}", dice)
         if number % 2:
-            how = f"after {(pause := dice.uniform(0, 1.1 * seconds)):.3f} s"
+            how = f"after {(pause := dice.uniform(0, 1.2 * seconds)):.3f} s"
             acknowledged, ran, _ = run(world, command, after=pause)
-        else:
-            how = f"before statement {(at := dice.randint(1, statements))} of {statements}"
+            seconds *= 1.1 if ran < 0 else 0.8  # the machine may have become faster or slower
+        else:  # anywhere, or near the end, where it is decided
+            at = dice.randint(1 if number % 4 else max(1, statements - 15), statements)
+            how = f"before statement {at} of {statements}"
             acknowledged, ran, _ = run(world, command, at=at)
         what = f"{command.words} killed {how} ({number}, seed {seed})"
         after = held(world.store)  # it opens
