@@ -15,6 +15,9 @@ if TYPE_CHECKING:
 
 ROOT = Path(__file__).resolve().parent.parent
 
+#: Fixtures that read all the files of the chemicals library: half a minute and more for each worker.
+OPEN_DATA = {"package", "full_store"}
+
 
 def pytest_addoption(parser: pytest.Parser) -> None:
     parser.addoption("--full", action="store_true", help="run the long soak, kill and fuzz tests too")
@@ -24,7 +27,7 @@ def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item
     if config.getoption("--full"):
         return
     for item in items:
-        if "full" in item.keywords:
+        if "full" in item.keywords or OPEN_DATA & set(getattr(item, "fixturenames", ())):
             item.add_marker(pytest.mark.skip(reason="long; runs with --full"))
 
 

@@ -50,6 +50,8 @@ ENTRY_COLUMNS: Final = ", ".join(f'e."{name}"' for name in HASHED)
 
 def fold(text: str) -> str:
     """What names are compared by: compatible characters, case, dashes, Greek letters and blanks made alike."""
+    if text.isascii():  # nearly all, and nothing below concerns them
+        return " ".join(text.lower().split())
     plain = unicodedata.normalize("NFKC", text).casefold().translate(_DASHES).translate(_GREEK)
     return " ".join(plain.split())
 

@@ -15,11 +15,12 @@ __all__ = ["decoded", "is_code", "prune", "spoken", "wanted_synonyms"]
 _MISREAD: Final = str.maketrans(
     {"关": "[", "兴": "]", "共": "(", "兲": ")", "⫹": "+", "␣": "α", "␤": "β", "⬘": "'", "\u2429": "η"}
 )
-_LONGEST: Final = 90  # characters of a synonym: longer ones nobody types
-_MOST: Final = 7
+_LONGEST: Final = 60  # characters of a synonym: longer ones nobody types
+_MOST: Final = 5
 #: Registry numbers and catalogue codes are no names.
 _CODE: Final = re.compile(
-    r"[\d\W]+|[a-z]+\d+[a-z]+\d{3,}|\d{2,10}-\d\d-\d.*|[a-z]{2,12}[-_ :]?\d{3,}[\w/ -]*|[a-z]{14}-[a-z]{10}-[a-z]"
+    r"[\d\W]+|.*-|agn-.*|[a-z]{1,3}\d{2,}|\d[a-z]{2}|[a-z]+\d+[a-z]+\d{3,}|\d{2,10}-\d\d-\d.*"
+    r"|[a-z]{2,12}[-_ :]?\d{3,}[\w/ -]*|[a-z]{14}-[a-z]{10}-[a-z]"
     r"|(?:unii|einecs|nsc|hsdb|ccris|brn|caswell|epa|schembl|chembl|chebi|mfcd|ai3|un|wln|smr|cid)\b.*"
     r"|.*(?:\bcas\b|registry|inchi|\[(?:iso|ansi|bsi|hsdb|un\d|mi|inn|usan|who)).*",
     re.IGNORECASE,
@@ -60,7 +61,7 @@ def wanted_synonyms(file_names: Sequence[str], known: Any) -> list[str]:
     for text in offered:
         plain = decoded(text)
         folded = plain.casefold()
-        if 3 <= len(plain) <= _LONGEST and folded not in chosen and not _CODE.fullmatch(plain):
+        if 3 <= len(plain) <= _LONGEST and folded not in chosen and (plain.isalpha() or not _CODE.fullmatch(plain)):
             chosen[folded] = plain
             if len(chosen) == _MOST:
                 break
