@@ -193,6 +193,10 @@ class Levels(States):
         if isinstance(track, Curve) and not track.covers(t, anchor.temperature):
             if node in tree.nodes:
                 return node, []
+            low, high = sorted((t, anchor.temperature))
+            unknown = next((split for split in track.between(low, high) if split.stated is None), None)
+            if unknown is not None:
+                raise track.split_error(unknown.temperature)
             if not track.extrapolate:
                 if not track.covers(t):
                     raise track.out_of_range(t)
