@@ -112,6 +112,12 @@ def make_plan(oracle: Oracle, request: Request, names: tuple[str, ...], *, where
         found = layout.get(role)
         if found is not None:
             check(found.unit, found.name)
+    if evaluate and layout.get("vapour") is not None:
+        raise InvalidInput(
+            "enthalpies of two-phase rows are not computed from a vapour fraction",
+            where=where,
+            hint="give liquid and vapour a row each, or rename the column",
+        )
     plan = Plan(oracle, settings, layout)
     check_components(plan)
     target = oracle.ask(lambda basis: basis.datum(settings.to))
@@ -232,6 +238,8 @@ def _notes(plan: Plan) -> list[str]:
     if plan.layout.components:
         what = "computed as ideal mixtures" if plan.settings.evaluate else "left in the number as it is"
         notes.append(f"mixtures: any enthalpy of mixing is {what}; the shift is the sum over the components")
+    if plan.layout.get("vapour") is not None:
+        notes.append("the vapour fraction has no part in a shift: both phases have one zero")
     return notes
 
 

@@ -203,8 +203,11 @@ class Varying:
         missing = [k for k in range(low, high + 1) if k not in cell.grid]
         if missing:
             run(lambda: self._fill(cell, missing))
+        known = [cell.grid[k] for k in range(low, high + 1)]
+        if all(map(math.isnan, known)):
+            return math.nan
         nodes = [min(max(k * GRID, cell.low + 1e-6), cell.high - 1e-6) for k in range(low, high + 1)]
-        return np.interp(t, nodes, [cell.grid[k] for k in range(low, high + 1)])
+        return np.interp(t, nodes, known)
 
     def _fill(self, cell: _Cell, nodes: Sequence[int]) -> None:
         for k in nodes:

@@ -166,6 +166,27 @@ def test_fast_and_careful_agree_on_ragged_columns(
     assert Decimal(rows[2][H]) == Decimal(ragged)  # nitrogen has the same zero on both
 
 
+def test_clean_tables_take_the_fast_way(convert: Convert, monkeypatch: pytest.MonkeyPatch) -> None:
+    from propdb.tables import careful
+
+    def refuse(*_: object) -> None:
+        raise AssertionError("field by field")
+
+    monkeypatch.setattr(careful, "convert_rows", refuse)
+    for to in ("elements-298K", "elements-same-T"):
+        assert convert(random_table(100), to=to)[0].flags["bad row"] == 0
+    quoted = '"species","h [kJ/kg]"\r\n"methane","1.50"\r\n"water","-2.25"\r\n"water",\r\n'
+    assert convert(quoted, from_="gas-25C")[0].flags["ok"] == 2
+    assert convert("species;h [kJ/kg]\nmethane;1,5\n", from_="gas-25C", delimiter=";", decimal="comma")[0].clean
+
+
+def test_a_vapour_fraction(convert: Convert) -> None:
+    report, rows, _ = convert("species,vapour fraction,h [kJ/kg]\nwater,0.5,1.5\n", from_="steam-triple-point")
+    assert any("vapour fraction" in note for note in report.data["notes"])
+    with pytest.raises(InvalidInput, match="vapour fraction"):
+        convert("species,vapour fraction,T [K]\nwater,0.5,400\n", phase="fluid")
+
+
 def test_bad_rows_are_flagged_and_kept(convert: Convert) -> None:
     cells = ["1.5", "abc", '"1,234.5"', '"12,5"', "", "n/a", "=A1*2", "1 234.5", "inf", "nan", "1e999", "-2.5"]
     text = "species,h [kJ/kg]\n" + "".join(f"methane,{cell}\n" for cell in cells) + "methan,1.0\n,1.0\nmethane\n"
