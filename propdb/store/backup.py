@@ -8,7 +8,7 @@ import uuid
 from contextlib import closing, suppress
 from pathlib import Path
 
-from propdb.errors import StoreError
+from propdb.errors import InvalidInput, StoreError
 from propdb.store.open import mapped, open_store
 from propdb.store.verify import Problem, verify
 
@@ -24,9 +24,13 @@ def backup(path: str | os.PathLike[str], dest: str | os.PathLike[str]) -> None:
     ------
     StoreError
         ``dest`` exists (``reason`` is ``exists``), or as :func:`~propdb.store.open.open_store`.
+    InvalidInput
+        ``dest`` cannot be a path.
     StoreBusy, StoreReadOnly
     """
     target = Path(dest)
+    if "\0" in str(target):
+        raise InvalidInput(f"{str(target)!r} cannot be a path", hint="leave the null character out")
     _refuse_existing(target)
     part = target.with_name(f".{target.name}.{uuid.uuid4().hex[:8]}.part")
     try:
