@@ -95,6 +95,8 @@ def add_own_all(
         As :func:`propdb.store.content.validate_entry`.
     StoreError, StoreBusy, StoreReadOnly
     """
+    if species or sources:
+        import sqlite_utils  # noqa: F401  (takes a while: before other writers are made to wait)
     with writing(target) as conn:
         sealing = seal.Seal(conn)
         _put(conn, species, sources, {}, {})

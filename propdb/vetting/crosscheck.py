@@ -90,6 +90,8 @@ class Checker:
             yield from latent_heats(self._library, cas=cas)
 
     def _checks(self, entry: Entry, species: Species) -> Iterator[Crosscheck]:
+        if not self.cas(entry, species):  # no compilation lists it, and the library need not be read
+            return
         if entry.equation:
             yield from self._of_equation(entry, species)
         elif entry.value is not None:
