@@ -31,15 +31,18 @@ from soak_samples import (
 from propdb.api import Store, opening
 from propdb.store.backup import check
 
-#: One command line in a process that kills itself before its Nth SQL statement (0: never), and says how many it ran.
+#: One command line in a process that kills itself before its Nth SQL statement (0: never), and says how many it ran and
+#: which of them began to write.
 RUN = """
 import os, signal, sqlite3
 from pathlib import Path
 at, seed, *words = sys.argv[1:]
-plain, count = sqlite3.connect, 0
+plain, count, first = sqlite3.connect, 0, 0
 def step(statement):
-    global count
+    global count, first
     count += 1
+    if statement.startswith("BEGIN IMMEDIATE"):
+        first = first or count
     if count == int(at):
         os.kill(os.getpid(), getattr(signal, "SIGKILL", signal.SIGTERM))
 def connect(*values, **named):
@@ -55,7 +58,7 @@ from propdb.cli.main import run
 try:
     run(words)
 finally:
-    print("statements", count, file=sys.stderr)
+    print("statements", first, count, file=sys.stderr)
 """
 
 
@@ -174,10 +177,11 @@ Maker = Callable[[World, str, random.Random], Command]
 COMMANDS: dict[str, Maker] = {"add": add, "import": import_, "review": review, "rebuild": rebuild}
 
 
-def run(world: World, command: Command, *, at: int = 0, after: float | None = None) -> tuple[bool, int, float]:
+def run(world: World, command: Command, *, at: int = 0, after: float | None = None) -> tuple[bool, list[int], float]:
     """Run a command line, killed before a statement, or after a while [s].
 
-    Returns whether it was acknowledged, how many statements it ran (-1 if killed), and how long it took [s].
+    Returns whether it was acknowledged, its first statement that writes and its last (nothing if killed before), and
+    how long it took [s].
     """
     began = time.monotonic()
     process = start(
@@ -187,10 +191,9 @@ def run(world: World, command: Command, *, at: int = 0, after: float | None = No
         time.sleep(after)
         process.kill()
     out, err = process.communicate(timeout=300)
-    lines = err.splitlines()
-    ended = bool(lines) and lines[-1].startswith("statements")
-    assert process.returncode <= 0 or not ended, err  # all went well, or it was killed
-    statements = int(lines[-1].split()[1]) if ended else -1
+    last = (err.splitlines() or [""])[-1]
+    statements = [int(number) for number in last.split()[1:]] if last.startswith("statements") else []
+    assert process.returncode <= 0 or not statements, err  # all went well, or it was killed
     return process.returncode == 0 or bool(out.strip()), statements, time.monotonic() - began
 
 
@@ -199,7 +202,7 @@ def soak(world: World, make: Maker, kills: int, seed: int) -> Counter[str]:
     dice = random.Random(seed)
     before = held(world.store)
     command = make(world, "whole", dice)
-    acknowledged, statements, seconds = run(world, command)  # to know how many moments there are
+    acknowledged, (first, last), seconds = run(world, command)  # to know how many moments there are
     after = held(world.store)
     assert acknowledged
     assert command.done(before, after)
@@ -210,17 +213,17 @@ def soak(world: World, make: Maker, kills: int, seed: int) -> Counter[str]:
         if number % 2:
             how = f"after {(pause := dice.uniform(0, 1.2 * seconds)):.3f} s"
             acknowledged, ran, _ = run(world, command, after=pause)
-            seconds *= 1.1 if ran < 0 else 0.8  # the machine may have become faster or slower
-        else:  # anywhere, or near the end, where it is decided
-            at = dice.randint(1 if number % 4 else max(1, statements - 15), statements)
-            how = f"before statement {at} of {statements}"
+            seconds *= 0.8 if ran else 1.1  # the machine may have become faster or slower
+        else:  # mostly while it writes
+            at = dice.randint(first if dice.random() < 0.8 else 1, last)
+            how = f"before statement {at} of {last}"
             acknowledged, ran, _ = run(world, command, at=at)
         what = f"{command.words} killed {how} ({number}, seed {seed})"
         after = held(world.store)  # it opens
         assert check(world.store) == [], what
         if acknowledged:
             assert command.done(before, after), f"acknowledged and not there: {what}"
-            came["acknowledged" if ran < 0 else "over before the kill"] += 1
+            came["over before the kill" if ran else "acknowledged"] += 1
         elif after == before:
             came["nothing"] += 1
         else:
