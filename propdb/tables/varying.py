@@ -12,6 +12,7 @@ from __future__ import annotations
 import math
 from bisect import bisect_left
 from collections.abc import Callable, Mapping, Sequence
+from contextlib import suppress
 from dataclasses import dataclass, field
 from functools import partial
 from typing import Any
@@ -183,6 +184,9 @@ class Varying:
             cell.flag, cell.reason = NO_DATA, out_of_range(error)
         else:
             self._note(point)
+            if t == T_STANDARD:  # nothing is heated there; elsewhere in the cell something is, by its entries
+                with suppress(PropdbError):
+                    self._note(self._ask(0.5 * (t + min(cell.high, 2.0 * t)), None))
             if point.extrapolated:
                 cell.flag = EXTRAPOLATED
                 cell.reason = next((w for w in point.warnings if "extrapolated" in w), "extrapolated")

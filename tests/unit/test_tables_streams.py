@@ -189,7 +189,7 @@ def test_rows_without_a_number_are_named(store: propdb.Store, tmp_path: Path) ->
     (tmp_path / "in.csv").write_text(text, encoding="utf-8")
     report = store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to="gas-25C")
     assert not report.clean
-    assert any("1 rows without" in note for note in report.data["streams"]["notes"])
+    assert any("1 row without" in note for note in report.data["streams"]["notes"])
 
 
 def test_a_flow_without_its_unit(store: propdb.Store, tmp_path: Path) -> None:
@@ -234,3 +234,28 @@ def test_suggested_with_a_reaction_conserves_its_zero(store: propdb.Store, tmp_p
     assert store.datum_show(found["datum"]).kind in ("elements", "basis")
     assert store.datum_show(found["runner_up"]).kind in ("elements", "basis")
     assert "species in and out differ" in found["reason"]
+
+
+# -- provenance --------------------------------------------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("to", ["combustion-gross-25C", "elements-298K", "elements-same-T"])
+def test_the_sidecar_names_what_heats_a_row(store: propdb.Store, tmp_path: Path, to: str) -> None:
+    """Evaluated rows stand on the same entries as the answers for one state, those of the heat capacity among them."""
+    states = [
+        ("oxygen", "180C"),
+        ("carbon dioxide", "180C"),
+        ("methane", "400C"),
+        ("water", "900C"),
+        ("ethanol", "60C"),
+    ]
+    lines = ["species,phase,T [C]"]
+    lines += [f"{name},{'l' if name == 'ethanol' else 'g'},{t.removesuffix('C')}" for name, t in states]
+    (tmp_path / "in.csv").write_text("\n".join(lines) + "\n", encoding="utf-8")
+    kinds = store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to=to).data["kinds"]
+    for name, t in states:
+        one = store.enthalpy(name, phase="l" if name == "ethanol" else "g", temperature=t, datum=to)
+        (kind,) = [k for k in kinds if k["species"] == name]
+        assert kind["from"] is None
+        assert set(kind["entries"]) >= {step.entry for step in one.steps if step.entry}
+        assert any(step.what == "heating" for step in one.steps) == (to != "elements-same-T" or name != "oxygen")
