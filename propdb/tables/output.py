@@ -5,9 +5,9 @@ from __future__ import annotations
 import hashlib
 import os
 import shutil
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from pathlib import Path
-from types import TracebackType
+from types import MappingProxyType, TracebackType
 from typing import Any, BinaryIO, Self
 
 from propdb.errors import InvalidInput, PropdbError
@@ -165,11 +165,13 @@ class HashedReader:
         return self._hash.hexdigest()
 
 
-def sha256_of(path: Path, tell: Callable[[int], None] | None = None) -> str:
-    """SHA-256 of a file in hex; of a directory, of its sorted list of names and hashes."""
+def sha256_of(
+    path: Path, tell: Callable[[int], None] | None = None, known: Mapping[Path, str] = MappingProxyType({})
+) -> str:
+    """SHA-256 of a file in hex; of a directory, of its sorted list of names and hashes, but for those ``known``."""
     if path.is_dir():
         lines = [
-            f"{sha256_of(file)}  {file.relative_to(path).as_posix()}\n"
+            f"{known.get(file) or sha256_of(file)}  {file.relative_to(path).as_posix()}\n"
             for file in sorted(path.rglob("*"))
             if file.is_file()
         ]

@@ -291,8 +291,8 @@ def _directory(oracle: Oracle, request: Request, source: Path, part: Path, progr
         from propdb.tables.spread import spread
 
         jobs = [(file, part / name, name) for file, name in zip(files, names, strict=True)]
-        spread(plan, jobs, tally, progress, scheduler=request.scheduler, workers=request.workers)
-        return Done(plan, tally, sha256_of(source), sha256_of(part), _notes(plan))
+        known = spread(plan, jobs, tally, progress, scheduler=request.scheduler, workers=request.workers)
+        return Done(plan, tally, sha256_of(source, known=known), sha256_of(part, known=known), _notes(plan))
     for place, (file, name) in enumerate(zip(files, names, strict=True)):
         (part / name).parent.mkdir(parents=True, exist_ok=True)
         with (part / name).open("wb") as raw:

@@ -29,6 +29,8 @@ class Counts(NamedTuple):
     verdicts: list[tuple[str, str, int]]  # flag, reason, rows
     kinds: list[tuple[Key, int]]
     samples: list[Sample]
+    read: str  # SHA-256 of the input
+    written: str  # and of the output
 
 
 def convert_file(plan: Plan, stamp: str, source: str, target: str, name: str) -> Counts:
@@ -39,7 +41,7 @@ def convert_file(plan: Plan, stamp: str, source: str, target: str, name: str) ->
     IntegrityError
         The store of the worker is not that of the plan.
     """
-    from propdb.tables.output import HashedWriter
+    from propdb.tables.output import HashedWriter, sha256_of
     from propdb.tables.parquet import convert_parquet
 
     if plan.stamp != stamp:
@@ -55,7 +57,7 @@ def convert_file(plan: Plan, stamp: str, source: str, target: str, name: str) ->
         out.close()
     verdicts = [(*plan.verdicts[n], times) for n, times in tally.verdicts.items()]
     kinds = [(plan.kinds[n].key, times) for n, times in tally.kinds.items()]
-    return Counts(tally.rows, verdicts, kinds, tally.first_samples())
+    return Counts(tally.rows, verdicts, kinds, tally.first_samples(), sha256_of(Path(source)), out.hexdigest())
 
 
 _plans: dict[str, Plan] = {}
@@ -98,8 +100,13 @@ def spread(
     *,
     scheduler: str | None,
     workers: int | None,
-) -> None:
+) -> dict[Path, str]:
     """Convert files, each (input, output, name), on a cluster; a local one of ``workers`` without a ``scheduler``.
+
+    Returns
+    -------
+    dict
+        The SHA-256 of every file that was read or written.
 
     Raises
     ------
@@ -107,6 +114,7 @@ def spread(
         What went wrong in a worker, or no scheduler at the address, or Dask is not installed.
     """
     stamp, token = plan.stamp, uuid4().hex
+    hashes: dict[Path, str] = {}
     with _client(scheduler, workers or 2) as client:
         futures = [
             client.submit(_task, token, plan, stamp, str(a.absolute()), str(b.absolute()), name, pure=False, retries=0)
@@ -118,4 +126,6 @@ def spread(
                 client.cancel(futures)
                 raise counts
             tally.merge(counts.rows, counts.verdicts, counts.kinds, counts.samples)
+            hashes[files[done - 1][0]], hashes[files[done - 1][1]] = counts.read, counts.written
             progress.step(counts.rows, done / len(files))
+    return hashes
