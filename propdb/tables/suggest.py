@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
-from math import sqrt
+from math import isclose, sqrt
 from typing import TYPE_CHECKING, Any
 
 from propdb.datum import same_meaning
@@ -51,6 +51,11 @@ class _Score:
     datum: Datum
     legs: int
     spread: float  # standard uncertainty of the duty, class defaults where none is stated [W, or J/mol x rows]
+    shifts: tuple[float, ...]  # of each kind of row [J/mol]
+
+    def alike(self, other: _Score) -> bool:
+        """Has every species of the table its zero in the same place?"""
+        return all(isclose(a, b, rel_tol=1e-9, abs_tol=1e-6) for a, b in zip(self.shifts, other.shifts, strict=True))
 
     def text(self, unit: str) -> str:
         if not self.legs:
@@ -104,7 +109,8 @@ def _suggest(basis: Basis, tally: Tally) -> Suggestion:
             "no datum can be reached from every row of the table",
             hint="see the reasons of rows with --to elements-298K",
         )
-    first, second = scores[0], scores[1] if len(scores) > 1 else None
+    first = scores[0]
+    second = next((s for s in scores if not s.alike(first)), None)
     why = first.text(unit)
     if reaction:
         why = f"species in and out differ ({', '.join(reaction[:3])}), so the zero must be conserved; {why}"
@@ -160,7 +166,7 @@ def _scores(
     wanted = [d for d in candidates if (d.kind != "own") == reaction]
     scores = []
     for candidate in wanted:
-        legs, parts = 0, []
+        legs, parts, shifts = 0, [], []
         try:
             for number, kind in kinds.items():
                 phase = kind.key.phase or "g"
@@ -174,12 +180,13 @@ def _scores(
                         continue
                     point = shift_at(basis.levels, kind.species, source, candidate, phase=phase, temperature=None)
                 legs += point.legs
+                shifts.append(point.value)
                 weight = weights[number]
                 parts += [Part(p.entry, p.coefficient * weight, p.standard, p.stated) for p in point.parts]
         except PropdbError:
             continue
         spread = sqrt(sum((p.coefficient * p.standard) ** 2 for p in add_parts(parts))) / 1e3
-        scores.append(_Score(candidate, legs, spread))
+        scores.append(_Score(candidate, legs, spread, tuple(shifts)))
     return sorted(scores, key=lambda s: (s.legs, float(f"{s.spread:.6g}"), _away(s.datum)))
 
 
