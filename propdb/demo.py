@@ -15,7 +15,7 @@ from propdb.api import Store
 from propdb.api import open as open_store
 from propdb.errors import DatumMismatch, PropdbError
 from propdb.model.answer import Answer
-from propdb.model.render import WIDTH, columns
+from propdb.model.text import WIDTH, columns
 
 COMMON = "elements-298K"
 
@@ -64,7 +64,7 @@ def _duty(stream: Stream, value: float) -> float:
 def _tables(rows: list[Stream]) -> list[str]:
     head = ("stream", "flow", "", "as tabulated", "zero of that table")
     body = [(s.name, f"{s.flow:g}", "t/h" if s.per_mass else "kmol/h", s.table, s.datum) for s in rows]
-    return columns([head, *body], right=(1, 3))
+    return columns([head, *body], right=(1, 3), indent=2)
 
 
 def _converted(store: Store, stream: Stream) -> Answer:
@@ -109,7 +109,7 @@ def run(store: Store) -> list[str]:
             )
         )
     balance = sum(_duty(s, a.value) for s, a in zip(rows, answers, strict=True))
-    lines += [f"3. All on one datum, {COMMON}, and added up", "", *columns([head, *body], right=(1, 3)), ""]
+    lines += [f"3. All on one datum, {COMMON}, and added up", "", *columns([head, *body], right=(1, 3), indent=2), ""]
     fired = _duty(rows[0], store.enthalpy("methane", phase="g", temperature="25C", datum="combustion-net-25C").value)
     steam, feed = rows[-1], rows[3]
     duty = -_duty(steam, answers[-1].value) - _duty(feed, answers[3].value)
@@ -121,6 +121,8 @@ def run(store: Store) -> list[str]:
             ("heat into steam", f"{duty:.3f} MW", f"{100 * duty / fired:.1f} % of the fuel"),
         ],
         right=(1,),
+        indent=2,
+        headed=False,
     )
     lines += ["", "4. How one of them was moved: the steam, step by step", "", answers[-1].explain()]
     return lines

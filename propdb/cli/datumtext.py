@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Iterable
 from typing import TYPE_CHECKING, Any, Final
 
-from propdb.cli.text import kelvin, pairs
+from propdb.model.text import kelvin, pairs
 from propdb.units import format_pressure
 
 if TYPE_CHECKING:

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable, Iterable, Mapping, Sequence
 from typing import Any, Final
 
-from propdb.cli.text import columns
+from propdb.model.text import columns
 
 Params = Mapping[str, Any]
 

@@ -2,8 +2,8 @@
 
 from __future__ import annotations
 
-from propdb.cli.text import columns, pairs
 from propdb.model.fuel import BASES, ELEMENTS, KINDS, PLACES, FuelSheet
+from propdb.model.text import columns, pairs
 
 _PHASES = {"cr": "solid", "am": "amorphous solid", "l": "liquid"}
 

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 import typer
 
 from propdb.cli.sheets import at_text, comparable, entry_dict, phase_text, uncertainty_text
-from propdb.cli.text import columns
+from propdb.model.text import columns
 
 if TYPE_CHECKING:
     from propdb.cli.app import Call

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping, Sequence
 from typing import TYPE_CHECKING, Any, Final
 
-from propdb.cli.text import columns, visible
+from propdb.model.text import columns, visible
 
 if TYPE_CHECKING:
     from propdb.api.review import LogLine, StoreLog

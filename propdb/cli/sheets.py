@@ -8,11 +8,11 @@ from types import MappingProxyType
 from typing import TYPE_CHECKING, Any, Final
 
 from propdb.cli.equationtext import equation_lines
-from propdb.cli.text import columns, kelvin, pairs
 from propdb.errors import UnitError
 from propdb.model.cite import text as reference
 from propdb.model.crosscheck import difference_text, telling, value_text
 from propdb.model.records import QUANTITIES
+from propdb.model.text import columns, kelvin, pairs
 from propdb.units import format_number, parse_heat_capacity_unit, parse_unit
 
 if TYPE_CHECKING:

@@ -6,8 +6,8 @@ from collections.abc import Iterable, Sequence
 from textwrap import wrap
 from typing import TYPE_CHECKING, Any, Final
 
-from propdb.cli.text import columns, pairs
 from propdb.model.cite import text as reference
+from propdb.model.text import columns, pairs
 from propdb.units import format_pressure
 
 if TYPE_CHECKING:

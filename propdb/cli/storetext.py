@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from typing import Any
 
-from propdb.cli.text import columns, pairs
+from propdb.model.text import columns, pairs
 
 
 def info_text(found: Any) -> str:

@@ -8,7 +8,7 @@ import typer
 
 from propdb.cli.app import Call, single, verb
 from propdb.cli.options import DATUM_HELP, Extrapolate, Form, Phase, SourceKey, Unit
-from propdb.cli.text import columns
+from propdb.model.text import columns, wrapped
 
 if TYPE_CHECKING:
     from propdb.tables.tabulate import Tabulation
@@ -89,13 +89,11 @@ def text(table: Tabulation) -> str:
                 " ".join(entry[:8] for entry in line.entries if not entry.startswith("model:")),
             )
         )
-    shown = [f"Enthalpy on {table.datum}: {table.sentence}", ""]
+    shown = [*wrapped(f"Enthalpy on {table.datum}: {table.sentence}"), ""]
     shown += columns(rows, right=(2, 3, 4, 5))
-    shown += [
-        "",
-        "u: standard uncertainty; empty where an entry states none. *: both sides of a transition.",
-        "Sources",
-    ]
-    shown += [f"  {key}: {cite(source)}" for key, source in table.sources.items()]
-    shown += ["", f"Store {table.store}", table.as_dict()["caution"]]
+    shown += ["", *wrapped("u: standard uncertainty; empty where an entry states none. *: both sides of a transition.")]
+    shown += ["", "Sources"]
+    for key, source in table.sources.items():
+        shown += [f"  {key}", *wrapped(cite(source), "    ")]
+    shown += ["", f"Store: {table.store}", *wrapped(table.as_dict()["caution"])]
     return "\n".join(shown)

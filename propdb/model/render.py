@@ -2,46 +2,22 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
-from textwrap import wrap
 from typing import TYPE_CHECKING
 
 from propdb.model.answer import CAUTION, Answer, ReactionAnswer, _Derived
 from propdb.model.crosscheck import difference_text, value_text
+from propdb.model.text import columns, wrapped
 from propdb.units import enthalpy_decimals, format_number, parse_unit
 
 if TYPE_CHECKING:
     from propdb.model.crosscheck import EntryCheck
     from propdb.model.records import Step
 
-__all__ = ["columns", "explain", "headline", "reaction_headline"]
-
-
-def columns(
-    rows: Sequence[Sequence[str]], *, right: Sequence[int] = (), indent: str = "  ", gap: str = "  "
-) -> list[str]:
-    """Align rows in columns; columns in ``right`` to the right. Trailing blanks are cut."""
-    if not rows:
-        return []
-    widths = [max(len(row[i]) for row in rows) for i in range(len(rows[0]))]
-    lines = []
-    for row in rows:
-        cells = [c.rjust(w) if i in right else c.ljust(w) for i, (c, w) in enumerate(zip(row, widths, strict=True))]
-        lines.append((indent + gap.join(cells)).rstrip())
-    return lines
-
-
-#: Width of running text.
-WIDTH = 100
+__all__ = ["explain", "headline", "reaction_headline"]
 
 
 def _paragraph(title: str, text: str) -> list[str]:
-    return _wrapped(text, f"{title:<14}")
-
-
-def _wrapped(text: str, first: str, rest: str | None = None) -> list[str]:
-    rest = " " * len(first) if rest is None else rest
-    return wrap(text, WIDTH, initial_indent=first, subsequent_indent=rest, break_on_hyphens=False)
+    return wrapped(text, f"{title:<14}")
 
 
 def _number(value: float, unit: str, *, sign: bool = False) -> str:
@@ -85,15 +61,15 @@ def explain(answer: _Derived) -> str:
     lines += _crosschecks(answer)
     if answer.warnings:
         lines += ["", "Mind"]
-        lines += [line for w in answer.warnings for line in _wrapped(w, "  - ")]
+        lines += [line for w in answer.warnings for line in wrapped(w, "  - ")]
     if answer.sources:
         lines += ["", "Sources"]
         from propdb.model.cite import text
 
         for key in sorted(answer.sources):
             lines.append(f"  {key}")
-            lines += _wrapped(text(answer.sources[key]), "    ")
-    lines += ["", f"Store: {answer.store}", *_wrapped(CAUTION, "")]
+            lines += wrapped(text(answer.sources[key]), "    ")
+    lines += ["", f"Store: {answer.store}", *wrapped(CAUTION, "")]
     return "\n".join(lines)
 
 
@@ -111,7 +87,11 @@ def _closures(answer: _Derived) -> list[str]:
         rows.append(
             (c.via, _number(c.difference, answer.unit, sign=True), within, f"[{c.entry[:8]}]" if c.entry else "")
         )
-    lines = ["", f"Closures: what unused data say, less the path above [{answer.unit}]", *columns(rows, right=(1,))]
+    lines = [
+        "",
+        f"Closures: what unused data say, less the path above [{answer.unit}]",
+        *columns(rows, right=(1,), indent=2, headed=False),
+    ]
     agree = len(answer.closures) - len(shown)
     if agree:
         lines.append(f"  {agree} {'more ' if shown else ''}agree{'s' if agree == 1 else ''} to the last digit shown")
@@ -139,7 +119,7 @@ def _crosschecks(answer: _Derived) -> list[str]:
         return []
     rows: list[tuple[str, ...]] = [("entry", "", "at", "compilation", "has", "entry less it", "", "")]
     rows += [_check_row(one) for one in (*worst.values(), *at_state)]
-    return ["", "Cross-check: the entries against other compilations", *columns(rows, right=(4, 5))]
+    return ["", "Cross-check: the entries against other compilations", *columns(rows, right=(4, 5), indent=2)]
 
 
 def _share(one: EntryCheck) -> float:
@@ -181,7 +161,7 @@ def _routes(answer: ReactionAnswer) -> list[str]:
         )
         for t in answer.terms
     ]
-    lines = columns(rows, right=(0, 3, 4, 5))
+    lines = columns(rows, right=(0, 3, 4, 5), indent=2)
     lines.append("")
     lines += columns(
         [
@@ -200,6 +180,8 @@ def _routes(answer: ReactionAnswer) -> list[str]:
             ("The routes differ by", "", _number(answer.disagreement, unit)),
         ],
         right=(2,),
+        indent=2,
+        headed=False,
     )
     lines.append("")
     return lines
@@ -215,9 +197,9 @@ def _steps(answer: _Derived) -> list[str]:
         rows.append((_what(s, several), s.start, s.end, _number(s.value, unit, sign=True), s.source, entry))
     total = sum(s.value for s in answer.steps)
     rows.append(("sum", "", "", _number(total, unit), "", ""))
-    lines = columns(rows, right=(3,))
+    lines = columns(rows, right=(3,), indent=2)
     notes = dict.fromkeys(f"{_what(s, several)}: {s.note}" for s in answer.steps if s.note)
-    return lines + [line for note in notes for line in _wrapped(note, "  * ")]
+    return lines + [line for note in notes for line in wrapped(note, "  * ")]
 
 
 def _what(step: Step, several: bool) -> str:

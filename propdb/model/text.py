@@ -14,23 +14,31 @@ def visible(text: str) -> str:
     return _UNSEEN.sub(lambda found: ascii(found[0])[1:-1], text)
 
 
-def columns(rows: Iterable[Sequence[str]], *, right: Iterable[int] = (), indent: int = 0, gap: int = 2) -> list[str]:
+#: Width of running text.
+WIDTH = 100
+
+
+def columns(
+    rows: Iterable[Sequence[str]], *, right: Iterable[int] = (), indent: int = 0, gap: int = 2, headed: bool = True
+) -> list[str]:
     """Align rows of cells into lines.
 
     Parameters
     ----------
     rows
-        Cells of each row; all rows have the same number of cells. Columns that are empty in every row but the first
-        (the heading) are left out.
+        Cells of each row; all rows have the same number of cells. Columns that are empty, but for their heading, are
+        left out.
     right
         Columns that are aligned to the right.
     indent, gap
         Spaces before each line and between columns.
+    headed
+        Whether the first row is a heading.
     """
     table = [[cell.replace("\n", " ") for cell in row] for row in rows]
     if not table:
         return []
-    used = [index for index in range(len(table[0])) if any(row[index] for row in (table[1:] or table))]
+    used = [index for index in range(len(table[0])) if any(row[index] for row in (table[headed:] or table))]
     widths = {index: max(len(row[index]) for row in table) for index in used}
     rightward = set(right)
     lines = []
@@ -67,6 +75,14 @@ def pairs(items: Iterable[tuple[str, str]], *, indent: int = 0, width: int = 110
         lines.append(f"{' ' * indent}{name.ljust(longest)}  {parts[0] if parts else ''}".rstrip())
         lines += [start + part for part in parts[1:]]
     return lines
+
+
+def wrapped(text: str, first: str = "", rest: str | None = None) -> list[str]:
+    """Running text in lines of :data:`WIDTH`: the first begins with ``first``, the others with ``rest`` or blanks."""
+    from textwrap import wrap
+
+    rest = " " * len(first) if rest is None else rest
+    return wrap(text, WIDTH, initial_indent=first, subsequent_indent=rest, break_on_hyphens=False)
 
 
 def kelvin(temperature: float) -> str:

@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING, Any
 
 from propdb._version import __version__
 from propdb.model.answer import CAUTION
+from propdb.model.text import wrapped
 from propdb.tables.kinds import BAD_ROW, NO_DATA, OK
 
 if TYPE_CHECKING:
@@ -74,7 +75,7 @@ def kinds_of(plan: Plan, tally: Tally) -> tuple[list[dict[str, Any]], dict[str, 
         item: dict[str, Any] = {
             "species": kind.species.name if kind.species is not None else None,
             "as_written": kind.key.species,
-            "from": kind.datum or kind.key.datum or None,
+            "from": None if plan.settings.evaluate else kind.datum or kind.key.datum or None,
             "phase": kind.key.phase or None,
             "form": kind.key.form or None,
             "flag": kind.flag,
@@ -138,4 +139,4 @@ def summary(data: dict[str, Any], target: Path, seconds: float) -> list[str]:
     lines += [f"  {r['rows']:,} {r['flag']}: {r['reason']}" for r in data["reasons"][:8] if r["reason"]]
     if len(data["reasons"]) > 8:
         lines.append(f"  and {len(data['reasons']) - 8} more reasons in {target.name}{SIDECAR}")
-    return lines + [f"  {note}" for note in data["notes"]]
+    return lines + [line for note in data["notes"] for line in wrapped(note, "  ", "    ")]

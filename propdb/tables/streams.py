@@ -15,6 +15,7 @@ from propdb.datum import may_sum
 from propdb.errors import DatumMismatch
 from propdb.levels.parts import add_parts, combined
 from propdb.model.records import Part
+from propdb.model.text import columns, wrapped
 from propdb.tables.scales import flow_unit
 
 if TYPE_CHECKING:
@@ -141,8 +142,10 @@ class Streams:
         notes = []
         if both and changed and not verdict.reaction:
             if not self.across:
+                own = f"{datum.name} gives each species its own zero, so its values add up only without one"
                 raise DatumMismatch(
-                    f"species in and out differ ({', '.join(changed[:4])}): there is a reaction, and {verdict.why}",
+                    f"inlets and outlets differ in {', '.join(changed[:4])}: there is a reaction, and "
+                    f"{own if datum.kind == 'own' else verdict.why}",
                     hint="convert --to elements-298K or a basis datum; --across sums all the same",
                 )
             notes.append(f"summed across a reaction on request; {verdict.why}")
@@ -151,9 +154,10 @@ class Streams:
         totals = {side: sum(s.watts for s in self.found.values() if s.side == side) for side in (IN, OUT)}
         lost = sum(s.lost for s in self.found.values())
         if lost:
-            notes.append(f"{lost} rows without an enthalpy or a flow are left out, so totals and duty are incomplete")
+            rows = "1 row" if lost == 1 else f"{lost} rows"
+            notes.append(f"{rows} without an enthalpy or a flow left out, so totals and duty are incomplete")
         if changed:
-            notes.append(f"a reaction: {', '.join(changed[:8])} differ between inlets and outlets")
+            notes.append(f"a reaction: inlets and outlets differ in {', '.join(changed[:8])}")
             notes += self._unbalanced(per_side)
         found: dict[str, Any] = {
             "datum": plan.settings.to,
@@ -264,18 +268,17 @@ def _texts(given: Given, role: str, none: str) -> tuple[NDArray[np.int32], list[
 
 def lines(found: dict[str, Any]) -> list[str]:
     """The summary for a person."""
-    shown = [f"enthalpy flows on {found['datum']}:"]
-    width = max((len(s["stream"]) for s in found["streams"]), default=0)
-    shown += [
-        f"  {s['stream'].ljust(width)}  {(s['side'] or ''):4}{s['enthalpy_flow']:14.3f} kW" for s in found["streams"]
-    ]
-    if "duty" in found:
-        uncertainty = found["duty_uncertainty"]
-        size = f" ± {uncertainty:.2g} (standard)" if uncertainty is not None else ""
-        shown += [f"  in {found['total_in']:.3f} kW, out {found['total_out']:.3f} kW"]
-        shown += [f"  duty (out less in) {found['duty']:.3f}{size} kW"]
-        if uncertainty is None:
-            shown += [f"  its uncertainty is {found['duty_uncertainty_note']}"]
+    shown = [f"enthalpy flows on {found['datum']}"]
+    rows = [(s["stream"], s["side"] or "", f"{s['enthalpy_flow']:.3f}", "kW") for s in found["streams"]]
+    if "duty" not in found:
+        rows.append(("total", "", f"{found['total']:.3f}", "kW"))
     else:
-        shown += [f"  total {found['total']:.3f} kW"]
-    return shown + [f"  {note}" for note in found["notes"]]
+        uncertainty = found["duty_uncertainty"]
+        size = f"kW ± {uncertainty:.2g} (standard)" if uncertainty is not None else "kW"
+        rows += [("total", side, f"{found[f'total_{side}']:.3f}", "kW") for side in (IN, OUT)]
+        rows.append(("duty, out less in", "", f"{found['duty']:.3f}", size))
+    shown += columns(rows, right=(2,), indent=2, headed=False)
+    notes = list(found["notes"])
+    if found.get("duty_uncertainty", 0.0) is None:
+        notes.insert(0, f"the uncertainty of the duty is {found['duty_uncertainty_note']}")
+    return shown + [line for note in notes for line in wrapped(note, "  ", "    ")]

@@ -96,7 +96,8 @@ def test_tabulate_shows_phases_and_entries(line: Any) -> None:
     assert done.code == 0
     assert done.out.count("* boiling") == 2
     assert "T [°C]" in done.out
-    assert "iapws-r6-95: " in done.out
+    assert "  iapws-r6-95\n    International Association" in done.out
+    assert max(map(len, done.out.splitlines())) <= 100
     found = json.loads(line("tabulate water --datum elements-298K --low 80C --high 120C --step 20K --json").out)
     assert [row["transition"] for row in found["rows"]] == [None, "boiling", "boiling", None, None]
     assert set(found["rows"][0]) >= {"species", "phase", "temperature", "h", "uncertainty", "cp", "flag", "entries"}

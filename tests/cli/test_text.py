@@ -11,10 +11,10 @@ import pytest
 from propdb.cli.equationtext import equation_lines
 from propdb.cli.jsontext import dumps
 from propdb.cli.plain import like
-from propdb.cli.text import columns, kelvin, pairs
 from propdb.errors import InvalidInput
 from propdb.model.cite import bibtex, cite, csl, text
 from propdb.model.records import MaySum, Source
+from propdb.model.text import columns, kelvin, pairs
 
 
 def test_columns_align_and_drop_what_is_empty() -> None:
