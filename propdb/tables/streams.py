@@ -60,7 +60,7 @@ class Streams:
     found: dict[tuple[str, str], _Stream] = field(default_factory=dict)
     moles: dict[tuple[int, str], float] = field(default_factory=lambda: defaultdict(float))
     square: float = 0.0  # variance of the duty from rows that vary with T [W^2]
-    lacking: bool = False
+    lacking: dict[str, None] = field(default_factory=dict)  # species of such rows, where no uncertainty is stated
     low: float = math.inf  # of the temperatures [K]
     high: float = -math.inf
     _lock: Lock = field(default_factory=Lock)
@@ -114,8 +114,11 @@ class Streams:
                 for number in np.flatnonzero(sums).tolist():
                     self.moles[(number, side)] += float(sums[number])
         vary = varies[numbers].any(axis=1)
-        terms = (flows * rows.standard)[vary & (flows != 0.0) & ~np.isnan(rows.value)]
-        self.lacking |= bool(np.isnan(terms).any())
+        counted = vary & (flows != 0.0) & ~np.isnan(rows.value)
+        terms = (flows * rows.standard)[counted]
+        lacking = np.unique(numbers[counted & np.isnan(rows.standard)])
+        species = [self.plan.kinds[number].species for number in lacking.tolist()]
+        self.lacking |= dict.fromkeys(one.name for one in species if one is not None)
         self.square += float(np.nansum(terms**2))
 
     # -- results --------------------------------------------------------------------------------------------------
@@ -181,6 +184,7 @@ class Streams:
         }
         if both:
             standard, missing = self._duty_uncertainty()
+            rest = f"; the other entries make {standard / 1e3:.3g} kW" if standard else ""
             found |= {
                 "total_in": totals[IN] / 1e3,
                 "total_out": totals[OUT] / 1e3,
@@ -189,7 +193,7 @@ class Streams:
                 "duty_uncertainty_note": "standard, from the data alone; the uncertainty of the given enthalpies is "
                 "not in it"
                 if not missing
-                else f"not stated by {', '.join(missing[:4])}; the other entries make {standard / 1e3:.3g} kW",
+                else f"not stated {' and '.join(missing)}{rest}",
             }
         return found
 
@@ -203,7 +207,9 @@ class Streams:
                 if sign
             ]
         standard, missing = combined(add_parts(parts))
-        names = [i[:8] for i in missing] + (["an entry of an evaluated row"] if self.lacking else [])
+        names = [f"by {', '.join(i[:8] for i in missing[:4])}"] if missing else []
+        if self.lacking:
+            names.append(f"for the heat of {', '.join(list(self.lacking)[:6])}")
         return math.hypot(standard, math.sqrt(self.square)), names
 
     def _unbalanced(self, per_side: dict[str, dict[str, float]]) -> list[str]:

@@ -74,6 +74,7 @@ class _Cell:
     flag: str = OK
     reason: str = ""
     base: float = math.nan  # value less the members' own antiderivatives [J/mol]
+    standard: float = math.nan  # standard uncertainty at the middle [J/mol]
     grid: dict[int, float] = field(default_factory=dict)
     only: tuple[float, ...] | None = None  # the few temperatures that are known, where there is no heat capacity [K]
 
@@ -174,6 +175,8 @@ class Varying:
                     total += coefficient * h
             value[mine] = total
             standard[mine] = self._standard(cell, t, run)
+            if cell.middle() == T_STANDARD and (unheated := t == T_STANDARD).any():  # nothing is heated there
+                standard[mine] = np.where(unheated, cell.standard, standard[mine])
         return value, standard, verdicts
 
     def _prepare(self, cell: _Cell) -> None:
@@ -191,6 +194,7 @@ class Varying:
                 cell.flag = EXTRAPOLATED
                 cell.reason = next((w for w in point.warnings if "extrapolated" in w), "extrapolated")
             cell.base = point.value - sum(c * float(e.h(t)) for c, e in cell.members or ())
+            cell.standard = point.standard
             if math.isnan(point.standard):
                 cell.grid[-1] = math.nan  # nothing to interpolate
         cell.ready = True
