@@ -22,6 +22,8 @@ _Row = tuple[int, str, str, int, str, str]
 _AFTER_ALL: Final = "\U0010ffff"
 #: More than there are species; SQLite takes no number above 2**63.
 _MOST: Final = 1_000_000
+#: Where more species than this have one formula, none of them goes without saying.
+_MOST_COMPARED: Final = 12
 
 
 @dataclass(frozen=True, slots=True)
@@ -168,12 +170,21 @@ def _alike(reader: Reader, wanted: str, limit: int) -> dict[int, float]:
     return scores
 
 
+def _known(reader: Reader, names: list[str]) -> list[str]:
+    """The one of several species that is well known while the others are curiosities; else all, the best known first."""
+    sources = {name: len({entry.source for entry in reader.entries(name)}) for name in names}
+    ordered = sorted(names, key=lambda name: (-sources[name], name))
+    first, second = ordered[:2]
+    return [first] if sources[first] >= 3 and sources[second] <= 1 else ordered
+
+
 def resolve(reader: Reader, text: str) -> Species:
     """The one species that ``text`` is exactly.
 
     A CAS RN or InChIKey; then a primary name; then a formula, or a synonym as it is written; then either in another
     case. The first of these that any species answers to decides: ``Co`` is cobalt, even where carbon monoxide has the
-    synonym ``CO``, and ``co`` may be both.
+    synonym ``CO``, and ``co`` may be both. Of several, the one that three sources or more know, where none of the others
+    is known to more than one: ``CO2`` is carbon dioxide, though somebody computed dioxiranylidene.
 
     Raises
     ------
@@ -208,6 +219,8 @@ def resolve(reader: Reader, text: str) -> Species:
             names = sorted({row[1] for row in _visible(reader, tier()).values()})
             if names:
                 break
+        if 1 < len(names) <= _MOST_COMPARED:
+            names = _known(reader, names)
     if len(names) == 1:
         return reader.species(names[0])
     if names:

@@ -3,10 +3,11 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import replace
 from pathlib import Path
 
 import pytest
-from store_samples import SODIUM_ION, WATER, content
+from store_samples import BOOK, SODIUM_ION, WATER, content, entry
 
 from propdb.errors import Ambiguous, NotFound
 from propdb.model.records import Species
@@ -82,8 +83,8 @@ def test_resolve_gives_the_record(reader: Reader) -> None:
 
 def test_several_answer(reader: Reader) -> None:
     for text, names in (
-        ("C2H6O", ["dimethyl ether", "ethanol"]),
-        ("C2H5OH", ["dimethyl ether", "ethanol"]),
+        ("C2H6O", ["ethanol", "dimethyl ether"]),  # the better known first
+        ("C2H5OH", ["ethanol", "dimethyl ether"]),
         ("co", ["carbon monoxide", "cobalt"]),
         ("sulphate", ["100% spirit_x", "sulfate ion"]),
     ):
@@ -92,6 +93,25 @@ def test_several_answer(reader: Reader) -> None:
         assert caught.value.fields["candidates"] == names
         assert ", ".join(names) in str(caught.value)
         assert "\n" not in str(caught.value)
+
+
+@pytest.mark.parametrize("known, rivals, clear", [(3, 1, True), (3, 0, True), (2, 1, False), (5, 2, False)])
+def test_a_curiosity_does_not_stand_in_the_way(tmp_path: Path, known: int, rivals: int, clear: bool) -> None:
+    """CO2 is carbon dioxide, though one source computed an isomer of it; but two well known isomers are told apart."""
+    common = Species("carbon dioxide", "CO2", 0, (("C", 1), ("O", 2)), 0.044, "124-38-9")
+    rare = Species("dioxiranylidene", "CO2", 0, (("C", 1), ("O", 2)), 0.044)
+    sources = [replace(BOOK, key=f"book-{n}") for n in range(5)]
+    entries = [entry(common, source=source.key) for source in sources[:known]]
+    entries += [entry(rare, value=-1.0, source=source.key) for source in sources[:rivals]]
+    path = tmp_path / "store.db"
+    build(path, content(species=(common, rare), sources=tuple(sources), entries=tuple(entries)), versions={})
+    with Reader(path) as reader:
+        if clear:
+            assert resolve(reader, "O2C") == common
+        else:
+            with pytest.raises(Ambiguous, match="carbon dioxide, dioxiranylidene"):
+                resolve(reader, "CO2")
+        assert [match.name for match in find(reader, "CO2")] == ["carbon dioxide", "dioxiranylidene"]
 
 
 def test_a_part_of_a_name_is_not_the_name(reader: Reader) -> None:
