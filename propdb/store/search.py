@@ -171,7 +171,7 @@ def _alike(reader: Reader, wanted: str, limit: int) -> dict[int, float]:
 
 
 def _known(reader: Reader, names: list[str]) -> list[str]:
-    """The one of several species that is well known while the others are curiosities; else all, the best known first."""
+    """The one of several species that is well known, the others being curiosities; else all, the best known first."""
     sources = {name: len({entry.source for entry in reader.entries(name)}) for name in names}
     ordered = sorted(names, key=lambda name: (-sources[name], name))
     first, second = ordered[:2]
@@ -183,8 +183,8 @@ def resolve(reader: Reader, text: str) -> Species:
 
     A CAS RN or InChIKey; then a primary name; then a formula, or a synonym as it is written; then either in another
     case. The first of these that any species answers to decides: ``Co`` is cobalt, even where carbon monoxide has the
-    synonym ``CO``, and ``co`` may be both. Of several, the one that three sources or more know, where none of the others
-    is known to more than one: ``CO2`` is carbon dioxide, though somebody computed dioxiranylidene.
+    synonym ``CO``, and ``co`` may be both. Of several, the one that three sources or more know, where none of the
+    others is known to more than one: ``CO2`` is carbon dioxide, though somebody computed dioxiranylidene.
 
     Raises
     ------
