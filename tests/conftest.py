@@ -45,6 +45,11 @@ def _no_user_data(tmp_path_factory: pytest.TempPathFactory) -> Iterator[None]:
         patch.setenv("PROPDB_CONFIG", str(tmp_path_factory.getbasetemp() / "config.toml"))
         if "PROPDB_STORE" not in os.environ:
             patch.setenv("PROPDB_STORE", str(tmp_path_factory.getbasetemp() / "propdb.db"))
+        path = Path(os.environ["PROPDB_STORE"])
+        if not path.exists():  # what was typed and cross-checked; the open data are in ``full_store``
+            from propdb.api.opening import build_seed
+
+            build_seed(path, None, open_data=False)
         yield
 
 

@@ -28,8 +28,11 @@ Row = list[str]
 
 
 def copy_seed(to: Path, *, keep: Callable[[Row], bool]) -> Path:
-    """A copy of the seed of this version with some rows (species, quantity, phase ...) of its files of entries."""
-    shutil.copytree(seed_root(), to)
+    """A copy of the seed of this version with some rows (species, quantity, phase ...) of its files of entries.
+
+    It brings no open data.
+    """
+    shutil.copytree(seed_root(), to, ignore=shutil.ignore_patterns("_package"))
     for file in to.glob("*/*.csv"):
         if file.name in _READ:
             change_rows(file, lambda rows: [row for row in rows if keep(row)])

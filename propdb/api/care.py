@@ -101,12 +101,12 @@ class Care(Core):
         return self._path
 
     def store_rebuild(
-        self, progress: Callable[[str], None] | None = None, *, open_data: bool = False
+        self, progress: Callable[[str], None] | None = None, *, open_data: bool = True
     ) -> dict[str, Any]:
-        """Bring in the seed of this version again; own entries, datums and decisions stay.
+        """Bring in the data of this version again; own entries, datums and decisions stay.
 
-        With ``open_data`` also what the installed ``chemicals`` library carries; without it, entries that an earlier
-        rebuild took from there become inactive.
+        Without ``open_data`` only what was typed and cross-checked: entries that an earlier build took from the
+        installed ``chemicals`` library become inactive.
         """
         report = build_seed(self._path, progress, open_data=open_data)
         self.close()

@@ -1,4 +1,4 @@
-"""Building a store from the seed of this version, and if asked for from the open data of the packages it stands on."""
+"""Building a store from the seed of this version and the open data of the package it stands on."""
 
 from __future__ import annotations
 
@@ -22,7 +22,7 @@ def to_stderr(text: str) -> None:
     print(text, file=sys.stderr, flush=True)
 
 
-def build_seed(path: Path, progress: Callable[[str], None] | None, *, open_data: bool = False) -> Any:
+def build_seed(path: Path, progress: Callable[[str], None] | None, *, open_data: bool = True) -> Any:
     """Bring the seed of this version into a store: one base, one transaction.
 
     Parameters
@@ -31,7 +31,7 @@ def build_seed(path: Path, progress: Callable[[str], None] | None, *, open_data:
     progress : callable or None
         Called with one line of text now and then.
     open_data : bool
-        Bring in what the installed ``chemicals`` library carries, too.
+        Bring in what the installed ``chemicals`` library carries, too; a seed without a list of its files brings none.
     """
     import gc
 
@@ -52,19 +52,21 @@ def _build(path: Path, progress: Callable[[str], None] | None, open_data: bool) 
 
     from propdb.intake.seeds import load_seed
     from propdb.intake.where import seed_root
+    from propdb.store.open import check_place
     from propdb.store.write import build
     from propdb.vetting.crosscheck import Checker, settle
 
     tell = None if progress is None else lambda text: progress(f"propdb: {text}")
     if tell is not None:
         tell(f"building the store {path}")
+    check_place(path)
     root = seed_root()
     content = load_seed(root)
     checker = Checker(content.policy["lineage"], content.sources)
     content = settle(content, checker)
     versions = {"propdb": __version__, "python": sys.version.split()[0], "sqlite": sqlite3.sqlite_version}
     versions["chemicals"] = chemicals.__version__
-    if open_data:
+    if open_data and (root / "_package").is_dir():
         from propdb.intake.package import load_package
 
         content = load_package(content, root, progress=tell).content

@@ -103,12 +103,14 @@ def rebuild(
     call: Call,
     open_data: Annotated[
         bool,
-        typer.Option("--open-data", help="Bring in what the chemicals library carries, too: 50,000 entries, unvetted."),
-    ] = False,
+        typer.Option(
+            "--open-data/--without-open-data", help="With what the chemicals library carries, 50,000 entries, or not."
+        ),
+    ] = True,
 ) -> None:
     """Bring in the data of this version again; what you added or decided stays.
 
-    Without --open-data, entries that came from the library by an earlier rebuild become inactive.
+    With --without-open-data the store holds only what was typed and cross-checked; the rest becomes inactive.
     """
     from propdb.cli.storetext import info_text
 

@@ -27,7 +27,7 @@ def info_text(found: Any) -> str:
 def intake_text(found: Mapping[str, Any]) -> str:
     """One line for each file, what was refused and why; then, if asked for, each row."""
     if not found["files"]:
-        return "The store was built without the open data; propdb store rebuild --open-data brings it in."
+        return "The store was built without the open data; propdb store rebuild brings them in."
     heading = ("file", "rows", "entries", "refused", "moved", "source")
     keys = ("key", "rows", "entries", "refused", "moved", "source")
     rows = [heading, *(tuple(str(report[key]) for key in keys) for report in found["files"])]

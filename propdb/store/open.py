@@ -11,7 +11,7 @@ from types import TracebackType
 
 from propdb.errors import IntegrityError, InvalidInput, PropdbError, StoreBusy, StoreError, StoreReadOnly
 
-__all__ = ["APPLICATION_ID", "SCHEMA", "default_path", "mapped", "open_store", "translate"]
+__all__ = ["APPLICATION_ID", "SCHEMA", "check_place", "default_path", "mapped", "open_store", "translate"]
 
 #: "prdb" in the header of the file says that the SQLite file is a propdb store.
 APPLICATION_ID = 0x70726462
@@ -150,6 +150,19 @@ def _look(path: Path, *, create: bool) -> None:
         raise StoreError("not a propdb store (not an SQLite file)", where=where, reason="not-sqlite", hint=_move(path))
     if size < 512 or _cut_short(path, head):
         raise StoreError("the file is damaged or truncated", where=where, reason="damaged", hint=_restore(path))
+
+
+def check_place(path: Path) -> None:
+    """Refuse a place where no store can be built before the work of building one; make its directory.
+
+    Raises
+    ------
+    StoreError
+        The directory cannot be made or written, or what is there is no store.
+    """
+    _look(path, create=True)
+    if not path.exists() and not os.access(path.parent, os.W_OK):
+        raise _cannot_open(path, f"store {path}")
 
 
 def _cut_short(path: Path, head: bytes) -> bool:

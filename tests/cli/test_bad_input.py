@@ -169,7 +169,7 @@ def test_rebuild_makes_a_store_where_there_is_none(line: Any, tmp_path: Path) ->
     (tmp_path / "empty.db").touch()
     for name in ("empty.db", "missing.db"):
         file = str(tmp_path / name)
-        assert line("store", "rebuild", "--store", file).code == 0
+        assert line("store", "rebuild", "--without-open-data", "--store", file).code == 0
         assert line("find", "water", "--store", file).code == 0
 
 

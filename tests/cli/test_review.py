@@ -34,7 +34,7 @@ def yesterday_store(tmp_path_factory: pytest.TempPathFactory) -> Path:
     then = datetime.now(UTC) - timedelta(days=2)
     with pytest.MonkeyPatch.context() as patch:
         patch.setattr(migrate, "utc_now", lambda: then.strftime("%Y-%m-%dT%H:%M:%S.%fZ"))
-        propdb.api.Store(path).store_rebuild()
+        propdb.api.Store(path).store_rebuild(open_data=False)
     return path
 
 

@@ -34,7 +34,14 @@ from propdb.store.backup import check
 
 VERBS = commands()
 #: Verbs and options that take long; seldom drawn.
-SLOW = {"store rebuild": 60, "--open-data": 300, "store check": 6, "--verify": 6, "--coverage": 6, "--crosscheck": 3}
+SLOW = {
+    "store rebuild": 300,
+    "--without-open-data": 60,
+    "store check": 6,
+    "--verify": 6,
+    "--coverage": 6,
+    "--crosscheck": 3,
+}
 #: Options that are given in so many of 40 lines; 8 for the others.
 OFTEN = {"temperature": 36, "store": 0, "as_of": 1, "source": 2, "form": 3, "saturated": 3, "pressure": 3}
 #: A row that can be converted, and some that cannot.

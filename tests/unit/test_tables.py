@@ -73,7 +73,7 @@ def table(store: Store, species: str, *, datum: str, temperatures: list[float], 
 @pytest.fixture
 def own(tmp_path: Path) -> Store:
     path = tmp_path / "own.db"
-    Store(path).store_rebuild()
+    Store(path).store_rebuild(open_data=False)
     return propdb.open(path)
 
 
