@@ -100,9 +100,7 @@ class Care(Core):
         """Where the store is."""
         return self._path
 
-    def store_rebuild(
-        self, progress: Callable[[str], None] | None = None, *, open_data: bool = True
-    ) -> dict[str, Any]:
+    def store_rebuild(self, progress: Callable[[str], None] | None = None, *, open_data: bool = True) -> dict[str, Any]:
         """Bring in the data of this version again; own entries, datums and decisions stay.
 
         Without ``open_data`` only what was typed and cross-checked: entries that an earlier build took from the

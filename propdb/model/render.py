@@ -73,28 +73,37 @@ def explain(answer: _Derived) -> str:
     return "\n".join(lines)
 
 
+#: Closures shown; what lies between the path and the rest is smaller than any of these.
+_MOST_CLOSURES = 10
+
+
 def _closures(answer: _Derived) -> list[str]:
-    """Closures that show in the last digit, largest first; those that agree in one line."""
+    """Closures that show in the last digit, largest first; in one line each those that are smaller, and that agree."""
     if not answer.closures:
         return []
     last = 0.5 * 10.0 ** -enthalpy_decimals(parse_unit(answer.unit))
-    shown = sorted((c for c in answer.closures if abs(c.difference) >= last), key=lambda c: -abs(c.difference))
-    rows = []
-    for c in shown:
+    telling = sorted((c for c in answer.closures if abs(c.difference) >= last), key=lambda c: -abs(c.difference))
+    same: dict[tuple[str, str, str], list[str]] = {}  # a source that says the same twice says it once
+    for c in telling:
         within = "uncertainty not stated"
         if c.uncertainty is not None:
             within = f"combined standard uncertainty {_number(c.uncertainty, answer.unit)}"
-        rows.append(
-            (c.via, _number(c.difference, answer.unit, sign=True), within, f"[{c.entry[:8]}]" if c.entry else "")
-        )
+        entries = same.setdefault((c.via, _number(c.difference, answer.unit, sign=True), within), [])
+        entries += [f"[{c.entry[:8]}]"] if c.entry else []
+    rows = [(*key, " ".join(entries)) for key, entries in same.items()]
+    shown = rows[:_MOST_CLOSURES] if len(rows) > _MOST_CLOSURES + 1 else rows
     lines = [
         "",
         f"Closures: what unused data say, less the path above [{answer.unit}]",
-        *columns(rows, right=(1,), indent=2, headed=False),
+        *columns(shown, right=(1,), indent=2, headed=False),
     ]
-    agree = len(answer.closures) - len(shown)
+    if len(rows) > len(shown):
+        lines.append(
+            f"  {len(rows) - len(shown)} more differ by {rows[len(shown)][1].lstrip('+-')} or less; --json lists them"
+        )
+    agree = len(answer.closures) - len(telling)
     if agree:
-        lines.append(f"  {agree} {'more ' if shown else ''}agree{'s' if agree == 1 else ''} to the last digit shown")
+        lines.append(f"  {agree} {'more ' if rows else ''}agree{'s' if agree == 1 else ''} to the last digit shown")
     return lines
 
 

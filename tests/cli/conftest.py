@@ -17,7 +17,9 @@ import propdb
 from propdb.cli.main import run
 
 #: Progress of a build, which may come before an error.
-PROGRESS = re.compile(r"propdb: (building the store|read \d+ files of chemicals|TRC gas tables|checking \d+ entries|wrote \d+ of \d+ entries)")
+PROGRESS = re.compile(
+    r"propdb: (building the store|read \d+ files of|TRC gas tables|checking \d+ entries|wrote \d+ of \d+ entries)"
+)
 
 
 @dataclass(frozen=True, slots=True)

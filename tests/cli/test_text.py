@@ -3,17 +3,19 @@
 from __future__ import annotations
 
 import json
+from dataclasses import replace
 from fractions import Fraction
 from types import MappingProxyType
 
 import pytest
 
+import propdb
 from propdb.cli.equationtext import equation_lines
 from propdb.cli.jsontext import dumps
 from propdb.cli.plain import like
 from propdb.errors import InvalidInput
 from propdb.model.cite import bibtex, cite, csl, text
-from propdb.model.records import MaySum, Source
+from propdb.model.records import Closure, MaySum, Source
 from propdb.model.text import columns, kelvin, pairs
 
 
@@ -150,3 +152,19 @@ def test_json_has_finite_numbers_or_null() -> None:
 )
 def test_characters_that_a_terminal_lacks(character: str, plain: str) -> None:
     assert like(character) == plain
+
+
+def test_closures_are_few_and_say_what_is_left_out() -> None:
+    """Ten lines at most, the largest first; what one source says twice is one line; the others are counted."""
+    with propdb.open() as store:
+        answer = store.enthalpy("nitrogen", phase="g", temperature="600C", datum="gas-25C")
+    many = [Closure(f"path {n}", 0.1 * n, None, f"{n:08d}aa", "book-2001") for n in range(1, 15)]
+    many += [Closure("path 14", 1.4, None, "99999999aa", "book-2001"), Closure("path 0", 1e-5, None, "", "book-2001")]
+    text = replace(answer, closures=tuple(many)).explain()
+    lines = [line.strip() for line in text[text.index("Closures") :].split("\n\n")[0].splitlines()[1:]]
+    assert lines[0].split("  ")[-1].strip() == "[00000014] [99999999]"
+    assert [line.split()[1] for line in lines[:10]] == [str(n) for n in range(14, 4, -1)]
+    assert lines[10:] == ["4 more differ by 0.400 or less; --json lists them", "1 more agrees to the last digit shown"]
+    text = replace(answer, closures=tuple(many[:11])).explain()  # one more would take a line to say so
+    assert text.count("\n  path ") == 11
+    assert "or less" not in text
