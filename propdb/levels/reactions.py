@@ -63,8 +63,9 @@ def reaction(
     """
     verdict = may_sum(datum, temperatures=[temperature])
     if not verdict.reaction:
+        why = "it gives each species its own zero" if datum.kind == "own" else verdict.why
         raise DatumMismatch(
-            f"enthalpies on {datum.name} cannot be summed across a reaction: {verdict.why}",
+            f"enthalpies on {datum.name} cannot be summed across a reaction: {why}",
             hint="use elements-298K",
             datum=datum.name,
         )
