@@ -246,6 +246,12 @@ class Reader(View):
         for name, entries in by_species.items():
             yield by_name[name], tuple(entries)
 
+    def own_entries(self) -> tuple[tuple[Species, Entry], ...]:
+        """The entries that people added, with their species."""
+        with self._snapshot():
+            found = self._read(_BY_ENTRY, "b.own = 1", self._view)
+            return tuple((self.species(entry.species), entry) for entry in found)
+
     def entries_of_source(self, key: str) -> tuple[Entry, ...]:
         """The active entries of a source, by species."""
         with self._snapshot():
