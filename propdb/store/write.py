@@ -13,6 +13,7 @@ from typing import TYPE_CHECKING, Any
 
 from propdb.model.records import Carrier, Entry, Source, Species
 from propdb.store import crosschecks, log, seal
+from propdb.store.bulk import insert_rows, without
 from propdb.store.content import (
     HASHED,
     Content,
@@ -39,7 +40,7 @@ __all__ = ["BuildReport", "Content", "build", "content_hash", "entry_id", "membe
 Progress = Callable[[str], None]
 
 _CHUNK = 5000
-#: Of these many species on, the trigram index is filled once behind the names instead of at each.
+#: From so many rows on, triggers are set aside and their work is done at once.
 _MANY = 200
 #: The pages of a whole store in memory while it is built, so that none is written before it is full [KiB].
 _CACHE = 131_072
@@ -162,10 +163,8 @@ def _write(
     }
     parts = sealing.close(rewritten=seal.BASE_PARTS)
     event = log.append(conn, "base", who="propdb", payload=payload | ({"rows": parts} if parts else {}))
-    conn.executemany(
-        "INSERT INTO base_entry (species, base, entry, own, status, note, printed) VALUES (?, ?, ?, 0, ?, ?, ?)",
-        sorted((row, event.seq, numbers[number], *rest) for row, number, *rest in listed),
-    )
+    members = sorted((row, event.seq, numbers[number], 0, *rest) for row, number, *rest in listed)
+    insert_rows(conn, "base_entry", ("species", "base", "entry", "own", "status", "note", "printed"), members)
     inactive = 0
     if before is not None:
         inactive = conn.execute(
@@ -282,29 +281,24 @@ def insert_species(db: Database, new: Sequence[tuple[Species, Mapping[str, Any]]
     rows = {one.name: start + i for i, (one, _) in enumerate(new)}
     if new:
         columns = ("id", "canon", "own", "active", *new[0][1])
-        sql = f"INSERT INTO species ({', '.join(columns)}) VALUES ({', '.join('?' * len(columns))})"
-        conn.executemany(sql, ((rows[one.name], rows[one.name], own, 1, *row.values()) for one, row in new))
+        values = ((rows[one.name], rows[one.name], own, 1, *row.values()) for one, row in new)
+        insert_rows(conn, "species", columns, values)
     insert = _insert_names if len(new) < _MANY else _insert_many_names
     insert(conn, ((rows[one.name], *name) for one, _ in new for name in sorted(name_rows(one))))
     return rows
 
 
 def _insert_many_names(conn: sqlite3.Connection, rows: Iterable[tuple[int, str, str, str]]) -> None:
-    """As :func:`_insert_names`; the trigram index in one statement, ten times faster than by the trigger.
-
-    The trigger is set aside within the transaction: nobody else sees the store without it.
-    """
-    trigger = "SELECT sql FROM sqlite_master WHERE type = 'trigger' AND name = 'name_indexed'"
-    sql = conn.execute(trigger).fetchone()[0]
+    """As :func:`_insert_names`; the trigram index in one statement, ten times faster than by its trigger."""
     last = conn.execute("SELECT coalesce(max(num), 0) FROM name").fetchone()[0]
-    conn.execute("DROP TRIGGER name_indexed")
-    _insert_names(conn, rows)
-    conn.execute("INSERT INTO name_trigram (rowid, folded) SELECT num, folded FROM name_text WHERE num > ?", (last,))
-    conn.execute(sql)
+    with without(conn, "name_indexed"):
+        _insert_names(conn, rows)
+        sql = "INSERT INTO name_trigram (rowid, folded) SELECT num, folded FROM name_text WHERE num > ?"
+        conn.execute(sql, (last,))
 
 
 def _insert_names(conn: sqlite3.Connection, rows: Iterable[tuple[int, str, str, str]]) -> None:
-    conn.executemany("INSERT INTO name (species, kind, folded, text) VALUES (?, ?, ?, ?)", rows)
+    insert_rows(conn, "name", ("species", "kind", "folded", "text"), rows)
 
 
 def set_names(conn: sqlite3.Connection, species: Iterable[tuple[int, Species]]) -> None:
@@ -340,12 +334,14 @@ def put_entries(
 ) -> dict[str, int]:
     """Insert entries that are missing, and carriers: entry id to row number."""
     columns = ("id", "identity", *(f'"{name}"' for name in HASHED))
-    sql = f"INSERT OR IGNORE INTO entry ({', '.join(columns)}) VALUES ({', '.join('?' * len(columns))})"
     marks = {name: identity(one) for name, one in species.items()}
     done = 0
     todo = iter(held)
     while chunk := list(islice(todo, _CHUNK)):
-        conn.executemany(sql, ((m.entry.id, marks[m.entry.species], *(m.row or hashed_row(m.entry))) for m in chunk))
+        rows = ((m.entry.id, marks[m.entry.species], *(m.row or hashed_row(m.entry))) for m in chunk)
+        # What the trigger sees to, that an entry which is there stays as it is, OR IGNORE does as well.
+        with without(conn, *(("entry_once",) if len(chunk) >= _MANY else ())):
+            insert_rows(conn, "entry", columns, rows, ignore=True)
         done += len(chunk)
         if tell is not None:
             tell(f"wrote {done} of {len(held)} entries")
@@ -355,10 +351,9 @@ def put_entries(
         numbers = {m.entry.id: conn.execute(find, (m.entry.id,)).fetchone()[0] for m in held}
     else:
         numbers = dict(conn.execute("SELECT id, num FROM entry"))
-    conn.executemany(
-        "INSERT OR IGNORE INTO carrier (entry, package, version, file, row, how) VALUES (?, ?, ?, ?, ?, ?)",
-        (_carrier_row(numbers[m.entry.id], carrier) for m in held for carrier in m.carriers),
-    )
+    columns = ("entry", "package", "version", "file", "row", "how")
+    carriers = (_carrier_row(numbers[m.entry.id], carrier) for m in held for carrier in m.carriers)
+    insert_rows(conn, "carrier", columns, carriers, ignore=True)
     return numbers
 
 
