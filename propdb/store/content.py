@@ -245,14 +245,18 @@ def parts_hash(
     for title, part in (
         ("species", species),
         ("sources", sources),
-        ("datums", (canonical(list(row)) for row in datums)),
-        ("policy", (canonical(list(row)) for row in policy)),
-        ("entries", (canonical([entry, status, note, bool(printed)]) for entry, status, note, printed in entries)),
+        ("datums", map(canonical, datums)),
+        ("policy", map(canonical, policy)),
+        ("entries", (canonical((entry, status, note, bool(printed))) for entry, status, note, printed in entries)),
     ):
         digest.update(f"{title}\n".encode())
-        for line in sorted(part):
-            digest.update(f"{line}\n".encode())
+        digest.update(joined(part))
     return digest.hexdigest()
+
+
+def joined(lines: Iterable[str]) -> bytes:
+    """Lines in their order, each with its end."""
+    return "\n".join([*sorted(lines), ""]).encode()
 
 
 def content_hash(content: Content) -> str:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import sqlite3
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from typing import Any, Final, Protocol
 
 from propdb.model.crosscheck import Crosscheck
@@ -71,12 +71,13 @@ def stale(conn: sqlite3.Connection, package: str) -> bool:
     return other is not None or conn.execute("SELECT 1 FROM crosscheck LIMIT 1").fetchone() is None
 
 
-def put_all(conn: sqlite3.Connection, held: Iterable[tuple[Entry, Species]], checker: Checker) -> None:
-    """Replace the cross-checks of the entries of a base and of all own entries."""
+def put_all(conn: sqlite3.Connection, found: Mapping[str, Sequence[Crosscheck]], checker: Checker) -> None:
+    """Replace the cross-checks of the entries of a base, ``found`` by entry id, and of all own entries."""
     from propdb.store.read import Reader
 
-    wanted = {entry.id: (entry, species) for entry, species in held}
+    every = dict(found)
     for species, entry in Reader(conn).own_entries():
-        wanted.setdefault(entry.id, (entry, species))
+        if entry.id not in every:
+            every[entry.id] = checker(entry, species)
     numbers = dict(conn.execute("SELECT id, num FROM entry"))
-    put_crosschecks(conn, ((numbers[key], checker(*wanted[key])) for key in sorted(wanted)))
+    put_crosschecks(conn, ((numbers[key], every[key]) for key in sorted(every)))

@@ -11,7 +11,8 @@ from dataclasses import dataclass
 from itertools import islice
 from typing import TYPE_CHECKING, Any
 
-from propdb.model.records import Carrier, Entry, Source, Species
+from propdb.model.crosscheck import Crosscheck
+from propdb.model.records import Carrier, Source, Species
 from propdb.store import crosschecks, log, seal
 from propdb.store.bulk import insert_rows, without
 from propdb.store.content import (
@@ -103,23 +104,22 @@ def build(
     held = validate(content)
     digest = hash_of(content, held)
     species = {one.name: one for one in content.species}
-    pairs = [(member.entry, species[member.entry.species]) for member in held.values()]
-    if checker is not None:
-        for pair in pairs:
-            checker(*pair)  # kept by the checker, so that no other writer waits for it
+    checks: dict[str, Sequence[Crosscheck]] = {}
+    if checker is not None:  # before the store is locked, so that no other writer waits for it
+        checks = {number: checker(m.entry, species[m.entry.species]) for number, m in held.items()}
     with closing(open_store(path, write=True, create=True, timeout=timeout)) as conn, mapped(path):
         conn.execute(f"PRAGMA cache_size = -{_CACHE:d}")
-        return _build(conn, content, held, pairs, digest, versions, tell, checker)
+        return _build(conn, content, held, digest, versions, tell, checks, checker)
 
 
 def _build(
     conn: sqlite3.Connection,
     content: Content,
     held: Mapping[str, Member],
-    pairs: Sequence[tuple[Entry, Species]],
     digest: str,
     versions: Mapping[str, str],
     tell: Progress,
+    checks: Mapping[str, Sequence[Crosscheck]],
     checker: crosschecks.Checker | None,
 ) -> BuildReport:
     with immediate(conn):
@@ -129,7 +129,7 @@ def _build(
         else:
             report = _write(conn, content, held, digest, versions, before, tell)
         if checker is not None and (report.changed or crosschecks.stale(conn, checker.package)):
-            crosschecks.put_all(conn, pairs, checker)
+            crosschecks.put_all(conn, checks, checker)
         return report
 
 
