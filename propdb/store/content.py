@@ -165,7 +165,12 @@ def canonical(value: object) -> str:
 
 def identity(species: Species) -> str:
     """What makes a species this one: CAS RN, else InChIKey, else name; with formula and charge."""
-    return canonical([species.cas or species.inchikey or species.name, species.formula, species.charge])
+    return mark_of(species.cas or species.inchikey or species.name, species.formula, species.charge)
+
+
+def mark_of(number: str, formula: str, charge: int) -> str:
+    """:func:`identity` from its parts: CAS RN, else InChIKey, else name; formula without charge; charge."""
+    return canonical([number, formula, charge])
 
 
 def hashed_row(entry: Entry) -> tuple[Any, ...]:
