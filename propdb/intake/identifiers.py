@@ -66,7 +66,8 @@ class Identifiers(Mapping[int, Any]):
     def __init__(self, folder: Path) -> None:
         lines: list[str] = []
         for name in _FILES:
-            lines += (folder / name).read_text(encoding="utf-8").split("\n")
+            with (folder / name).open(encoding="utf-8") as file:
+                lines += (line.rstrip("\n") for line in file)
         self._lines = lines
         self._at: dict[int, int] = {}
         self._made: dict[int, Known] = {}

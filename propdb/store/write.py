@@ -164,7 +164,9 @@ def _write(
     parts = sealing.close(rewritten=seal.BASE_PARTS)
     event = log.append(conn, "base", who="propdb", payload=payload | ({"rows": parts} if parts else {}))
     members = sorted((row, event.seq, numbers[number], 0, *rest) for row, number, *rest in listed)
-    insert_rows(conn, "base_entry", ("species", "base", "entry", "own", "status", "note", "printed"), members)
+    # The primary key and the index of entries refuse an entry that comes twice, as the trigger does.
+    with without(conn, "base_entry_once"):
+        insert_rows(conn, "base_entry", ("species", "base", "entry", "own", "status", "note", "printed"), members)
     inactive = 0
     if before is not None:
         inactive = conn.execute(
