@@ -57,7 +57,8 @@ def _content(count: int) -> Content:
 
 
 def _bare(conn: sqlite3.Connection, name: str) -> list[object]:
-    """The rows that a look-up needs, by plain selects: species, entries with membership, carriers, events, sources."""
+    """The rows that a look-up needs, by plain selects: species, entries with membership, carriers, cross-checks, events
+    and sources."""
     execute = conn.execute
     (number,) = execute("SELECT id FROM species WHERE name = ?", (name,)).fetchone()
     species = execute("SELECT * FROM species WHERE id = ?", (number,)).fetchall()
@@ -67,6 +68,9 @@ def _bare(conn: sqlite3.Connection, name: str) -> list[object]:
     ).fetchall()
     carriers = execute(
         "SELECT c.* FROM base_entry b JOIN carrier c ON c.entry = b.entry WHERE b.species = ?", (number,)
+    ).fetchall()
+    checks = execute(
+        "SELECT x.* FROM base_entry b JOIN crosscheck x ON x.entry = b.entry WHERE b.species = ?", (number,)
     ).fetchall()
     events = execute(
         "SELECT v.* FROM base_entry b JOIN entry e ON e.num = b.entry JOIN event v ON v.entry = e.id"
@@ -80,7 +84,7 @@ def _bare(conn: sqlite3.Connection, name: str) -> list[object]:
     ]
     assert len(entries) >= PER_SPECIES
     assert sources
-    return [species, entries, carriers, events, sources]
+    return [species, entries, carriers, checks, events, sources]
 
 
 def _look_up(reader: Reader, name: str) -> list[object]:
