@@ -54,7 +54,7 @@ class Care(Core):
         moved, points_left_out, trouble, remark, reasons}]`` and, if asked for, ``refusals[{key, row, what, kind,
         reason, column}]`` and ``moved[{key, row, what, species}]``.
         """
-        reports = self._reader.policies().get("package-report", [])
+        reports = self._reader.policy("package-report", [])
         totals = {name: sum(report[name] for report in reports) for name in ("rows", "entries", "refused")}
         files = [
             {name: value for name, value in report.items() if name not in ("refusals", "moves")}

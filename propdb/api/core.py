@@ -149,14 +149,14 @@ class Core:
     def _lineage(self) -> Lineage:
         from propdb.vetting.lineage import Lineage
 
-        return Lineage(self._reader.policies().get("lineage", {}), self._reader.sources())
+        return Lineage(self._reader.policy("lineage", {}), self._reader.sources())
 
     def _checker(self) -> Checker:
         """What compares entries with other compilations; loads the open library."""
         if self._checks is None:
             from propdb.vetting.crosscheck import Checker
 
-            self._checks = Checker(self._reader.policies().get("lineage", {}), self._reader.sources())
+            self._checks = Checker(self._reader.policy("lineage", {}), self._reader.sources())
         return self._checks
 
     def _with_changes(self, answer: _Answer, policy: Policy) -> _Answer:
@@ -233,7 +233,7 @@ class Core:
         self._must_be_present()
         place = Path(file)
         data = _read_toml(place)
-        elements = self._reader.policies().get("elements", {})
+        elements = self._reader.policy("elements", {})
         found = parse_datums(data, where=place.name, composition=self._composition, elements=elements)
         if not found:
             raise DatumError("the file defines no datum", where=place.name, hint="write a [datum.NAME] table")

@@ -81,6 +81,7 @@ class _Typed:
         self.package = checker.package
 
     def __call__(self, entry: Entry, species: Species) -> tuple[Crosscheck, ...]:
-        if entry.carriers and all(carrier.package == "chemicals" for carrier in entry.carriers):
-            return ()
-        return self._checker(entry, species)
+        for carrier in entry.carriers:
+            if carrier.package != "chemicals":
+                return self._checker(entry, species)
+        return () if entry.carriers else self._checker(entry, species)

@@ -1,6 +1,6 @@
 """Heat capacities and latent heats as functions of temperature: value, integral and integral over T, in closed form.
 
-Inside: J/mol, J/mol/K, K. Start-up is light: scipy is imported only when a table is made.
+Inside: J/mol, J/mol/K, K. Start-up is light: scipy, which takes half a second, is not needed for tables.
 """
 
 from propdb.cp._base import Equation, Jump

@@ -16,13 +16,56 @@ from numpy.typing import NDArray
 
 from propdb.cp._blocks import CP, FloatArray, H, Kind, S, Scratch
 
-__all__ = ["SplineKernel"]
+__all__ = ["SplineKernel", "monotone_cubics"]
 
 _MAX_CELLS = 512
 # Below this relative width the integral of cp/T is summed as a series: the closed form with its logarithm would lose
 # (width)^-3 to cancellation. 20 terms reach 1e-17 at the limit.
 _SERIES_WIDTH = 1.0 / 16.0
 _SERIES_TERMS = 20
+
+
+def monotone_cubics(x: NDArray[np.float64], y: NDArray[np.float64]) -> NDArray[np.float64]:
+    """Cubics through points, without maxima and minima between them.
+
+    Slopes by F. N. Fritsch and J. Butland, SIAM J. Sci. Stat. Comput. 1984, 5, 300: the weighted harmonic mean of both
+    sides, 0 at an extremum; at the ends that of the parabola through three points, kept from turning round. SciPy has
+    the same, and takes longer to import than a whole command may.
+
+    Parameters
+    ----------
+    x, y : ndarray, shape (n,)
+        Two points or more, x increasing.
+
+    Returns
+    -------
+    ndarray, shape (n - 1, 4)
+        y = sum(c_k (x - lower x)^k).
+    """
+    with np.errstate(all="ignore"):  # points too close together give what is not finite
+        h = np.diff(x)
+        rise = np.diff(y) / h
+        slope = np.empty(len(x))
+        if len(x) == 2:
+            slope[:] = rise[0]
+        else:
+            left, right = rise[:-1], rise[1:]
+            before, after = 2.0 * h[1:] + h[:-1], h[1:] + 2.0 * h[:-1]
+            mean = (before + after) / (before / left + after / right)
+            slope[1:-1] = np.where(np.sign(left) * np.sign(right) > 0.0, mean, 0.0)
+            slope[0] = _end_slope(*h[:2].tolist(), *rise[:2].tolist())
+            slope[-1] = _end_slope(*h[:-3:-1].tolist(), *rise[:-3:-1].tolist())
+        bend = (slope[:-1] + slope[1:] - 2.0 * rise) / h
+        return np.stack([y[:-1], slope[:-1], (rise - slope[:-1]) / h - bend, bend / h], axis=1)
+
+
+def _end_slope(h0: float, h1: float, rise0: float, rise1: float) -> float:
+    slope = ((2.0 * h0 + h1) * rise0 - h0 * rise1) / (h0 + h1)
+    if slope * rise0 <= 0.0:
+        return 0.0
+    if rise0 * rise1 <= 0.0 and abs(slope) > 3.0 * abs(rise0):
+        return 3.0 * rise0
+    return slope
 
 
 class SplineKernel:

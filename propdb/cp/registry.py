@@ -115,15 +115,15 @@ def build(name: str, params: Mapping[str, Any]) -> Equation | LatentHeat:
 
 def build_heat_capacity(name: str, params: Mapping[str, Any]) -> Equation:
     """As `build`, refusing latent heats."""
-    equation = build(name, params)
-    if isinstance(equation, LatentHeat):
+    equation: Equation = build(name, params)  # type: ignore[assignment]
+    if EQUATIONS[name].quantity == LATENT_HEAT:
         raise EquationError(f"{name} is a latent heat, not a heat capacity")
     return equation
 
 
 def build_latent_heat(name: str, params: Mapping[str, Any]) -> LatentHeat:
     """As `build`, refusing heat capacities."""
-    equation = build(name, params)
-    if not isinstance(equation, LatentHeat):
+    equation: LatentHeat = build(name, params)  # type: ignore[assignment]
+    if EQUATIONS[name].quantity != LATENT_HEAT:
         raise EquationError(f"{name} is a heat capacity, not a latent heat")
     return equation

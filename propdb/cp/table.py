@@ -22,7 +22,7 @@ from propdb.cp._blocks import (
     temperatures,
 )
 from propdb.cp._params import number, numbers, only, rows
-from propdb.cp._spline import SplineKernel
+from propdb.cp._spline import SplineKernel, monotone_cubics
 from propdb.errors import EquationError, SplitError
 
 __all__ = ["Table"]
@@ -192,8 +192,6 @@ def _part_starts(nodes: tuple[float, ...]) -> list[int]:
 def _kernel(
     nodes: tuple[float, ...], values: tuple[float, ...], starts: list[int], stated: Mapping[float, float]
 ) -> SplineKernel:
-    from scipy.interpolate import PchipInterpolator  # slow to import, and only tables need it
-
     edges = [np.array(nodes[:1])]
     cubics, steps, breaks = [], {}, set()
     count = 0
@@ -202,7 +200,7 @@ def _kernel(
             breaks.add(count)
             steps[count] = stated.get(nodes[start], 0.0)
         x, y = np.array(nodes[start:stop]), np.array(values[start:stop])
-        cubics.append(PchipInterpolator(x, y).c[::-1].T)
+        cubics.append(monotone_cubics(x, y))
         edges.append(x[1:])
         count += len(x) - 1
     coefficients = np.concatenate(cubics)

@@ -3,9 +3,13 @@
 from __future__ import annotations
 
 import math
+from bisect import bisect_right
 from collections.abc import Mapping, Sequence
 from typing import Any
 
+import numpy as np
+
+from propdb.cp._spline import monotone_cubics
 from propdb.errors import EquationError, TemperatureOutOfRange
 
 __all__ = ["EnthalpyTable"]
@@ -43,7 +47,7 @@ class EnthalpyTable:
             raise EquationError(f"temperatures go up from row to row, and {low:g} K does not")
         self.temperatures = tuple(t)
         self.enthalpies = tuple(h)
-        self._spline: Any = None
+        self._cubics: list[list[float]] | None = None
 
     @classmethod
     def from_params(cls, params: Mapping[str, Any]) -> EnthalpyTable:
@@ -76,8 +80,9 @@ class EnthalpyTable:
             )
         if temperature in self.temperatures:
             return self.enthalpies[self.temperatures.index(temperature)]
-        if self._spline is None:
-            from scipy.interpolate import PchipInterpolator
-
-            self._spline = PchipInterpolator(self.temperatures, self.enthalpies)
-        return float(self._spline(temperature))
+        if self._cubics is None:
+            self._cubics = monotone_cubics(np.array(self.temperatures), np.array(self.enthalpies)).tolist()
+        at = bisect_right(self.temperatures, temperature) - 1
+        c0, c1, c2, c3 = self._cubics[at]
+        x = temperature - self.temperatures[at]
+        return c0 + x * (c1 + x * (c2 + x * c3))

@@ -8,6 +8,7 @@ from dataclasses import dataclass, field
 from fractions import Fraction
 
 from propdb.errors import FormulaError
+from propdb.intake.identifiers import identifiers as known_identifiers
 from propdb.intake.rows import Row, Table
 from propdb.model.formula import check_cas, hill, is_inchikey, molar_mass, parse_formula
 from propdb.model.records import Species
@@ -212,10 +213,8 @@ def contradiction(cas: str, counts: Counts, charge: int) -> str:
     It completes radicals with hydrogen and knows ions by other formulas, so hydrogen is not compared, nor the number of
     atoms of a species of one element (S and S8 share a number). Species with fractional counts are passed.
     """
-    from chemicals.identifiers import pubchem_db
-
-    known = pubchem_db.search_CAS(int(cas.replace("-", "")))
-    if not known or charge or known.charge or any(isinstance(n, Fraction) for n in counts.values()):
+    known = known_identifiers().get(int(cas.replace("-", "")))
+    if known is None or charge or known.charge or any(isinstance(n, Fraction) for n in counts.values()):
         return ""
     listed = {e: n for e, n in parse_formula(known.formula).counts.items() if e not in ("H", "D")}
     stated = {e: n for e, n in counts.items() if e not in ("H", "D")}

@@ -5,7 +5,7 @@ from __future__ import annotations
 import json
 import math
 import unicodedata
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from fractions import Fraction
 from hashlib import sha256
@@ -121,7 +121,30 @@ def _plain(value: object) -> Any:
     raise TypeError(f"{type(value).__name__} cannot be stored as JSON")
 
 
-_ENCODER = json.JSONEncoder(sort_keys=True, separators=(",", ":"), allow_nan=False, default=_plain)
+_ENCODER = json.JSONEncoder(
+    sort_keys=True, separators=(",", ":"), allow_nan=False, check_circular=False, default=_plain
+)
+
+
+def _encoder() -> Callable[[object], str]:
+    """``_ENCODER.encode``, without making the compiled encoder anew at each call: that takes longer than a row.
+
+    Where the json module has no such thing, or another than expected, ``_ENCODER.encode`` itself.
+    """
+    try:
+        chunks = json.encoder.c_make_encoder(  # type: ignore[attr-defined]
+            None, _plain, json.encoder.encode_basestring_ascii, None, ":", ",", True, False, False
+        )
+        sample = ["\u00e9\n", None, True, -0.5, 1, {"b": [], "a": {"": 1e-20}}, Fraction(1, 3)]
+        if "".join(chunks(sample, 0)) != _ENCODER.encode(sample):
+            return _ENCODER.encode
+    except (AttributeError, TypeError):
+        return _ENCODER.encode
+    join = "".join
+    return lambda value: join(chunks(value, 0))
+
+
+_encode = _encoder()
 
 
 def canonical(value: object) -> str:
@@ -133,7 +156,7 @@ def canonical(value: object) -> str:
         NaN, an infinite number, or something that JSON cannot hold.
     """
     try:
-        return _ENCODER.encode(value)
+        return _encode(value)
     except (TypeError, ValueError, RecursionError) as error:
         raise InvalidInput(
             f"cannot be stored as JSON: {error}", hint="use texts, finite numbers, lists and tables"
@@ -142,7 +165,12 @@ def canonical(value: object) -> str:
 
 def identity(species: Species) -> str:
     """What makes a species this one: CAS RN, else InChIKey, else name; with formula and charge."""
-    return canonical([species.cas or species.inchikey or species.name, species.formula, species.charge])
+    return mark_of(species.cas or species.inchikey or species.name, species.formula, species.charge)
+
+
+def mark_of(number: str, formula: str, charge: int) -> str:
+    """:func:`identity` from its parts: CAS RN, else InChIKey, else name; formula without charge; charge."""
+    return canonical([number, formula, charge])
 
 
 def hashed_row(entry: Entry) -> tuple[Any, ...]:
@@ -222,14 +250,18 @@ def parts_hash(
     for title, part in (
         ("species", species),
         ("sources", sources),
-        ("datums", (canonical(list(row)) for row in datums)),
-        ("policy", (canonical(list(row)) for row in policy)),
-        ("entries", (canonical([entry, status, note, bool(printed)]) for entry, status, note, printed in entries)),
+        ("datums", map(canonical, datums)),
+        ("policy", map(canonical, policy)),
+        ("entries", (canonical((entry, status, note, bool(printed))) for entry, status, note, printed in entries)),
     ):
         digest.update(f"{title}\n".encode())
-        for line in sorted(part):
-            digest.update(f"{line}\n".encode())
+        digest.update(joined(part))
     return digest.hexdigest()
+
+
+def joined(lines: Iterable[str]) -> bytes:
+    """Lines in their order, each with its end."""
+    return "\n".join([*sorted(lines), ""]).encode()
 
 
 def content_hash(content: Content) -> str:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import sqlite3
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Mapping, Sequence
 from typing import Any, Final, Protocol
 
 from propdb.model.crosscheck import Crosscheck
@@ -35,25 +35,34 @@ def crosscheck_from(row: tuple[Any, ...]) -> Crosscheck:
 
 def put_crosschecks(conn: sqlite3.Connection, found: Iterable[tuple[int, Sequence[Crosscheck]]]) -> None:
     """Replace the cross-checks of entries, given by row number."""
-    for number, checks in found:
-        conn.execute("DELETE FROM crosscheck WHERE entry = ?", (number,))
-        conn.executemany(
-            "INSERT INTO crosscheck (entry, compilation, temperature, value, difference, allowed, independent, package)"
-            " VALUES (?, ?, ?, ?, ?, ?, ?, ?)",
+    made = list(found)
+    conn.executemany("DELETE FROM crosscheck WHERE entry = ?", _having(conn, [number for number, _ in made]))
+    conn.executemany(
+        "INSERT INTO crosscheck (entry, compilation, temperature, value, difference, allowed, independent, package)"
+        " VALUES (?, ?, ?, ?, ?, ?, ?, ?)",
+        (
             (
-                (
-                    number,
-                    c.compilation,
-                    -1.0 if c.temperature is None else c.temperature,
-                    c.value,
-                    c.difference,
-                    c.allowed,
-                    int(c.independent),
-                    c.package,
-                )
-                for c in checks
-            ),
-        )
+                number,
+                c.compilation,
+                -1.0 if c.temperature is None else c.temperature,
+                c.value,
+                c.difference,
+                c.allowed,
+                int(c.independent),
+                c.package,
+            )
+            for number, checks in made
+            for c in checks
+        ),
+    )
+
+
+def _having(conn: sqlite3.Connection, numbers: list[int]) -> list[tuple[int]]:
+    """Those of the entries that have cross-checks; few of many do."""
+    if len(numbers) < 100:
+        return [(number,) for number in numbers]
+    having = {number for (number,) in conn.execute("SELECT DISTINCT entry FROM crosscheck")}
+    return [(number,) for number in numbers if number in having]
 
 
 def stale(conn: sqlite3.Connection, package: str) -> bool:
@@ -62,13 +71,13 @@ def stale(conn: sqlite3.Connection, package: str) -> bool:
     return other is not None or conn.execute("SELECT 1 FROM crosscheck LIMIT 1").fetchone() is None
 
 
-def put_all(conn: sqlite3.Connection, held: Iterable[tuple[Entry, Species]], checker: Checker) -> None:
-    """Replace the cross-checks of the entries of a base and of all own entries."""
+def put_all(conn: sqlite3.Connection, found: Mapping[str, Sequence[Crosscheck]], checker: Checker) -> None:
+    """Replace the cross-checks of the entries of a base, ``found`` by entry id, and of all own entries."""
     from propdb.store.read import Reader
 
-    wanted = {entry.id: (entry, species) for entry, species in held}
-    for species, entries in Reader(conn).every_entry():
-        for entry in entries:
-            wanted.setdefault(entry.id, (entry, species))
+    every = dict(found)
+    for species, entry in Reader(conn).own_entries():
+        if entry.id not in every:
+            every[entry.id] = checker(entry, species)
     numbers = dict(conn.execute("SELECT id, num FROM entry"))
-    put_crosschecks(conn, ((numbers[key], checker(*pair)) for key, pair in sorted(wanted.items())))
+    put_crosschecks(conn, ((numbers[key], every[key]) for key in sorted(every)))

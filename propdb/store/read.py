@@ -25,6 +25,7 @@ _BY_SPECIES: Final = "species t CROSS JOIN species s ON s.canon = t.id CROSS JOI
 _BY_ENTRY: Final = "base_entry b CROSS JOIN species s ON s.id = b.species CROSS JOIN species t ON t.id = s.canon"
 _COLUMNS: Final = f"e.num, e.id, t.name, b.own, b.status, b.note, b.printed, {LOGGED}, {ENTRY_COLUMNS}"
 _AHEAD: Final = 8  # columns before those of the entry
+_NONE: Final = object()
 #: A species that the base or the user holds, or that has entries.
 SEEN: Final = (
     "(active = 1 OR own = 1 OR EXISTS"
@@ -246,6 +247,12 @@ class Reader(View):
         for name, entries in by_species.items():
             yield by_name[name], tuple(entries)
 
+    def own_entries(self) -> tuple[tuple[Species, Entry], ...]:
+        """The entries that people added, with their species."""
+        with self._snapshot():
+            found = self._read(_BY_ENTRY, "b.own = 1", self._view)
+            return tuple((self.species(entry.species), entry) for entry in found)
+
     def entries_of_source(self, key: str) -> tuple[Entry, ...]:
         """The active entries of a source, by species."""
         with self._snapshot():
@@ -292,17 +299,22 @@ class Reader(View):
         """The whole policy, lists as tuples, tables read-only; the user's goes before the base's."""
         return MappingProxyType(self._bodies("policy", "key", "value"))
 
-    def policy(self, key: str) -> Any:
-        """One value of :meth:`policies`.
+    def policy(self, key: str, default: Any = _NONE) -> Any:
+        """One value of :meth:`policies`, without reading the others; ``default`` where there is none, if given.
 
         Raises
         ------
         NotFound
         """
+        sql = "SELECT value FROM policy WHERE key = ? AND (own = 1 OR active = 1) ORDER BY own DESC LIMIT 1"
+        with self._snapshot():
+            row = self.conn.execute(sql, (key,)).fetchone()
+        if row is not None:
+            return frozen(json.loads(row[0]))
+        if default is not _NONE:
+            return default
         found = self.policies()
-        if key not in found:
-            raise NotFound(f"the policy has no {key!r}", hint=f"it has {', '.join(found)}" if found else "")
-        return found[key]
+        raise NotFound(f"the policy has no {key!r}", hint=f"it has {', '.join(found)}" if found else "")
 
     def info(self) -> dict[str, Any]:
         """Path, schema, base, log head and counts; see :func:`propdb.store.counts.info`."""

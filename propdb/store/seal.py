@@ -14,7 +14,7 @@ from collections.abc import Iterable, Mapping
 from hashlib import sha256
 from typing import Any, Final
 
-from propdb.store.content import canonical
+from propdb.store.content import canonical, joined
 
 __all__ = ["BASE_PARTS", "Seal", "carried", "member_hash", "members_hash", "state"]
 
@@ -52,11 +52,10 @@ PARTS: Final[Mapping[str, str]] = {
 BASE_PARTS: Final = frozenset(f"base {what}" for what in _LISTS if what != "names")
 
 
-def rows_hash(rows: Iterable[Iterable[Any]]) -> str:
+def rows_hash(rows: Iterable[tuple[Any, ...]]) -> str:
     """SHA-256 over rows, whatever their order."""
     digest = sha256(b"propdb rows 1\n")
-    for line in sorted(canonical(list(row)) for row in rows):
-        digest.update(f"{line}\n".encode())
+    digest.update(joined(map(canonical, rows)))
     return digest.hexdigest()
 
 

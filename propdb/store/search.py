@@ -160,7 +160,10 @@ def _alike(reader: Reader, wanted: str, limit: int) -> dict[int, float]:
     """Row of species to score, for names that are merely alike."""
     from rapidfuzz import fuzz, process
 
-    rows = reader.conn.execute("SELECT species, folded FROM name WHERE kind IN ('name', 'synonym')").fetchall()
+    # The score is twice the common characters over those of both, so one of them cannot be much longer.
+    ends = _FUZZY_CUTOFF / (200.0 - _FUZZY_CUTOFF)
+    sql = "SELECT species, folded FROM name WHERE kind IN ('name', 'synonym') AND length(folded) BETWEEN ? AND ?"
+    rows = reader.conn.execute(sql, (int(ends * len(wanted)), int(len(wanted) / ends) + 1)).fetchall()
     names = [folded for _, folded in rows]
     hits = process.extract(wanted, names, scorer=fuzz.ratio, score_cutoff=_FUZZY_CUTOFF, limit=4 * limit)
     scores: dict[int, float] = {}

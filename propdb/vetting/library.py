@@ -160,6 +160,7 @@ class Library:
 
     def __init__(self) -> None:
         self._frames: dict[str, Any] = {}
+        self._indexes: dict[str, list[str]] = {}
         self._columns: dict[tuple[str, str], dict[str, Any]] = {}
         self._rows: dict[str, Mapping[str, Mapping[str, Any]]] = {}
 
@@ -186,14 +187,20 @@ class Library:
         """A column by CAS RN, without blanks and without numbers that stand for two rows which differ."""
         key = (frame, column)
         if key not in self._columns:
-            cells = self.frame(frame)[column].dropna()
+            cells = self.frame(frame)[column]
             found: dict[str, Any] = {}
             twice = set()
-            for cas, cell in zip(map(str.strip, cells.index), cells.tolist(), strict=True):
-                if found.setdefault(cas, cell) != cell:
+            for cas, cell, there in zip(self._numbers(frame), cells.tolist(), cells.notna().tolist(), strict=True):
+                if there and found.setdefault(cas, cell) != cell:
                     twice.add(cas)
             self._columns[key] = {cas: cell for cas, cell in found.items() if cas not in twice}
         return self._columns[key]
+
+    def _numbers(self, frame: str) -> list[str]:
+        """The CAS RNs of the rows of a table."""
+        if frame not in self._indexes:
+            self._indexes[frame] = [str(cas).strip() for cas in self.frame(frame).index.tolist()]
+        return self._indexes[frame]
 
     def frame(self, name: str) -> Any:
         """A table of the library as it loads it; ``JANAF`` and ``ions`` have no name of their own there."""
@@ -269,8 +276,8 @@ class Library:
             table = self.frame(frame)
             columns = list(table.columns)
             found: dict[str, Mapping[str, Any]] = {}
-            for cas, row in zip(table.index, table.itertuples(index=False, name=None), strict=True):
-                found.setdefault(str(cas).strip(), dict(zip(columns, row, strict=True)))
+            for cas, row in zip(self._numbers(frame), table.itertuples(index=False, name=None), strict=True):
+                found.setdefault(cas, dict(zip(columns, row, strict=True)))
             self._rows[frame] = found
         return self._rows[frame]
 

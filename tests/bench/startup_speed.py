@@ -48,8 +48,10 @@ _ENTHALPY = """
 """
 
 
-def _process(*arguments: str, where: Path | None = None) -> Callable[[], object]:
+def _process(*arguments: str, where: Path | None = None, store: Path | None = None) -> Callable[[], object]:
     environment = {key: value for key, value in os.environ.items() if key != "PYTHONDONTWRITEBYTECODE"}
+    if store is not None:
+        environment["PROPDB_STORE"] = str(store)
 
     def start() -> None:
         subprocess.run([sys.executable, *arguments], cwd=where, env=environment, stdout=subprocess.DEVNULL, check=True)
@@ -61,14 +63,8 @@ def _empty(directory: Path, name: str, own: str, first: str = "") -> None:
     (directory / f"{name}.py").write_text(_EMPTY.format(first=first, own=own, shared=_SHARED), encoding="utf-8")
 
 
-def run() -> Iterator[Ratio]:
-    """Measure with the interpreter of this environment, everything byte-compiled."""
-    from importlib.util import find_spec
-
-    package = find_spec("propdb")
-    assert package is not None
-    assert package.submodule_search_locations is not None
-    compileall.compile_dir(package.submodule_search_locations[0], quiet=2)
+def commands(store: Path | None = None, label: str = "") -> Iterator[Ratio]:
+    """Verbs on a store, that of the environment unless given, each against an empty command."""
     with tempfile.TemporaryDirectory() as name:
         directory = Path(name)
         _empty(directory, "find_empty", _FIND)
@@ -82,17 +78,27 @@ def run() -> Iterator[Ratio]:
             ("enthalpy", state, " with numpy"),
         ):
             start = "import sys; sys.argv[0] = 'propdb'; "
-            ours = _process("-c", f"{start}from propdb.cli import main; main()", verb, *arguments)
+            call = f"{start}from propdb.cli import main; main()"
+            ours = _process("-c", call, verb, *arguments, store=store)
             empty = _process("-c", f"{start}from {verb}_empty import app; app()", *arguments, where=directory)
             ours()  # builds the store where there is none
             mine, base = medians(ours, empty, rounds=ROUNDS)
             yield Ratio(
-                f"cold propdb {verb} {arguments[0]} / empty typer command{suffix}",
+                f"{label}cold propdb {verb} {arguments[0]} / empty typer command{suffix}",
                 mine / base,
                 1.25,
                 detail=f"{mine * 1e3:.0f} / {base * 1e3:.0f} ms",
             )
-        mine, base = medians(_process("-c", "import propdb"), _process("-c", "pass"), rounds=2 * ROUNDS)
-        yield Ratio(
-            "import propdb / python -c pass", mine / base, 3.0, detail=f"{mine * 1e3:.1f} / {base * 1e3:.1f} ms"
-        )
+
+
+def run() -> Iterator[Ratio]:
+    """Measure with the interpreter of this environment, everything byte-compiled."""
+    from importlib.util import find_spec
+
+    package = find_spec("propdb")
+    assert package is not None
+    assert package.submodule_search_locations is not None
+    compileall.compile_dir(package.submodule_search_locations[0], quiet=2)
+    yield from commands()
+    mine, base = medians(_process("-c", "import propdb"), _process("-c", "pass"), rounds=2 * ROUNDS)
+    yield Ratio("import propdb / python -c pass", mine / base, 3.0, detail=f"{mine * 1e3:.1f} / {base * 1e3:.1f} ms")

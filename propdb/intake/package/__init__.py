@@ -7,14 +7,16 @@ reason; the report of each file is stored.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Collection, Iterable, Iterator, Mapping
 from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import Any
 
 from propdb.errors import SeedError
+from propdb.intake.identifiers import identifiers
 from propdb.intake.package import constants, curves
 from propdb.intake.package.files import FileSpec, Loaded, installed, load, read_manifest
+from propdb.intake.package.names import decoded
 from propdb.intake.package.registry import Registry
 from propdb.intake.package.report import FileReport
 from propdb.intake.package.sheet import Context, Row, Sheet
@@ -63,6 +65,14 @@ READERS: Mapping[str, tuple[Reader, str]] = {
     "crc-solids": (curves.crc_solids, "NAME/T(K) J/mol/K"),
     "perry-mixed": (curves.perry_mixed, "Formula"),
 }
+#: Files of vapour pressures, whose readers need all that the others have given, to the column with the name.
+VAPOUR: Mapping[str, str] = {
+    "vapour-wagner-poling": "Name",
+    "vapour-wagner-mcgarry": "Name",
+    "vapour-perry": "Chemical",
+    "vapour-antoine-poling": "Chemical",
+    "vapour-antoine": "Name",
+}
 _WAGNER = (1.0, 1.5, 3.0, 6.0)
 _WAGNER_25 = (1.0, 1.5, 2.5, 5.0)
 
@@ -101,14 +111,16 @@ def load_package(
     found, version = installed()
     where = place if place is not None else found
     sources = _sources(root, seed)
-    known, by_name, nuclides = _identifiers()
+    files = [load(spec, where, found_version=version, recorded_version=manifest.version) for spec in manifest.files]
+    formulas = {row.text("cas"): (row.text("formula"), row.text("name")) for row in _formulas(root)}
+    known, by_name, nuclides = _identifiers({*_names(files), *(name.lower() for _, name in formulas.values())})
     registry = Registry(
         seed.species,
         weights={**nuclides, **atomic_weights(root)},
         identifiers=known,
         by_name=by_name,
         aliases=_toml(root, "aliases.toml"),
-        formulas={row.text("cas"): (row.text("formula"), row.text("name")) for row in _formulas(root)},
+        formulas=formulas,
     )
     context = Context(
         registry,
@@ -117,8 +129,8 @@ def load_package(
     )
     reports = []
     estimator: Estimator | None = None
-    for spec in manifest.files:
-        loaded = load(spec, where, found_version=version, recorded_version=manifest.version)
+    for loaded in files:
+        spec = loaded.spec
         if spec.key.startswith("vapour-") and estimator is None:
             estimator = Estimator([*seed.entries, *context.entries])
         reports.append(_read(spec, loaded, context, estimator))
@@ -148,32 +160,41 @@ def _read(spec: FileSpec, loaded: Loaded, context: Context, estimator: Estimator
     if loaded.trouble:
         return sheet.report
     if estimator is not None:
-        readers: dict[str, tuple[Reader, str]] = {
-            "vapour-wagner-poling": (estimator.wagner(_WAGNER_25), "Name"),
-            "vapour-wagner-mcgarry": (estimator.wagner(_WAGNER), "Name"),
-            "vapour-perry": (estimator.perry, "Chemical"),
-            "vapour-antoine-poling": (estimator.antoine, "Chemical"),
-            "vapour-antoine": (estimator.antoine_natural, "Name"),
+        readers: dict[str, Reader] = {
+            "vapour-wagner-poling": estimator.wagner(_WAGNER_25),
+            "vapour-wagner-mcgarry": estimator.wagner(_WAGNER),
+            "vapour-perry": estimator.perry,
+            "vapour-antoine-poling": estimator.antoine,
+            "vapour-antoine": estimator.antoine_natural,
         }
-        reader, column = readers[spec.key]
+        reader, column = readers[spec.key], VAPOUR[spec.key]
     else:
         reader, column = READERS[spec.key]
     return sheet.run(reader, column)
 
 
-def _identifiers() -> tuple[Mapping[int, Any], Mapping[str, Any], Mapping[str, float]]:
+def _names(files: Iterable[Loaded]) -> Iterator[str]:
+    """The names of all rows, as the registry asks for them."""
+    for loaded in files:
+        key = loaded.spec.key
+        column = READERS[key][1] if key in READERS else VAPOUR[key]
+        for _, cells in loaded.rows:
+            if column in cells:
+                yield decoded(str(cells[column])).lower()
+
+
+def _identifiers(names: Collection[str]) -> tuple[Mapping[int, Any], Mapping[str, Any], Mapping[str, float]]:
     """What the package knows of CAS RNs, of names, and of the masses of elements without a standard atomic weight.
 
     Nothing where it cannot be read.
     """
     try:
         from chemicals.elements import periodic_table
-        from chemicals.identifiers import pubchem_db
 
-        pubchem_db.finish_loading()
+        known = identifiers()
+        return known, known.by_name(names), {element.symbol: element.MW for element in periodic_table}
     except Exception:  # noqa: BLE001  (whatever a damaged package raises)
         return {}, {}, {}
-    return pubchem_db.CAS_index, pubchem_db.name_index, {element.symbol: element.MW for element in periodic_table}
 
 
 def _toml(root: Path, name: str) -> dict[str, Any]:

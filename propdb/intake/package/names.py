@@ -15,6 +15,7 @@ __all__ = ["decoded", "is_code", "prune", "spoken", "wanted_synonyms"]
 _MISREAD: Final = str.maketrans(
     {"关": "[", "兴": "]", "共": "(", "兲": ")", "⫹": "+", "␣": "α", "␤": "β", "⬘": "'", "\u2429": "η"}
 )
+_CAPITALS: Final = re.compile(r"[A-Z][a-z]{2,}(?:,? [A-Z][a-z]{2,})*")
 _LONGEST: Final = 60  # characters of a synonym: longer ones nobody types
 _MOST: Final = 5
 #: Registry numbers and catalogue codes are no names.
@@ -38,7 +39,7 @@ def decoded(name: str) -> str:
 def spoken(name: str) -> str:
     """A name as it stands in running text: small first letter where no other capital follows."""
     plain = decoded(name)
-    if re.fullmatch(r"[A-Z][a-z]{2,}(?:,? [A-Z][a-z]{2,})*", plain):
+    if _CAPITALS.fullmatch(plain):
         return plain.lower()
     rest = plain[1:]
     return plain[:1].lower() + rest if rest and rest == rest.lower() and not rest.isdigit() else plain

@@ -19,13 +19,15 @@ from propdb.intake.package.names import decoded, is_code, prune, spoken, wanted_
 from propdb.intake.package.systematic import formula_of_name
 from propdb.model.formula import Formula, check_cas, hill, molar_mass, parse_formula
 from propdb.model.records import Species
-from propdb.store.content import identity
+from propdb.store.content import identity, mark_of
 from propdb.store.rows import fold
 
 __all__ = ["Draft", "Refused", "Registry"]
 
 Counts = tuple[tuple[str, int | Fraction], ...]
 _HYDROGEN: Final = ("H", "D")
+_PHASE: Final = re.compile(r"\s*\((?:g|l|cr|s|aq)\)\s*$")
+_ION: Final = re.compile(r"^\[(.*)\]([+-]\d*)$")
 
 
 class Refused(Exception):
@@ -47,6 +49,7 @@ class Draft:
     cas: str
     inchikey: str
     molar_mass: float
+    formula: str = ""  # in Hill order, without charge
     seed: Species | None = None
     mark: str = ""  # the identity that entries hash
     names: list[str] = field(default_factory=list)  # as the files call it
@@ -75,7 +78,7 @@ class Draft:
             )
         return Species(
             self.name,
-            hill(dict(self.counts)) if self.counts else "",
+            self.formula,
             self.charge,
             self.counts,
             self.molar_mass,
@@ -91,9 +94,7 @@ class Draft:
 @cache
 def read_formula(text: str) -> tuple[Counts, int] | None:
     """Atoms in Hill order and charge of a formula as files write it, or None."""
-    plain = re.sub(r"\s*\((?:g|l|cr|s|aq)\)\s*$", "", text.strip())
-    plain = re.sub(r"\[1H\]", "D", plain)
-    plain = re.sub(r"^\[(.*)\]([+-]\d*)$", r"\1\2", plain)
+    plain = _ION.sub(r"\1\2", _PHASE.sub("", text.strip()).replace("[1H]", "D"))
     try:
         formula = parse_formula(plain)
     except FormulaError:
@@ -148,6 +149,7 @@ class Registry:
                 species.cas,
                 species.inchikey,
                 species.molar_mass,
+                species.formula,
                 seed=species,
                 mark=identity(species),
                 vapour=species.vapour,
@@ -307,8 +309,8 @@ class Registry:
             draft = self._by_inchikey.get(known.InChI_key)
             if draft is not None and (dict(draft.counts), draft.charge) == (dict(listed[0]), listed[1]):
                 return draft
-        for draft in self._by_formula.get(listed, ()):
-            if not draft.cas and draft.charge and sum(n for _, n in draft.counts) <= 2:
+        for draft in self._by_formula.get(listed, ()) if listed[1] else ():
+            if not draft.cas and sum(n for _, n in draft.counts) <= 2:
                 return draft
         return None
 
@@ -400,26 +402,31 @@ class Registry:
             mass = molar_mass(dict(counts), self.weights)
         except FormulaError as error:
             raise Refused("no atomic weight", error.problem) from error
-        title = self._free_name(name, known, file_name, cas, hill(dict(counts), charge))
+        formula = hill(dict(counts)) if counts else ""
+        title = self._free_name(name, known, file_name, cas, hill(dict(counts), charge) if charge else formula)
         inchikey = known.InChI_key if known is not None else ""
-        draft = Draft(title, counts, charge, cas, inchikey, mass, known=known)
+        draft = Draft(title, counts, charge, cas, inchikey, mass, formula, known=known)
         if note:
             draft.notes.append(note)
         if known is not None:
             draft.vapour = vapour_of(known.smiles)
-        draft.mark = identity(draft.species(()))
+        draft.mark = mark_of(cas or inchikey or title, formula, charge)
         self._file(draft)
         return draft
 
     def _free_name(self, name: str, known: Any, file_name: str, cas: str, formula: str) -> str:
-        candidates = [spoken(name), spoken(file_name)]
-        if known is not None:
-            candidates.append(spoken(known.iupac_name))
-        candidates = [text for text in candidates if text and not is_code(text)] or [formula]
-        for text in candidates:
+        first = ""
+        for offered in (name, file_name, known.iupac_name if known is not None else ""):
+            text = spoken(offered)
+            if not text or is_code(text):
+                continue
             if fold(text) not in self._folded:
                 return text
-        first = candidates[0]
+            first = first or text
+        if not first:
+            first = formula
+            if fold(first) not in self._folded:
+                return first
         for mark in (formula, cas, *(f"{n}" for n in range(2, 99))):
             text = f"{first} [{mark}]"
             if mark and fold(text) not in self._folded:
@@ -433,7 +440,7 @@ class Registry:
         kept = [draft for draft in self.drafts.values() if draft.seed is not None or draft.name in used]
         asked = {draft.name: wanted_synonyms(draft.names, draft.known) for draft in kept}
         taken = {fold(text) for d in kept for text in (d.name, *(d.seed.synonyms if d.seed else ()))}
-        taken |= {hill(dict(d.counts), d.charge).casefold() for d in kept if d.counts}
+        taken |= {(hill(dict(d.counts), d.charge) if d.charge else d.formula).casefold() for d in kept if d.counts}
         return [draft.species(names) for draft, names in zip(kept, prune(asked, taken), strict=True)]
 
 

@@ -67,7 +67,7 @@ class Sheet:
         self._how = f"sha256 {loaded.sha256[:16]}" + (f"; {loaded.remark}" if loaded.remark else "")
         self._row = Row(0, {})
         self._name = ""
-        self._mark = ""
+        self._carrier: Carrier | None = None
         self._made: set[str] = set()
 
     def run(self, reader: Callable[[Sheet, Row], None], name_column: str) -> FileReport:
@@ -80,7 +80,7 @@ class Sheet:
                 Refusal(number, "", "cut off", f"{found} cells where there are {wanted} columns: the row is cut off")
             )
         for number, cells in self.loaded.rows:
-            self._row = Row(number, cells)
+            self._row, self._carrier = Row(number, cells), None
             self._name = decoded(str(cells.get(name_column, "")))
             before, refused = len(self.context.entries), len(report.refusals)
             try:
@@ -275,7 +275,10 @@ class Sheet:
             self.refuse("ion in a condensed phase", f"{row[0]} of an ion as {row[1]}: another species must be meant")
             return
         number = row_id(draft.mark, row)
-        carrier = Carrier("chemicals", self.loaded.version, self.loaded.file, self._row.number, self._how)
+        carrier = self._carrier
+        if carrier is None:  # one for all entries of the row
+            carrier = Carrier("chemicals", self.loaded.version, self.loaded.file, self._row.number, self._how)
+            self._carrier = carrier
         self._made.add(number)
         self.context.entries.append(
             Entry(number, draft.name, *row[:10], params, *row[11:], False, status, note, (carrier,))  # type: ignore[call-arg]

@@ -237,6 +237,8 @@ _STEREO: Final = re.compile(
     r"|(?<![a-z])(?:cis|trans|[ezrs]|d|l|dl|n|t|sec|s|tert|meso|erythro|threo|endo|exo|syn|anti|o|m|p|alpha|beta|gamma)"
     r"(?=[-, )])",
 )
+_UNREAD: Final = re.compile(r"radical|ion\b|\bsalt|hydrate|\bd\d|-d\d|polymer|[^a-z0-9 (),'’±+\-]")
+_OIC_ACID: Final = re.compile(r"(?<=[a-z])oic acid(?=$| )")
 _DEUTERIUM: Final = re.compile(r"-(?:\d+(?:,\d+)*-)?d(\d*)$")
 _LOCANTS: Final = re.compile(r"(?<![a-z])[nosp]['’]*(?=[-,])|\d+[a-z]?['’]*(?![a-z])|\d+(?=h-)|['’\-,±+]")
 
@@ -249,15 +251,14 @@ def formula_of_name(name: str) -> dict[str, int] | None:
     name : str
         In English, of a neutral compound. "N-methylbutan-1-amine", "methyl decyl ether", "(Z)-9-tridecenyl acetate".
     """
-    text = re.sub(r"\s+", " ", name.casefold().strip()).replace("[", "(").replace("]", ")")
-    text = re.sub(r" radical$", "", text)
+    text = " ".join(name.casefold().split()).replace("[", "(").replace("]", ")").removesuffix(" radical")
     labelled = _DEUTERIUM.search(text)
     if labelled:
         text = text[: labelled.start()]
-    if re.search(r"radical|ion\b|\bsalt|hydrate|\bd\d|-d\d|polymer|[^a-z0-9 (),'’±+\-]", text):
+    if _UNREAD.search(text):
         return None
     text = _LOCANTS.sub("", _STEREO.sub("", text)).strip()
-    text = re.sub(r"(?<=[a-z])oic acid(?=$| )", "oicacid", text)
+    text = _OIC_ACID.sub("oicacid", text)
     found = set(_whole(text))
     if len(found) != 1:
         return None
