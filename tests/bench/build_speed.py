@@ -45,8 +45,10 @@ def _python(code: str, *arguments: str) -> float:
 def run() -> Iterator[Ratio]:
     with tempfile.TemporaryDirectory() as folder:
         path, plain = Path(folder) / "propdb.db", Path(folder) / "plain.db"
-        call = f"build_seed(Path({str(path)!r}), None, open_data=True)"
-        built = _python(f"from pathlib import Path; from propdb.api.opening import build_seed; {call}") - _python("")
+        call = "from propdb.api.opening import build_seed; build_seed(Path(sys.argv[1]), None, open_data=True)"
+        code = f"import sys; from pathlib import Path; {call}"
+        # The shorter of two runs, on either side: what else the machine does can only add.
+        built = min(_python(code, str(place)) for place in (Path(folder) / "first.db", path)) - _python("")
         source = sqlite3.connect(path)
         tables = {name: source.execute(f"SELECT * FROM {name}").fetchall() for name in ("entry", "name")}
 
@@ -60,7 +62,7 @@ def run() -> Iterator[Ratio]:
                     conn.executemany(f"INSERT INTO {name} VALUES ({marks})", rows)
             conn.close()
 
-        least = _python(_READ, *_files()) - _python("") + seconds(insert)
+        least = min(_python(_READ, *_files()) + seconds(insert) for _ in range(2)) - _python("")
         yield Ratio(
             "whole build / read with pandas and insert", built / least, 4.0, detail=f"{built:.1f} / {least:.1f} s"
         )
