@@ -14,7 +14,7 @@ from propdb.cp._blocks import FloatArray, Temperatures, not_a_temperature, refus
 from propdb.cp._params import number, only
 from propdb.errors import EquationError, TemperatureOutOfRange
 
-__all__ = ["ConstantLatent", "LatentHeat", "RangeTest", "Watson", "checked"]
+__all__ = ["ConstantLatent", "LatentHeat", "RangeTest", "ToCritical", "Watson", "checked"]
 
 
 @runtime_checkable
@@ -78,6 +78,72 @@ class RangeTest:
             return self.tmin <= T <= self.tmax
         x = temperatures(T)
         return (x >= self.tmin) & (x <= self.tmax)
+
+
+class ToCritical(RangeTest):
+    """What falls to zero at the critical temperature, where its slope is infinite."""
+
+    __slots__ = ()
+
+    Tc: float
+
+    @property
+    def _span(self) -> float:
+        """What the distance from the critical temperature is divided by [K]."""
+        return self.Tc
+
+    def _dh(self, t: Any) -> Any:
+        """Enthalpy at t = (Tc - T)/span >= 0."""
+        raise NotImplementedError
+
+    def _slope(self, t: Any) -> Any:
+        """Its derivative with respect to t > 0."""
+        raise NotImplementedError
+
+    def _gap(self, T: float | Temperatures, *, below: bool) -> Any:
+        x = checked(T)
+        t = (self.Tc - x) / self._span
+        if not (np.all(t > 0.0) if below else np.all(t >= 0.0)):
+            where = f"{'at or ' if below else ''}above the critical temperature {self.Tc:.7g} K"
+            raise TemperatureOutOfRange(
+                f"{float(np.max(x)):.7g} K is {where}",
+                ranges=[(self.tmin, self.tmax)],
+            )
+        return np.float64(t) if isinstance(t, float) else t
+
+    @overload
+    def dh(self, T: float) -> float: ...
+    @overload
+    def dh(self, T: Temperatures) -> FloatArray: ...
+    def dh(self, T: float | Temperatures) -> float | FloatArray:
+        """Enthalpy of vaporisation [J/mol] at `T` [K], shape of `T`; 0 at the critical temperature.
+
+        Raises
+        ------
+        TemperatureError
+            If a temperature is not a finite number above 0 K.
+        TemperatureOutOfRange
+            Above the critical temperature.
+        """
+        result = self._dh(self._gap(T, below=False))
+        return result if isinstance(result, np.ndarray) else float(result)
+
+    @overload
+    def ddh_dT(self, T: float) -> float: ...
+    @overload
+    def ddh_dT(self, T: Temperatures) -> FloatArray: ...
+    def ddh_dT(self, T: float | Temperatures) -> float | FloatArray:
+        """Its slope [J/mol/K] at `T` [K], shape of `T`.
+
+        Raises
+        ------
+        TemperatureError
+            If a temperature is not a finite number above 0 K.
+        TemperatureOutOfRange
+            At or above the critical temperature, where the slope is infinite.
+        """
+        result = self._slope(self._gap(T, below=True)) / -self._span
+        return result if isinstance(result, np.ndarray) else float(result)
 
 
 @dataclass(frozen=True, slots=True)
@@ -160,7 +226,7 @@ class ConstantLatent(RangeTest):
 
 
 @dataclass(frozen=True, slots=True)
-class Watson(RangeTest):
+class Watson(ToCritical):
     """Enthalpy of vaporisation from one known value: dh = dh1 ((Tc - T)/(Tc - T1))^exponent.
 
     K. M. Watson, Ind. Eng. Chem. 35 (1943).
@@ -208,56 +274,15 @@ class Watson(RangeTest):
         """Upper end of the range [K]: the critical temperature."""
         return self.Tc
 
-    def _reduced(self, T: float | Temperatures, *, below: bool) -> float | FloatArray:
-        t = checked(T)
-        gap = (self.Tc - t) / (self.Tc - self.T1)
-        low = float(np.min(gap)) if np.size(gap) else 1.0
-        if low < 0.0 or (below and low == 0.0):
-            hottest = float(np.max(t))
-            raise TemperatureOutOfRange(
-                f"{hottest!r} K is {'at or ' if below else ''}above the critical temperature {self.Tc!r} K",
-                ranges=[(0.0, self.Tc)],
-            )
-        return gap
+    @property
+    def _span(self) -> float:
+        return self.Tc - self.T1
 
-    @overload
-    def dh(self, T: float) -> float: ...
-    @overload
-    def dh(self, T: Temperatures) -> FloatArray: ...
-    def dh(self, T: float | Temperatures) -> float | FloatArray:
-        """Enthalpy of vaporisation [J/mol] at `T` [K], shape of `T`; 0 at the critical temperature.
+    def _dh(self, t: Any) -> Any:
+        return self.dh1 * np.power(t, self.exponent)
 
-        Raises
-        ------
-        TemperatureError
-            If a temperature is not a finite number above 0 K.
-        TemperatureOutOfRange
-            Above the critical temperature.
-        """
-        return self._power(self._reduced(T, below=False), self.dh1, self.exponent)
-
-    @overload
-    def ddh_dT(self, T: float) -> float: ...
-    @overload
-    def ddh_dT(self, T: Temperatures) -> FloatArray: ...
-    def ddh_dT(self, T: float | Temperatures) -> float | FloatArray:
-        """Its slope [J/mol/K] at `T` [K], shape of `T`.
-
-        Raises
-        ------
-        TemperatureError
-            If a temperature is not a finite number above 0 K.
-        TemperatureOutOfRange
-            At or above the critical temperature, where the slope is infinite.
-        """
-        slope = -self.dh1 * self.exponent / (self.Tc - self.T1)
-        return self._power(self._reduced(T, below=True), slope, self.exponent - 1.0)
-
-    @staticmethod
-    def _power(gap: float | FloatArray, factor: float, exponent: float) -> float | FloatArray:
-        # numpy's power for single numbers too, so that both paths agree in every bit.
-        result = factor * np.power(gap, exponent)
-        return float(result) if isinstance(gap, float) else result
+    def _slope(self, t: Any) -> Any:
+        return self.dh1 * self.exponent * np.power(t, self.exponent - 1.0)
 
     @classmethod
     def from_params(cls, params: Mapping[str, Any]) -> Self:

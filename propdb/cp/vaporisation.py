@@ -7,79 +7,17 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
-from typing import Any, ClassVar, Self, overload
+from typing import Any, ClassVar, Self
 
 import numpy as np
 
 from propdb.cp._base import set_field
-from propdb.cp._blocks import FloatArray, Temperatures
 from propdb.cp._params import check_range, number, numbers, only
-from propdb.cp.latent import RangeTest, checked
-from propdb.errors import EquationError, TemperatureOutOfRange
+from propdb.cp.latent import ToCritical
+from propdb.errors import EquationError
 from propdb.model.records import R_GAS
 
 __all__ = ["PerryVaporisation", "VdiVaporisation"]
-
-
-class _ToCritical(RangeTest):
-    """What falls to zero at the critical temperature, where its slope is infinite."""
-
-    __slots__ = ()
-
-    Tc: float
-
-    def _dh(self, t: Any) -> Any:
-        """Enthalpy at t = 1 - T/Tc >= 0."""
-        raise NotImplementedError
-
-    def _slope(self, t: Any) -> Any:
-        """Its derivative with respect to t > 0."""
-        raise NotImplementedError
-
-    def _gap(self, T: float | Temperatures, *, below: bool) -> Any:
-        x = checked(T)
-        t = (self.Tc - x) / self.Tc
-        if not (np.all(t > 0.0) if below else np.all(t >= 0.0)):
-            where = f"{'at or ' if below else ''}above the critical temperature {self.Tc:.7g} K"
-            raise TemperatureOutOfRange(
-                f"{float(np.max(x)):.7g} K is {where}",
-                ranges=[(self.tmin, self.tmax)],
-            )
-        return np.float64(t) if isinstance(t, float) else t
-
-    @overload
-    def dh(self, T: float) -> float: ...
-    @overload
-    def dh(self, T: Temperatures) -> FloatArray: ...
-    def dh(self, T: float | Temperatures) -> float | FloatArray:
-        """Enthalpy of vaporisation [J/mol] at `T` [K], shape of `T`; 0 at the critical temperature.
-
-        Raises
-        ------
-        TemperatureError
-            If a temperature is not a finite number above 0 K.
-        TemperatureOutOfRange
-            Above the critical temperature.
-        """
-        result = self._dh(self._gap(T, below=False))
-        return result if isinstance(result, np.ndarray) else float(result)
-
-    @overload
-    def ddh_dT(self, T: float) -> float: ...
-    @overload
-    def ddh_dT(self, T: Temperatures) -> FloatArray: ...
-    def ddh_dT(self, T: float | Temperatures) -> float | FloatArray:
-        """Its slope [J/mol/K] at `T` [K], shape of `T`.
-
-        Raises
-        ------
-        TemperatureError
-            If a temperature is not a finite number above 0 K.
-        TemperatureOutOfRange
-            At or above the critical temperature, where the slope is infinite.
-        """
-        result = self._slope(self._gap(T, below=True)) / -self.Tc
-        return result if isinstance(result, np.ndarray) else float(result)
 
 
 def _range(tmin: Any, tmax: Any, tc: float) -> tuple[float, float]:
@@ -93,7 +31,7 @@ def _range(tmin: Any, tmax: Any, tc: float) -> tuple[float, float]:
 
 
 @dataclass(frozen=True, slots=True)
-class PerryVaporisation(_ToCritical):
+class PerryVaporisation(ToCritical):
     """dh = A (1 - Tr)^(B + C Tr + D Tr^2), Tr = T/Tc.
 
     Parameters
@@ -150,7 +88,7 @@ class PerryVaporisation(_ToCritical):
 
 
 @dataclass(frozen=True, slots=True)
-class VdiVaporisation(_ToCritical):
+class VdiVaporisation(ToCritical):
     """dh = R Tc (A t^(1/3) + B t^(2/3) + C t + D t^2 + E t^6), t = 1 - T/Tc.
 
     Parameters
