@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterable
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, replace
 from math import hypot
 from typing import NamedTuple
@@ -143,10 +143,12 @@ def collect(
     critical: Critical | None,
     vapour: str,
     formulation: Formulation | None,
+    liquid: Sequence[tuple[float, float]] = (),
 ) -> list[Edge]:
     """All edges of a species but the heating ones, the chosen entry of each pair of nodes first.
 
-    ``foreign_zero`` gives the level of zero of an entry's datum where that is not the internal scale.
+    ``foreign_zero`` gives the level of zero of an entry's datum where that is not the internal scale. ``liquid`` are the
+    ranges of the liquid's heat capacity [K].
     """
     by_quantity: dict[str, list[Entry]] = {}
     for e in choose(entries, policy):
@@ -179,7 +181,7 @@ def collect(
             start = Node("cr" if e.phase == "l" else e.phase, e.form, 0.0)
             end = Node(e.phase, e.form, T_STANDARD)
             edges.append(entry_edge(e, start, end, e.value, "increment H(298.15) - H(0)", "increment", policy))
-    edges += _latent_edges(by_quantity, policy, boiling, melting)
+    edges += _latent_edges(by_quantity, policy, boiling, melting, liquid)
     vapours = {n for edge in edges for n in (edge.start, edge.end) if n.saturated}
     if formulation is not None:
         edges += _formulation_edges(formulation, vapours)
@@ -202,8 +204,19 @@ def _burdened(edge: Edge, link: Edge | None) -> Edge:
     return replace(edge, size=hypot(edge.size, link.size, away))
 
 
+def _within(liquid: Sequence[tuple[float, float]], low: float, high: float) -> list[float]:
+    """The temperature next to 298.15 K at which the liquid's heat capacity and an equation from low to high hold."""
+    shared = [(max(a, low), min(b, high)) for a, b in liquid]
+    clamped = [min(max(T_STANDARD, a), b) for a, b in shared if a < b]
+    return sorted(clamped, key=lambda t: abs(t - T_STANDARD))[:1]
+
+
 def _latent_edges(
-    by_quantity: dict[str, list[Entry]], policy: Policy, boiling: float | None, melting: float | None
+    by_quantity: dict[str, list[Entry]],
+    policy: Policy,
+    boiling: float | None,
+    melting: float | None,
+    liquid: Sequence[tuple[float, float]],
 ) -> list[Edge]:
     edges: list[Edge] = []
     for e in by_quantity.get("Hvap", ()):
@@ -213,12 +226,15 @@ def _latent_edges(
             equation = build_latent_heat(e.equation, e.params)
             low = e.tmin if e.tmin is not None else 0.0
             high = e.tmax if e.tmax is not None else float("inf")
-            points = [(t, float(equation.dh(t))) for t in (T_STANDARD, boiling) if t is not None and low <= t <= high]
-            if not points and low > 0.0:  # neither lies in the range: its lower end, where the vapour is thin
-                points = [(low, float(equation.dh(low)))]
+            at = [t for t in (T_STANDARD, boiling) if t is not None and low <= t <= high]
+            if not any(a <= t <= b for t in at for a, b in liquid):
+                at += _within(liquid, low, high)
+            if not at and low > 0.0:  # no temperature lies in the range: its lower end, where the vapour is thin
+                at = [low]
+            points = [(t, float(equation.dh(t))) for t in at]
         elif e.value is not None:
-            at = e.temperature if e.temperature is not None else boiling
-            points = [] if at is None else [(at, e.value)]
+            t_v = e.temperature if e.temperature is not None else boiling
+            points = [] if t_v is None else [(t_v, e.value)]
         else:  # pragma: no cover - the store refuses such an entry
             points = []
         for t, value in points:
@@ -232,12 +248,13 @@ def _latent_edges(
     for e in by_quantity.get("Hfus", ()):
         t_m = e.temperature if e.temperature is not None else melting
         if e.value is not None and t_m is not None:
-            edges.append(
-                entry_edge(e, Node("cr", e.form, t_m), Node("l", "", t_m), e.value, "fusion", "transition", policy)
-            )
+            edge = entry_edge(e, Node("cr", e.form, t_m), Node("l", "", t_m), e.value, "fusion", "transition", policy)
+            edges.append(replace(edge, size=hypot(edge.size, PER_KELVIN * (t_m - T_STANDARD))))
     for e in by_quantity.get("Htr", ()):
         if e.value is not None and e.temperature is not None and e.to:
             phase, _, form = e.to.partition(":")
+            if (phase, form) == (e.phase, e.form):
+                continue  # within one track: the curve crosses its split with it
             edges.append(
                 entry_edge(
                     e,

@@ -98,6 +98,7 @@ class Levels(States):
         if formulation is not None:
             tree.tracks[("l", "")] = formulation
             tree.position = lambda node: State("l", node.temperature) if node.phase == "l" else node.temperature
+        liquid = tree.tracks.get(("l", ""))
         edges = collect(
             species=species,
             entries=entries,
@@ -109,6 +110,7 @@ class Levels(States):
             critical=critical,
             vapour=record.vapour,
             formulation=formulation,
+            liquid=liquid.ranges() if isinstance(liquid, Curve) else (),
         )
         tree.grow(edges, extrapolate=self.extrapolate)
         return tree
