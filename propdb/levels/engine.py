@@ -92,6 +92,7 @@ class Levels(States):
                 boiling=boiling if phase == "l" else None,
                 critical=critical if phase == "l" else None,
                 transitions=self._transitions(entries, phase, form),
+                changes=self._changes(species, entries, phase),
             )
             if curve is not None:
                 tree.tracks[(phase, form)] = curve
@@ -114,6 +115,16 @@ class Levels(States):
         )
         tree.grow(edges, extrapolate=self.extrapolate)
         return tree
+
+    def _changes(self, species: str, entries: Sequence[Entry], phase: str) -> list[float]:
+        """Temperatures [K] at which this phase melts, boils or passes into another form."""
+        quantities = {"cr": ("Hfus", "Htr", "Tm"), "l": ("Hfus", "Tm", "Tb", "Hvap")}.get(phase, ())
+        found = [
+            e.value if e.quantity in ("Tm", "Tb") else e.temperature
+            for e in choose(entries, self.policy)
+            if e.quantity in quantities and (e.quantity != "Hvap" or e.temperature != T_STANDARD)
+        ]
+        return [t for t in found if t is not None]
 
     def _transitions(self, entries: Sequence[Entry], phase: str, form: str) -> list[Entry]:
         """Entries that may state the enthalpy of a split in a table of this phase and form, best first.

@@ -24,8 +24,9 @@ def carries(levels: Levels, species: str, phases: tuple[str, ...]) -> bool:
     Returns
     -------
     bool
-        True where a state of the first phase at the lower end of its path, a liquid that is one (above the melting
-        point and not above the critical temperature, where those are known), and the ideal gas lie on one way.
+        True where a crystal, a liquid that is one (above the melting point and not above the critical temperature,
+        where those are known) and the ideal gas lie on one way. Each phase is tried at 298.15 K or the nearest
+        temperature of its range, and beyond each split of its table: a crystal may count from the form that melts.
     """
     places = [_places(levels, species, phase) for phase in phases]
     starts, *others = places
@@ -55,7 +56,7 @@ def _places(levels: Levels, species: str, phase: str) -> list[State]:
     for (found, form), track in tracks.items():
         if found != phase:
             continue
-        ranges = track.ranges() if isinstance(track, Curve) else [(low, high)]
+        ranges = [(p.tmin, p.tmax) for p in track.pieces] if isinstance(track, Curve) else [(low, high)]
         for a, b in ranges:
             bottom, top = max(a, low), min(b, high)
             if bottom <= top:
