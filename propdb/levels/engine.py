@@ -112,6 +112,7 @@ class Levels(States):
             vapour=record.vapour,
             formulation=formulation,
             liquid=liquid.ranges() if isinstance(liquid, Curve) else (),
+            tc=self.value(species, "Tc"),
         )
         tree.grow(edges, extrapolate=self.extrapolate)
         return tree

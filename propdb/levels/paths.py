@@ -10,6 +10,9 @@ from propdb.model.records import T_STANDARD, State
 
 __all__ = ["carries"]
 
+#: What takes a state beyond the split of a table [K].
+_BEYOND = 1e-3
+
 
 def carries(levels: Levels, species: str, phases: tuple[str, ...]) -> bool:
     """Does the engine carry an enthalpy along all ``phases``, without extrapolation?
@@ -56,9 +59,10 @@ def _places(levels: Levels, species: str, phase: str) -> list[State]:
     for (found, form), track in tracks.items():
         if found != phase:
             continue
-        ranges = [(p.tmin, p.tmax) for p in track.pieces] if isinstance(track, Curve) else [(low, high)]
-        for a, b in ranges:
-            bottom, top = max(a, low), min(b, high)
+        ranges = [(p.tmin, p.tmax, p.side) for p in track.pieces] if isinstance(track, Curve) else [(low, high, 0)]
+        for a, b, side in ranges:
+            # A state at a split belongs to the side below it.
+            bottom, top = max(a + (_BEYOND if side else 0.0), low), min(b, high)
             if bottom <= top:
                 states.append(State(phase, min(max(T_STANDARD, bottom), top), form))
     return states

@@ -17,8 +17,8 @@ from propdb.model.records import R_GAS, T_STANDARD, Entry, Species
 
 __all__ = ["implausible", "quarantine_heat_capacities"]
 
-#: Bounds in units of the classical value. Of what the tables hold rightly, liquid sulfur trioxide (2.6 times 3 R for each
-#: atom) and the crystal Cu2Sb (1.37) come nearest to them.
+#: Bounds in units of the classical value. Of what the tables hold rightly, liquid sulfur trioxide (2.6 times 3 R for
+#: each atom) and the crystal Cu2Sb (1.37) come nearest to them.
 _CRYSTAL: Final = 1.4
 _LIQUID: Final = (0.2, 2.7)
 _GAS: Final = (2.45, 1.4)
@@ -111,7 +111,9 @@ def _values(entry: Entry) -> list[tuple[float, float]]:
         return []
     try:
         equation: Any = build_heat_capacity(entry.equation, params)
-        at = sorted({entry.tmin, 0.5 * (entry.tmin + entry.tmax), min(max(T_STANDARD, entry.tmin), entry.tmax), entry.tmax})
+        at = sorted(
+            {entry.tmin, 0.5 * (entry.tmin + entry.tmax), min(max(T_STANDARD, entry.tmin), entry.tmax), entry.tmax}
+        )
         return [(t, float(equation.cp(t))) for t in at]
     except PropdbError:
         return []

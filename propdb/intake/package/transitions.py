@@ -79,8 +79,8 @@ def record(
             value=melting,
             carried=f"{melting:.10g}",
             form=crystal_form(sheet, draft, name, form, melting=True),
-            note="the temperature beside the round ones at which the tables of crystal and liquid print a row, and where "
-            "neither has a step",
+            note="the temperature beside the round ones at which the tables of crystal and liquid print a row, and "
+            "where neither has a step",
         )
     for t in glass_steps(crystal=crystal, liquid=liquid, melting=melting):
         sheet.constant(
