@@ -23,7 +23,6 @@ _CRYSTAL: Final = 1.4
 _LIQUID: Final = (0.2, 2.7)
 _GAS: Final = (2.45, 1.4)
 
-#: At 298.15 K crystals keep to Dulong and Petit unless they are elements with a magnetic transition.
 _COLD: Final = 150.0  # [K], below it the heat capacity of a liquid of light molecules is that of a quantum fluid
 _NEAR_CRITICAL: Final = 0.9
 
