@@ -120,8 +120,8 @@ def entry_edge(entry: Entry, start: Node, end: Node, value: float, what: str, ki
         source=entry.source,
     )
     pin = 0 if not policy.pinned or entry.source in policy.pinned else 1
-    status = entry.place
-    return leg_edge(leg, start, end, kind, status=status, pin=pin, rank=policy.rank(entry))
+    edge = leg_edge(leg, start, end, kind, status=entry.place, pin=pin, rank=policy.rank(entry))
+    return replace(edge, size=max(edge.size, policy.trust(entry)))
 
 
 def vapour_of(entry: Entry, temperature: float) -> Node:

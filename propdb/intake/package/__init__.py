@@ -15,6 +15,7 @@ from typing import Any
 from propdb.errors import SeedError
 from propdb.intake.package import constants, curves
 from propdb.intake.package.contradictions import quarantine
+from propdb.intake.package.enthalpies import quarantine_enthalpies
 from propdb.intake.package.files import FileSpec, Loaded, installed, load, read_manifest
 from propdb.intake.package.plausible import quarantine_heat_capacities
 from propdb.intake.package.registry import Registry
@@ -132,6 +133,7 @@ def load_package(
     species = registry.finished({entry.species for entry in context.entries})
     ruled_out = quarantine(context.entries, seed.entries)
     ruled_out += quarantine_heat_capacities(context.entries, species)
+    ruled_out += quarantine_enthalpies(context.entries, seed.entries)
     if progress is not None and ruled_out:
         progress(f"set aside {ruled_out} values that what else is known of their species rules out")
     content = Content(
