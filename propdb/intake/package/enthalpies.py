@@ -90,10 +90,9 @@ def quarantine_enthalpies(entries: list[Entry], seed: Iterable[Entry]) -> int:
         if entry.source not in _NETWORKS:
             strong |= curated[entry.species, entry.phase]
         reason = contradiction(entry, others, strong=strong)
-        rival = better.get(entry.species)
-        if not reason and entry.source == _WORSE and not others and rival is not None and entry.value is not None:
-            if abs(entry.value - rival) > _GROSS:
-                reason = f"{_BETTER} has {rival / 1e3:.6g} kJ/mol; where a third source decides, it is nearer"
+        rival = better.get(entry.species) if entry.source == _WORSE and not others else None
+        if not reason and rival is not None and abs((entry.value or 0.0) - rival) > _GROSS:
+            reason = f"{_BETTER} has {rival / 1e3:.6g} kJ/mol; where a third source decides, it is nearer"
         if reason:
             note = "; ".join(filter(None, (entry.note, reason)))
             entries[place] = replace(entry, status="quarantined", note=note)

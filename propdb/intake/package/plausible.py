@@ -7,7 +7,8 @@ lies near 3 R for each atom (Dulong and Petit), a liquid at its cold end between
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections import defaultdict
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import replace
 from typing import Any, Final
 
@@ -22,6 +23,12 @@ __all__ = ["implausible", "quarantine_heat_capacities"]
 _CRYSTAL: Final = 1.4
 _LIQUID: Final = (0.2, 2.7)
 _GAS: Final = (2.45, 1.4)
+
+#: Two heat capacities agree within the one, and a third one further from both than the other is none of this substance.
+_CLOSE: Final = 0.1
+_FAR: Final = 0.3
+
+_Function = tuple[float, float, Callable[[float], float]]
 
 _COLD: Final = 150.0  # [K], below it the heat capacity of a liquid of light molecules is that of a quantum fluid
 _NEAR_CRITICAL: Final = 0.9
@@ -76,10 +83,10 @@ def quarantine_heat_capacities(entries: list[Entry], species: Iterable[Species])
     for e in entries:
         if e.quantity == "Tc" and e.value is not None and e.status != "quarantined":
             critical[e.species] = min(e.value, critical.get(e.species, e.value))
-    count = 0
+    count = _outvoted(entries)
     units: dict[tuple[str, str], str] = {}
     for place, entry in enumerate(entries):
-        if entry.quantity != "Cp" or entry.phase not in ("cr", "l", "g"):
+        if entry.quantity != "Cp" or entry.phase not in ("cr", "l", "g") or entry.status == "quarantined":
             continue
         reason = implausible(entry, atoms=atoms.get(entry.species, 0.0), critical=critical.get(entry.species))
         if reason:
@@ -93,6 +100,60 @@ def quarantine_heat_capacities(entries: list[Entry], species: Iterable[Species])
             entries[place] = _set_aside(entry, reason)
             count += 1
     return count
+
+
+def _outvoted(entries: list[Entry]) -> int:
+    """Set aside liquids' and gases' heat capacities that two others contradict, which agree. Returns how many."""
+    groups: dict[tuple[str, str], list[int]] = defaultdict(list)
+    for place, entry in enumerate(entries):
+        if entry.quantity == "Cp" and entry.phase in ("l", "g"):
+            groups[entry.species, entry.phase].append(place)
+    count = 0
+    for places in groups.values():
+        if len(places) < 3 or not any(entries[place].equation for place in places):
+            continue
+        functions = {place: _function(entries[place]) for place in places}
+        for place in places:
+            reason = _against(
+                entries[place], functions[place], [(entries[i], functions[i]) for i in places if i != place]
+            )
+            if reason:
+                entries[place] = _set_aside(entries[place], reason)
+                count += 1
+    return count
+
+
+def _against(entry: Entry, own: _Function | None, others: Sequence[tuple[Entry, _Function | None]]) -> str:
+    if own is None:
+        return ""
+    low, high, cp = own
+    said: list[tuple[str, float, float, float]] = []
+    for other, function in others:
+        if function is None or max(low, function[0]) > min(high, function[1]):
+            continue
+        at = 0.5 * (max(low, function[0]) + min(high, function[1]))
+        mine, theirs = cp(at), function[2](at)
+        if abs(mine - theirs) <= _FAR * abs(theirs):
+            return ""
+        said.append((other.source, at, mine, theirs))
+    for i, (source, at, mine, theirs) in enumerate(said):
+        if any(abs(theirs / mine - b / a) <= _CLOSE * abs(b / a) for _, _, a, b in said[i + 1 :]):
+            return f"{mine:.4g} J/mol/K at {at:.5g} K, where {source} and another have {theirs:.4g}"
+    return ""
+
+
+def _function(entry: Entry) -> _Function | None:
+    """Range [K] and heat capacity of an entry."""
+    if not entry.equation:
+        t, value = entry.temperature or T_STANDARD, entry.value
+        return None if value is None else (t, t, lambda _: value)
+    if entry.tmin is None or entry.tmax is None:
+        return None
+    try:
+        equation: Any = build_heat_capacity(entry.equation, entry.params)
+    except PropdbError:
+        return None
+    return entry.tmin, entry.tmax, lambda t: float(equation.cp(t))
 
 
 def _set_aside(entry: Entry, reason: str) -> Entry:
