@@ -126,20 +126,27 @@ def _outvoted(entries: list[Entry]) -> int:
 def _against(entry: Entry, own: _Function | None, others: Sequence[tuple[Entry, _Function | None]]) -> str:
     if own is None:
         return ""
-    low, high, cp = own
-    said: list[tuple[str, float, float, float]] = []
+    cp = own[2]
+    said: list[tuple[str, float, _Function]] = []
     for other, function in others:
-        if function is None or max(low, function[0]) > min(high, function[1]):
+        at = None if function is None else _shared(own, function)
+        if function is None or at is None:
             continue
-        at = 0.5 * (max(low, function[0]) + min(high, function[1]))
-        mine, theirs = cp(at), function[2](at)
-        if abs(mine - theirs) <= _FAR * abs(theirs):
+        if abs(cp(at) - function[2](at)) <= _FAR * abs(function[2](at)):
             return ""
-        said.append((other.source, at, mine, theirs))
-    for i, (source, at, mine, theirs) in enumerate(said):
-        if any(abs(theirs / mine - b / a) <= _CLOSE * abs(b / a) for _, _, a, b in said[i + 1 :]):
-            return f"{mine:.4g} J/mol/K at {at:.5g} K, where {source} and another have {theirs:.4g}"
+        said.append((other.source, at, function))
+    for i, (source, at, one) in enumerate(said):
+        for _, _, two in said[i + 1 :]:
+            between = _shared(one, two)
+            if between is not None and abs(one[2](between) - two[2](between)) <= _CLOSE * abs(two[2](between)):
+                return f"{cp(at):.4g} J/mol/K at {at:.5g} K, where {source} and another have {one[2](at):.4g}"
     return ""
+
+
+def _shared(one: _Function, two: _Function) -> float | None:
+    """The middle of two ranges' overlap [K]."""
+    low, high = max(one[0], two[0]), min(one[1], two[1])
+    return None if low > high else 0.5 * (low + high)
 
 
 def _function(entry: Entry) -> _Function | None:
