@@ -59,7 +59,7 @@ HALIDES = {"sodium chloride": 366.0, "potassium chloride": 281.0, "cesium chlori
 
 @pytest.mark.parametrize("species", sorted(HALIDES))
 def test_the_formula_of_the_thallium_halides_gives_tabulated_gases(full_store: Store, species: str) -> None:
-    """Rigid rotor and harmonic oscillator against JANAF's table: what is left out stays below 1.5 % to 1500 K."""
+    """Rigid rotor and harmonic oscillator against JANAF's table: what is left out stays below 2 % to 1500 K."""
     theta = C2 * HALIDES[species]
 
     def h(t: float) -> float:
@@ -67,7 +67,7 @@ def test_the_formula_of_the_thallium_halides_gives_tabulated_gases(full_store: S
 
     for high in (500.0, 1000.0, 1500.0):
         found = full_store.enthalpy(species, phase="g", temperature=f"{high}K", datum="gas-25C", source="chase-1998")
-        assert h(high) - h(298.15) == pytest.approx(found.si, rel=0.015)
+        assert h(high) - h(298.15) == pytest.approx(found.si, rel=0.02)
 
 
 @pytest.mark.parametrize("species", ["silver", "gold", "cadmium", "bismuth", "antimony", "selenium"])
