@@ -233,3 +233,22 @@ def test_a_species_is_found_by_what_the_package_calls_it(full_store: Store) -> N
         ("propan-2-one", "acetone"),
     ):
         assert full_store.find(typed)[0].name == name
+
+
+def test_a_salt_is_found_before_a_radical_of_its_elements(full_store: Store) -> None:
+    for typed, composition in (
+        ("barium iodide", {"Ba": 1, "I": 2}),
+        ("lead chloride", {"Pb": 1, "Cl": 2}),
+        ("calcium bromide", {"Ca": 1, "Br": 2}),
+        ("strontium iodide", {"Sr": 1, "I": 2}),
+        ("barium hydroxide", {"Ba": 1, "O": 2, "H": 2}),
+    ):
+        assert dict(full_store.show(typed).species.composition) == composition
+
+
+def test_every_species_has_a_name_and_most_an_inchikey(package: Package) -> None:
+    """The identifiers of the package do not know a quarter of the CAS RNs in its files: those have no InChIKey."""
+    species = package.content.species
+    assert all((s.name and s.formula) or s.charge for s in species)
+    assert len({s.name for s in species}) == len(species)
+    assert sum(bool(s.inchikey) for s in species) > 7800
