@@ -145,11 +145,13 @@ def collect(
     formulation: Formulation | None,
     liquid: Sequence[tuple[float, float]] = (),
     tc: float | None = None,
+    molecular: bool = False,
 ) -> list[Edge]:
     """All edges of a species but the heating ones, the chosen entry of each pair of nodes first.
 
     ``foreign_zero`` gives the level of zero of an entry's datum where that is not the internal scale. ``liquid`` are
-    the ranges of the liquid's heat capacity [K], ``tc`` its critical temperature [K].
+    the ranges of the liquid's heat capacity [K], ``tc`` its critical temperature [K]. ``molecular``: the vapour is made
+    of the molecules of the formula, as that of an element or a salt need not be.
     """
     by_quantity: dict[str, list[Entry]] = {}
     for e in choose(entries, policy):
@@ -193,7 +195,7 @@ def collect(
         links = {n: _residual_edge(species, n, critical, vapour) for n in vapours if n.temperature < critical.tc}
         edges = [_burdened(edge, links.get(edge.end)) for edge in edges]
         edges += [links[n] for n in sorted(links)]
-    elif critical is None and vapour != "associating":
+    elif critical is None and molecular and vapour != "associating":
         # Latent heats estimated from vapour pressures are taken where the pressure is low.
         estimated = USABLE_STATUSES.index("estimate")
         thin = {edge.end for edge in edges if edge.what == "vaporisation" and edge.status == estimated}

@@ -38,6 +38,9 @@ from propdb.model.records import (
 
 __all__ = ["INTERNAL", "Levels", "Way", "may_sum"]
 
+#: Compounds of these evaporate as the molecules of their formula.
+NONMETALS = frozenset(("H", "D", "B", "C", "N", "O", "F", "Si", "P", "S", "Cl", "Se", "Br", "I"))
+
 Way = list[tuple[float, str, list[Move]]]  # (coefficient, species, moves)
 
 
@@ -113,6 +116,7 @@ class Levels(States):
             formulation=formulation,
             liquid=liquid.ranges() if isinstance(liquid, Curve) else (),
             tc=self.value(species, "Tc"),
+            molecular=len(record.composition) > 1 and all(symbol in NONMETALS for symbol, _ in record.composition),
         )
         tree.grow(edges, extrapolate=self.extrapolate)
         return tree

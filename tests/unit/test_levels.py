@@ -451,13 +451,19 @@ def test_watsons_equation_brings_a_latent_heat_to_the_liquid() -> None:
 
 
 def test_without_critical_constants_the_vapour_is_taken_as_ideal_and_it_is_said() -> None:
-    answer = World(hf("l", 0.0), entry("Hvap", "l", 33000.0, conditions="to the real vapour")).h("g", 298.15)
+    molecule = replace(OXIDE, composition=(("C", 1), ("O", 1)))
+    real = entry("Hvap", "l", 33000.0, conditions="to the real vapour")
+    answer = World(real, oxide=molecule).h("g", 298.15, "liquid")
     assert answer.si == 33000.0
+    with pytest.raises(NotFound):
+        World(real).h("g", 298.15, "liquid")  # a metal's compound may evaporate as other molecules
     assert "taken as ideal" in answer.steps[-1].note
     assert any(p.entry.startswith("model:residual") and p.standard == 500.0 for p in answer.parts)
     hot = entry("Hvap", "l", 25000.0, temperature=400.0, conditions="to the real vapour")
     with pytest.raises(NotFound):
-        World(hf("l", 0.0), cp("l", 100.0, 290, 450), hot).h("g", 400.0)  # above any boiling point that is known
+        World(hf("l", 0.0), cp("l", 100.0, 290, 450), hot, oxide=molecule).h(
+            "g", 400.0
+        )  # above any boiling point that is known
 
 
 def test_a_range_that_ends_beside_melting_reaches_it() -> None:

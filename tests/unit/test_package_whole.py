@@ -252,3 +252,9 @@ def test_every_species_has_a_name_and_most_an_inchikey(package: Package) -> None
     assert all((s.name and s.formula) or s.charge for s in species)
     assert len({s.name for s in species}) == len(species)
     assert sum(bool(s.inchikey) for s in species) > 7800
+
+
+def test_an_element_is_not_evaporated_into_its_atoms(full_store: Store) -> None:
+    """The latent heat of phosphorus is that of P4, and its phase g the atom: CODATA Key Values (1989), 316.5 kJ/mol."""
+    atom = full_store.enthalpy("phosphorus", phase="g", temperature="298.15K", datum="elements-298K")
+    assert atom.value == pytest.approx(316.5, abs=0.1)
