@@ -27,25 +27,15 @@ class Care(Core):
         return info
 
     def _connected(self) -> dict[str, int]:
-        """Of the species under ``paths`` those whose phases the chosen entries connect at known temperatures."""
-        from propdb.errors import PropdbError
+        """Of the species under ``paths`` those through whose phases an enthalpy can be carried, each one walked."""
+        from propdb.levels.paths import carries
 
         levels = self._engine(None, False)
-        counts = {}
-        for path, names in self._reader.path_species().items():
-            wanted = {"g", "l"} if path == "liquid_to_gas" else {"g", "l", "cr"}
-            counts[path] = 0
-            for name in names:
-                try:
-                    tree = levels.tree(name)
-                except PropdbError:
-                    continue
-                phases: dict[int, set[str]] = {}
-                for node, component in tree.component.items():
-                    if (node.phase, node.form) in tree.tracks:
-                        phases.setdefault(component, set()).add(node.phase)
-                counts[path] += any(wanted <= found for found in phases.values())
-        return counts
+        phases = {"liquid_to_gas": ("l", "g"), "solid_to_gas": ("cr", "l", "g")}
+        return {
+            path: sum(carries(levels, name, phases[path]) for name in names)
+            for path, names in self._reader.path_species().items()
+        }
 
     def store_intake(self, *, refused: bool = False) -> dict[str, Any]:
         """What became of each row of the package files at the last build; with ``refused`` each row that gave nothing.

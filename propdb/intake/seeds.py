@@ -181,13 +181,13 @@ def _ranks(root: Path) -> dict[str, Any]:
         for i, group in enumerate(data.get(part, ()), start=1):
             where = f"ranks.toml: {part} {i}"
             for key in needed:
-                if not group.get(key):
+                if not group.get(key) and not (key == "classes" and group.get("sources")):
                     raise SeedError(f"{key} is missing", where=where)
             for quantity in group["quantities"]:
                 if quantity not in QUANTITIES:
                     raise SeedError(f"unknown quantity {quantity!r}", where=where, hint=near(quantity, QUANTITIES))
-            unexplained = [key for key in group.get("sources", ()) if not group["reasons"].get(key)]
-            if unexplained:
+            unexplained = [key for key in group.get("sources", ()) if not group.get("reasons", {}).get(key)]
+            if part == "rank" and unexplained:
                 raise SeedError(
                     f"no reason for {unexplained[0]}", where=where, hint="a rank without a reason is an opinion"
                 )

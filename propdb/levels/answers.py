@@ -2,21 +2,20 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Sequence
 from dataclasses import replace
 from typing import Any
 
 from propdb.datum import may_sum
 from propdb.errors import PropdbError
-from propdb.levels.curves import Curve
+from propdb.levels.closures import Judged, contradictions, judged_closures
 from propdb.levels.engine import Levels
 from propdb.levels.parts import Leg, add_parts, combined, scale
-from propdb.levels.policy import choose
 from propdb.levels.tables import matches, tables_of
 from propdb.levels.tree import Move, expand
 from propdb.model.answer import Answer
 from propdb.model.crosscheck import EntryCheck
-from propdb.model.records import SAME_T, Closure, Datum, Entry, MaySum, Part, Source, Species, State, Step, Zero
+from propdb.model.records import SAME_T, Closure, Datum, Entry, MaySum, Source, Species, State, Step, Zero
 from propdb.units import EnthalpyUnit, format_number
 
 __all__ = ["Derivation", "Difference", "convert", "enthalpy", "net", "zero_members"]
@@ -87,6 +86,7 @@ class Derivation:
         self.per = per  # [J/mol] per unit
         self.unit = unit
         self.parts = add_parts(p for leg in self.legs for p in leg.parts)
+        self._closures: tuple[Judged, ...] | None = None
 
     def total(self) -> float:
         """[J/mol]"""
@@ -153,6 +153,7 @@ class Derivation:
             if e.status in ("disputed", "estimate"):
                 reason = f": {e.note}" if e.note else ""
                 found.append(f"{e.species}: {e.quantity} of {e.source} [{e.id[:8]}] is {e.status}{reason}")
+        found += contradictions(self._judged(), self.unit.text)
         pinned = self.levels.policy.pinned
         if pinned:
             off = sorted({leg.source for leg in self.legs if leg.source and leg.source not in pinned})
@@ -162,70 +163,12 @@ class Derivation:
 
     def closures(self) -> tuple[Closure, ...]:
         """Unused edges whose loop shares a leg with the way, and heat capacities that were not chosen."""
-        found: list[Closure] = []
-        for coefficient, name, moves in self.difference.ways:
-            edges = {id(m.edge) for m in moves if m.edge is not None}
-            tracks = {id(m.track) for m in moves if m.track is not None}
-            tree = self.levels.tree(name)
-            for edge in tree.unused:
-                loop = tree.way(edge.start, edge.end)
-                if loop is None:
-                    continue
-                shared = any(
-                    (m.edge is not None and id(m.edge) in edges) or (m.track is not None and id(m.track) in tracks)
-                    for m in loop
-                )
-                if not shared and edge.start != edge.end:
-                    continue
-                result = self.levels.closure_error(name, edge)
-                if result is None or not edge.leg.source:
-                    continue
-                error, parts = result
-                found.append(
-                    self._closure(
-                        f"{name}: {edge.leg.what} {edge.start.text()} to {edge.end.text()} by {edge.leg.source}",
-                        error,
-                        parts,
-                        edge.leg,
-                    )
-                )
-            found += self._other_curves(coefficient, name, moves)
-        unique = {(c.via, c.entry): c for c in found}
-        return tuple(unique.values())
+        return tuple(judged.closure for judged in self._judged())
 
-    def _closure(self, via: str, error: float, parts: Iterable[Part], leg: Leg) -> Closure:
-        total, missing = combined(add_parts(parts))
-        return Closure(via, error / self.per, None if missing else total / self.per, leg.entry, leg.source)
-
-    def _other_curves(self, coefficient: float, name: str, moves: Sequence[Move]) -> list[Closure]:
-        found = []
-        for move in moves:
-            curve = move.track
-            if not isinstance(curve, Curve) or move.start == move.end:
-                continue
-            used = {p.entry.id for p in curve.pieces}
-            others = [
-                e
-                for e in choose(self.levels.data.entries(name), self.levels.policy)
-                if e.quantity == "Cp"
-                and (e.phase, e.form) == (curve.phase, curve.form)
-                and e.equation not in ("", "iapws95")
-                and e.id not in used
-            ]
-            low, high = min(move.start, move.end), max(move.start, move.end)
-            for e in others:
-                if e.tmin is None or e.tmax is None or e.tmin > low + 0.155 or e.tmax < high - 0.155:
-                    continue
-                from propdb.cp.registry import build_heat_capacity
-
-                try:
-                    value = float(build_heat_capacity(e.equation, e.params).dh(move.start, move.end))
-                    chosen = sum(leg.value for leg in curve.legs(move.start, move.end) if leg.what == "heating")
-                except PropdbError:
-                    continue
-                via = f"{name}: heating {curve.phase} {move.start:.7g} to {move.end:.7g} K by {e.source}"
-                found.append(Closure(via, (value - chosen) / self.per, None, e.id, e.source))
-        return found
+    def _judged(self) -> tuple[Judged, ...]:
+        if self._closures is None:
+            self._closures = judged_closures(self.levels, self.difference.ways, per=self.per)
+        return self._closures
 
 
 def zero_members(

@@ -46,6 +46,10 @@ class Track(Protocol):
     def legs(self, start: Any, end: Any) -> list[Leg]: ...
 
 
+#: A range that ends within this part of a phase change's temperature ends at it: tables round it, or have another one.
+#: What is missing is some hundredth of a latent heat at most, and the leg says it.
+CHANGE_SLACK = 0.01
+
 #: A transition belongs to the split of a table whose temperature differs by no more than this [K].
 SPLIT_SLACK = 2.0
 
@@ -208,6 +212,9 @@ class Curve:
         note = ""
         if outside:
             note = f"extrapolated: {piece.entry.source} covers {range_text([(piece.tmin, piece.tmax)])}"
+        elif a < float(entry.tmin or 0.0) - PRINTED_SLACK or b > float(entry.tmax or 0.0) + PRINTED_SLACK:
+            stated_range = range_text([(float(entry.tmin or 0.0), float(entry.tmax or 0.0))])
+            note = f"taken to the phase change: {entry.source} covers {stated_range}"
         return Leg(
             what="heating",
             species=self.species,
@@ -261,12 +268,14 @@ def build_curve(
     boiling: float | None = None,
     critical: Critical | None = None,
     transitions: Sequence[Entry] = (),
+    changes: Sequence[float] = (),
 ) -> Curve | None:
     """The composite curve: at each temperature the best usable entry whose range covers it. None where there is none.
 
     A table with a doubled temperature serves side by side; the enthalpy between the sides is what an entry of
     ``transitions`` states, best first, and otherwise nobody's guess. A heat capacity given at one temperature only is a
-    curve of no length: it serves when extrapolation is asked for.
+    curve of no length: it serves when extrapolation is asked for. A range that ends within 1 % of a phase
+    change (``changes`` [K]) is taken to reach it.
     """
     usable = [e for e in choose(entries, policy) if e.equation and e.equation != "iapws95"]
     spans = [side for e in usable if e.tmin is not None and e.tmax is not None for side in _sides(e)]
@@ -287,6 +296,7 @@ def build_curve(
             pieces[-1] = replace(last, tmax=b)
         else:
             pieces.append(Piece(a, b, best.entry, best.equation or _equation(best.entry), best.side))
+    pieces = _reaching(pieces, changes)
     splits = tuple(
         Split(a.tmax, _stated(a.tmax, transitions))
         for a, b in zip(pieces, pieces[1:], strict=False)
@@ -303,6 +313,20 @@ def build_curve(
         critical=critical,
         extrapolate=extrapolate,
     )
+
+
+def _reaching(pieces: list[Piece], changes: Sequence[float]) -> list[Piece]:
+    """The pieces, the first and the last one as far as a phase change that lies just beyond."""
+    low, high = pieces[0].tmin, pieces[-1].tmax
+    if low == high:
+        return pieces
+    before = [t for t in changes if (1.0 - CHANGE_SLACK) * low <= t < low]
+    after = [t for t in changes if high < t <= (1.0 + CHANGE_SLACK) * high]
+    if before:
+        pieces[0] = replace(pieces[0], tmin=min(before))
+    if after:
+        pieces[-1] = replace(pieces[-1], tmax=max(after))
+    return pieces
 
 
 def _sides(entry: Entry) -> list[Piece]:

@@ -38,6 +38,9 @@ from propdb.model.records import (
 
 __all__ = ["INTERNAL", "Levels", "Way", "may_sum"]
 
+#: Compounds of these evaporate as the molecules of their formula.
+NONMETALS = frozenset(("H", "D", "B", "C", "N", "O", "F", "Si", "P", "S", "Cl", "Se", "Br", "I"))
+
 Way = list[tuple[float, str, list[Move]]]  # (coefficient, species, moves)
 
 
@@ -92,12 +95,14 @@ class Levels(States):
                 boiling=boiling if phase == "l" else None,
                 critical=critical if phase == "l" else None,
                 transitions=self._transitions(entries, phase, form),
+                changes=self._changes(species, entries, phase),
             )
             if curve is not None:
                 tree.tracks[(phase, form)] = curve
         if formulation is not None:
             tree.tracks[("l", "")] = formulation
             tree.position = lambda node: State("l", node.temperature) if node.phase == "l" else node.temperature
+        liquid = tree.tracks.get(("l", ""))
         edges = collect(
             species=species,
             entries=entries,
@@ -109,9 +114,22 @@ class Levels(States):
             critical=critical,
             vapour=record.vapour,
             formulation=formulation,
+            liquid=liquid.ranges() if isinstance(liquid, Curve) else (),
+            tc=self.value(species, "Tc"),
+            molecular=len(record.composition) > 1 and all(symbol in NONMETALS for symbol, _ in record.composition),
         )
         tree.grow(edges, extrapolate=self.extrapolate)
         return tree
+
+    def _changes(self, species: str, entries: Sequence[Entry], phase: str) -> list[float]:
+        """Temperatures [K] at which this phase melts, boils or passes into another form."""
+        quantities = {"cr": ("Hfus", "Htr", "Tm"), "l": ("Hfus", "Tm", "Tb", "Hvap")}.get(phase, ())
+        found = [
+            e.value if e.quantity in ("Tm", "Tb") else e.temperature
+            for e in choose(entries, self.policy)
+            if e.quantity in quantities and (e.quantity != "Hvap" or e.temperature != T_STANDARD)
+        ]
+        return [t for t in found if t is not None]
 
     def _transitions(self, entries: Sequence[Entry], phase: str, form: str) -> list[Entry]:
         """Entries that may state the enthalpy of a split in a table of this phase and form, best first.

@@ -57,7 +57,8 @@ class Policy:
         """
         cls = "formulation" if entry.equation == "iapws95" else self.source_class(entry.source)
         for row in self.ranks.get("class_default", ()):
-            if entry.quantity in row["quantities"] and cls in row["classes"]:
+            named = entry.source in row.get("sources", ()) or cls in row.get("classes", ())
+            if entry.quantity in row["quantities"] and named:
                 if "percent" in row:
                     return float(row["percent"]) / 100.0, "%"
                 return float(row["standard"]), ""
@@ -70,6 +71,17 @@ class Policy:
             return stated, entry.uncertainty_unit, True
         value, unit = self.default_standard(entry)
         return value, unit, False
+
+    def trust(self, entry: Entry) -> float:
+        """Standard uncertainty for ranking where sources differ, SI units: of a compilation no less than its class has.
+
+        The errors that a compilation states are those of the measurements; its own slips come on top.
+        """
+        size = self.standard_si(entry)
+        if self.source_class(entry.source) not in ("compilation", "estimate"):
+            return size
+        value, unit = self.default_standard(entry)
+        return max(size, value * abs(entry.value or 1.0) if unit == "%" else value)
 
     def standard_si(self, entry: Entry) -> float:
         """Standard uncertainty in the entry's SI unit (stated or class default), for ranking."""

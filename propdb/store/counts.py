@@ -92,9 +92,9 @@ def coverage(reader: Reader, *, usable: bool = True) -> dict[str, Any]:
         ``species`` (with at least one such entry), ``coverage[{quantity, phase, source, species, entries}]``,
         ``totals[{quantity, phase, stored, without_estimates, usable, over_temperature}]``: the species with such an
         entry whatever its status, with one that is no estimate, one that may enter a computation, and an equation;
-        ``paths{liquid_to_gas, solid_to_gas}``: the species with a heat-capacity equation in each phase and a link
-        between them (a latent heat, or formation enthalpies of both phases at one temperature). It counts what is
-        there; whether the ranges meet, an evaluation says.
+        ``paths{liquid_to_gas, solid_to_gas}``: the species with a heat-capacity equation in each phase and links
+        that join them (latent heats, or formation enthalpies of two phases at one temperature; from liquid to gas also
+        by way of the crystal). It counts what is there; whether the ranges meet, an evaluation says.
     """
     conn = reader.conn
     counted = f"status IN ({_USABLE})" if usable else "1"
@@ -153,5 +153,7 @@ def _paths(conn: sqlite3.Connection) -> dict[str, set[int]]:
     curve = {phase: having(f"quantity = 'Cp' AND equation <> '' AND phase = '{phase}'") for phase in ("cr", "l", "g")}
     vaporising = having("quantity = 'Hvap'") | linked("l", "g")
     melting = having("quantity = 'Hfus'") | linked("cr", "l")
-    liquid_to_gas = curve["l"] & curve["g"] & vaporising
-    return {"liquid_to_gas": liquid_to_gas, "solid_to_gas": liquid_to_gas & curve["cr"] & melting}
+    subliming = having("quantity = 'Hsub'") | linked("cr", "g")
+    around = melting & subliming & curve["cr"]
+    liquid_to_gas = curve["l"] & curve["g"] & (vaporising | around)
+    return {"liquid_to_gas": liquid_to_gas, "solid_to_gas": liquid_to_gas & curve["cr"] & (melting | subliming)}

@@ -417,3 +417,100 @@ def test_errors_name_the_zero_that_fails() -> None:
     with pytest.raises(OutOfRange) as caught:
         World(hf("g", 0.0), hf("l", -1.0), *POINTS).h("g", 298.15, "liquid")
     assert caught.value.where == "zero of liquid"
+
+
+# -- latent heats where the liquid is known; what others say -----------------------------------------------------------
+
+
+def test_an_equation_of_vaporisation_meets_the_liquid_in_its_range() -> None:
+    """The liquid is known from 320 K only, the equation from 280 K: they meet at 320 K, where both hold."""
+    params = {"coefficients": [50000.0, 0.38, 0.0, 0.0], "Tc": 560.0, "tmin": 280.0, "tmax": 560.0}
+    curve = entry("Hvap", "l", equation="perry-vaporisation", params=params, tmin=280.0, tmax=560.0, temperature=None,
+                  conditions="standard")  # fmt: skip
+    answer = World(hf("g", 0.0), cp("g", 80.0, 200, 900), cp("l", 130.0, 320, 400), curve).h("l", 330.0)
+    latent = 50000.0 * (1.0 - 320.0 / 560.0) ** 0.38
+    assert answer.si == pytest.approx(80.0 * 21.85 - latent + 130.0 * 10.0)
+    assert [s.what for s in answer.steps] == ["formation", "heating", "vaporisation", "heating"]
+
+
+def test_watsons_equation_brings_a_latent_heat_to_the_liquid() -> None:
+    """K. M. Watson (1943): ratio of the distances from Tc to the power 0.38, and a model part for the exponent."""
+    latent = entry("Hvap", "l", 60000.0, conditions="standard")
+    critical = entry("Tc", "l", 760.0, temperature=None)
+    world = World(hf("g", 0.0), cp("g", 200.0, 200, 900), cp("l", 400.0, 330, 500), latent, critical)
+    answer = world.h("l", 330.0)
+    factor = ((760.0 - 330.0) / (760.0 - 298.15)) ** 0.38
+    assert answer.si == pytest.approx(200.0 * 31.85 - 60000.0 * factor)
+    (step,) = [s for s in answer.steps if s.what == "vaporisation"]
+    assert "Watson" in step.note
+    assert any(p.entry == "model:watson:unium oxide" and p.standard > 0 for p in answer.parts)
+    near = World(hf("g", 0.0), cp("g", 200.0, 200, 900), cp("l", 400.0, 290, 500), latent, critical).h("l", 330.0)
+    assert not any("Watson" in s.note for s in near.steps)
+    with pytest.raises(TemperatureOutOfRange):
+        World(hf("g", 0.0), cp("g", 200.0, 200, 900), cp("l", 400.0, 330, 500), latent).h("l", 330.0)
+
+
+def test_without_critical_constants_the_vapour_is_taken_as_ideal_and_it_is_said() -> None:
+    molecule = replace(OXIDE, composition=(("C", 1), ("O", 1)))
+    real = entry("Hvap", "l", 33000.0, conditions="to the real vapour")
+    answer = World(real, oxide=molecule).h("g", 298.15, "liquid")
+    assert answer.si == 33000.0
+    with pytest.raises(NotFound):
+        World(real).h("g", 298.15, "liquid")  # a metal's compound may evaporate as other molecules
+    assert "taken as ideal" in answer.steps[-1].note
+    assert any(p.entry.startswith("model:residual") and p.standard == 500.0 for p in answer.parts)
+    hot = entry("Hvap", "l", 25000.0, temperature=400.0, conditions="to the real vapour")
+    with pytest.raises(NotFound):
+        World(hf("l", 0.0), cp("l", 100.0, 290, 450), hot, oxide=molecule).h(
+            "g", 400.0
+        )  # above any boiling point that is known
+
+
+def test_a_range_that_ends_beside_melting_reaches_it() -> None:
+    entries = (
+        hf("cr", 0.0),
+        cp("cr", 50.0, 200, 490),
+        cp("l", 70.0, 491, 800),
+        entry("Hfus", "cr", 9000.0, temperature=493.0),
+    )
+    answer = World(*entries).h("l", 600.0)
+    assert answer.si == pytest.approx(50.0 * (493.0 - 298.15) + 9000.0 + 70.0 * 107.0)
+    assert any("taken to the phase change" in s.note for s in answer.steps)
+    far = replace(entries[3], temperature=500.0)
+    with pytest.raises(NoData):
+        World(*entries[:3], far).h("l", 600.0)
+
+
+def test_an_answer_says_when_others_contradict_it() -> None:
+    plain = World(hf("g", -600000.0), hf("g", -601000.0, source="fair")).h("g", 298.15)
+    assert not plain.warnings
+    answer = World(hf("g", -600000.0), hf("g", -633000.0, source="fair")).h("g", 298.15)
+    (said,) = answer.warnings
+    assert "fair contradicts this answer" in said
+    assert "-33" in said
+    curves = (hf("g", 0.0), cp("g", 30.0, 200, 900), cp("g", 45.0, 200, 900, source="fair"))
+    assert any("fair contradicts" in w for w in World(*curves).h("g", 800.0).warnings)
+
+
+def test_what_carries_and_what_does_not() -> None:
+    from propdb.levels.paths import carries
+
+    whole = (
+        hf("cr", 0.0),
+        hf("g", 90000.0),
+        cp("cr", 50.0, 200, 600),
+        cp("l", 60.0, 500, 900),
+        cp("g", 40.0, 200, 900),
+    )
+    melting = (entry("Hfus", "cr", 9000.0, temperature=500.0), entry("Tm", "cr", 500.0, temperature=None))
+    path = ("cr", "l", "g")
+    assert carries(World(*whole, *melting).levels(), "unium oxide", path)
+    assert not carries(World(*whole).levels(), "unium oxide", path)
+    table = {"T": [298.15, 550.0, 550.0, 900.0], "cp": [60.0, 60.0, 70.0, 70.0]}
+    split = entry("Cp", "l", equation="table", params=table, tmin=298.15, tmax=900.0, temperature=None)
+    cold = (hf("l", 5000.0), hf("g", 90000.0), cp("g", 40.0, 200, 900), split)
+    hot = (*cold, entry("Tm", "cr", 600.0, temperature=None))
+    assert carries(World(*cold).levels(), "unium oxide", ("l", "g"))
+    assert not carries(World(*hot).levels(), "unium oxide", ("l", "g"))  # what is liquid lies beyond the split
+    glass = entry("Htr", "l", 0.0, temperature=550.0, to="l")
+    assert carries(World(*hot, glass).levels(), "unium oxide", ("l", "g"))

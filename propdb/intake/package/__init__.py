@@ -15,8 +15,11 @@ from typing import Any
 from propdb.errors import SeedError
 from propdb.intake.identifiers import identifiers
 from propdb.intake.package import constants, curves
+from propdb.intake.package.contradictions import quarantine
+from propdb.intake.package.enthalpies import quarantine_enthalpies
 from propdb.intake.package.files import FileSpec, Loaded, installed, load, read_manifest
 from propdb.intake.package.names import decoded
+from propdb.intake.package.plausible import quarantine_heat_capacities
 from propdb.intake.package.registry import Registry
 from propdb.intake.package.report import FileReport
 from propdb.intake.package.sheet import Context, Row, Sheet
@@ -139,8 +142,14 @@ def load_package(
     if progress is not None:
         rows, refused = sum(r.rows for r in reports), sum(r.refused for r in reports)
         progress(f"read {len(reports)} files of chemicals {version}: {rows} rows, {refused} of them refused")
+    species = registry.finished({entry.species for entry in context.entries})
+    ruled_out = quarantine(context.entries, seed.entries)
+    ruled_out += quarantine_heat_capacities(context.entries, species)
+    ruled_out += quarantine_enthalpies(context.entries, seed.entries)
+    if progress is not None and ruled_out:
+        progress(f"set aside {ruled_out} values that what else is known of their species rules out")
     content = Content(
-        species=registry.finished({entry.species for entry in context.entries}),
+        species=species,
         sources=sources,
         datums=seed.datums,
         policy={**seed.policy, REPORT: [report.body() for report in reports]},

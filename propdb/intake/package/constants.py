@@ -58,6 +58,8 @@ _SAME: Final = {
     ("aluminium oxide", "alpha"): "corundum",
     ("phosphorus", "yellow"): "white",
     ("calcium carbonate", "alpha"): "calcite",
+    ("selenium", "grey"): "",
+    ("antimony", "grey"): "",
 }
 
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import Any, Final
 
 from propdb.cp.registry import build_heat_capacity
+from propdb.intake.package import transitions
 from propdb.intake.package.constants import REAL, crystal_form, form_in
 from propdb.intake.package.registry import Refused
 from propdb.intake.package.sheet import NO_RANGE, Row, Sheet
@@ -52,7 +53,15 @@ def janaf_table(phase: str) -> Any:
             form = crystal_form(sheet, draft, name, form)
         else:
             form = ""
-        points, notes = tidy_points(list(zip(row.cells["T"], row.cells["cp"], strict=True)))
+        printed = list(zip(row.cells["T"], row.cells["cp"], strict=True))
+        melting = None
+        if phase == "l":
+            sheet.context.liquids[cas] = printed
+        elif phase == "cr" and cas in sheet.context.liquids:
+            liquid = sheet.context.liquids[cas]
+            melting = transitions.melting_point(crystal=printed, liquid=liquid)
+            transitions.record(sheet, draft, name, form, crystal=printed, liquid=liquid, melting=melting)
+        points, notes = tidy_points(transitions.merged(printed, at=None if phase == "l" else melting))
         sheet.report.points_left_out += len(row.cells["T"]) - len(points)
         if len(points) < 2:
             raise Refused("no table", "fewer than two points are left")

@@ -45,6 +45,8 @@ class Context:
     entries: list[Entry] = field(default_factory=list)
     janaf: dict[str, tuple[str, str]] = field(default_factory=dict)  # CAS RN to name and formula
     critical: dict[str, tuple[str, float]] = field(default_factory=dict)  # CAS RN to Tc [K] of Perry's table 2-150
+    #: CAS RN to the points of JANAF's table of the liquid [K, J/mol/K], as the file has them.
+    liquids: dict[str, list[tuple[float, float]]] = field(default_factory=dict)
 
 
 class Sheet:
@@ -159,6 +161,7 @@ class Sheet:
         kind: str = "",
         value: float | None = None,
         carried: str = "",
+        to: str = "",
     ) -> None:
         """An entry for a cell, if it is not blank; a refusal if it cannot be one.
 
@@ -186,7 +189,7 @@ class Sheet:
                 quantity,
                 phase,
                 form,
-                "",
+                to,
                 "",
                 temperature,
                 value * factor + 0.0,
