@@ -110,7 +110,7 @@ class Resolution:
         """One line for a report."""
         count = Counter(decision.verdict for decision in self.decisions)
         return (
-            f"TRC gas tables: {len(self.decisions)} formation enthalpies without a temperature, {count[AT_0]} are at "
+            f"{len(self.decisions)} formation enthalpies without a temperature, {count[AT_0]} are at "
             f"0 K, {count[AT_298]} at 298.15 K, {count[NEITHER]} fit neither, {count[UNKNOWN]} stay unknown "
             f"({sum(decision.alone for decision in self.decisions)} of them because no other source tells)"
         )

@@ -178,6 +178,7 @@ def collect(
             leg = replace(edge.leg, value=e.value + shift, parts=parts, note=f"given on {e.datum}")
             edge = replace(edge, source=leg, size=ranking_uncertainty(parts))
         edges.append(edge)
+    _direct_first(edges)
     for e in by_quantity.get("dH0", ()):
         if e.value is not None:
             # What is liquid at 298.15 K (bromine, mercury, water) is counted from its crystal at 0 K.
@@ -202,6 +203,22 @@ def collect(
         thin |= {n for n in vapours if n.temperature <= max(boiling or 0.0, T_STANDARD)}
         edges += [_ideal_edge(species, n) for n in sorted(thin & vapours)]
     return edges
+
+
+def _direct_first(edges: list[Edge]) -> None:
+    """A formation enthalpy at 0 K goes behind those at 298.15 K of its own source and of better ones.
+
+    Between the same two states the rank of the source decides; a value at 0 K must not go round it, and of one
+    source's two values, which are one measurement, the direct one is read more easily.
+    """
+    formation = [edge for edge in edges if edge.kind == "formation"]
+    for edge in formation:
+        if edge.end.temperature == T_STANDARD:
+            continue
+        direct = edge.end._replace(temperature=T_STANDARD)
+        place = (edge.pin, edge.status, edge.rank)
+        better = [o.size for o in formation if o.end == direct and (o.pin, o.status, o.rank) <= place]
+        edge.size = max(edge.size, *(size + 1e-6 for size in better), 0.0)
 
 
 #: Taking a latent heat to another temperature costs the uncertainty of two heat capacities: about 1 % of 250 J/mol/K.

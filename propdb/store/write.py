@@ -345,7 +345,7 @@ def put_entries(
         with without(conn, *(("entry_once",) if len(chunk) >= _MANY else ())):
             insert_rows(conn, "entry", columns, rows, ignore=True)
         done += len(chunk)
-        if tell is not None:
+        if tell is not None and (done == len(held) or done % (4 * _CHUNK) == 0):
             tell(f"wrote {done} of {len(held)} entries")
     numbers: dict[str, int]
     if len(held) < 100:

@@ -137,7 +137,7 @@ def main() -> int:
     """Print the figures; 1 if less than the target is right where both referees are withheld."""
     data = content()
     full = resolve(data)
-    print(full.line())
+    print(f"TRC gas tables: {full.line()}")
     equal = [{h.says for h in d.heard if h.says and h.off <= EQUAL} for d in full.decisions]
     same = sum(found == {d.counted} for d, found in zip(full.decisions, equal, strict=True) if len(found) == 1)
     print(

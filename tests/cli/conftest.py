@@ -18,7 +18,7 @@ from propdb.cli.main import run
 
 #: Progress of a build, which may come before an error.
 PROGRESS = re.compile(
-    r"propdb: (building the store|read \d+ files of|TRC gas tables|checking \d+ entries|wrote \d+ of \d+ entries)"
+    r"propdb: (building the store|read \d+ files of|set aside|checking \d+ entries|wrote \d+ of \d+ entries)"
 )
 
 

@@ -152,16 +152,18 @@ def load_package(
         species=species,
         sources=sources,
         datums=seed.datums,
-        policy={**seed.policy, REPORT: [report.body() for report in reports]},
+        policy=seed.policy,
         entries=[*seed.entries, *context.entries],
         carriers=seed.carriers,
         statuses=seed.statuses,
         notes=seed.notes,
     )
     resolution = resolve(content)
-    if progress is not None:
-        progress(resolution.line())
-    return Package(resolution.content, tuple(reports), version)
+    for report in reports:
+        if report.key == "trc-gas" and not report.trouble:
+            report.remark = "; ".join(filter(None, (report.remark, resolution.line())))
+    policy = {**seed.policy, REPORT: [report.body() for report in reports]}
+    return Package(replace(resolution.content, policy=policy), tuple(reports), version)
 
 
 def _read(spec: FileSpec, loaded: Loaded, context: Context, estimator: Estimator | None) -> FileReport:
