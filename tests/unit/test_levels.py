@@ -294,6 +294,28 @@ def test_formation_enthalpies_at_zero_kelvin() -> None:
     assert world.h("g", 298.15, "elements-0K").si == pytest.approx(5000.0 + 9000.0)
 
 
+@pytest.mark.parametrize(
+    "source, direct",
+    [("good", True), ("fair", True), ("poor", False)],
+    ids=["of its own source", "of a better", "of a worse"],
+)
+def test_zero_kelvin_does_not_go_round_the_rank_of_sources(source: str, direct: bool) -> None:
+    """A formation enthalpy at 0 K, however certain, goes behind one at 298.15 K of its own source or a better one."""
+    sure = {"uncertainty": 5.0, "uncertainty_kind": "standard"}
+    world = World(
+        hf("g", -100.0, source=source, uncertainty=300.0, uncertainty_kind="standard"),
+        hf("g", 5000.0, datum="elements-0K", temperature=0.0, source="fair" if source != "good" else "good", **sure),
+        entry("dH0", "g", 9000.0, **sure),
+        elements=(
+            replace(entry("dH0", "g", 8000.0, **sure), species="unium"),
+            replace(entry("dH0", "g", 8600.0, **sure), species="oxygen"),
+        ),
+    )
+    answer = world.h("g", 298.15)
+    assert answer.si == pytest.approx(-100.0 if direct else 5000.0 - 4000.0 - 4300.0 + 9000.0)
+    assert len(answer.closures) == 1
+
+
 def test_a_to_b_to_c_in_the_small_world() -> None:
     world = World(
         hf("g", -1000.0), cp("l", 75.0, 280, 400), cp("g", 30.0, 280, 600),
