@@ -109,6 +109,10 @@ class Plan:
         """Content hash and log head of the store."""
         return self.oracle.ask(lambda basis: basis.stamp)
 
+    def run(self, question: Callable[[], Any]) -> Any:
+        """Call a function in the thread of the oracle."""
+        return self.oracle.ask(lambda _: question())
+
     def verdict(self, flag: str, reason: str = "") -> int:
         """The number of a flag with its reason."""
         pair = (flag, reason)
@@ -224,6 +228,17 @@ def compute(plan: Plan, given: Given) -> Rows:
     return Rows(values, standards, scales, verdicts, kinds, False)
 
 
+def conditions(plan: Plan, given: Given) -> tuple[FloatArray, FloatArray | None]:
+    """Temperature [K] and pressure [Pa] of every row, by column or by option."""
+    settings = plan.settings
+    t, p = given.temperature, given.pressure
+    if t is None:
+        t = np.full(given.rows, math.nan if settings.temperature is None else settings.temperature)
+    if p is None and settings.pressure is not None:
+        p = np.full(given.rows, settings.pressure)
+    return t, p
+
+
 def vary(
     plan: Plan,
     given: Given,
@@ -234,22 +249,13 @@ def vary(
     verdicts: NDArray[np.int32],
 ) -> None:
     """Fill in the rows whose kind depends on T."""
-    settings = plan.settings
-    t = given.temperature
-    if t is None:
-        t = np.full(given.rows, math.nan if settings.temperature is None else settings.temperature)
-    p = given.pressure
-    if p is None and settings.pressure is not None:
-        p = np.full(given.rows, settings.pressure)
+    t, p = conditions(plan, given)
     usable = (t > 0.0) & (t < math.inf)
-    may_lack = bool(settings.saturated) and p is not None
+    may_lack = bool(plan.settings.saturated) and p is not None
     shared = Shared(np.where(usable & (t < 1e6) & (t > 1.0), t, 298.15), plan.users)
     whole = len(varying) == 1 and bool((kinds == varying[0]).all())
     order = None if whole else np.argsort(kinds.astype(np.int16) if len(plan.kinds) < 2**15 else kinds, kind="stable")
     sorted_kinds = kinds if order is None else kinds[order]
-
-    def run(question: Callable[[], Any]) -> Any:
-        return plan.oracle.ask(lambda _: question())
 
     for number in dict.fromkeys(varying.tolist()):
         if order is None:
@@ -266,7 +272,7 @@ def vary(
             continue
         varying_ = plan.kinds[number].varying
         assert varying_ is not None
-        result = varying_.at(rows, t[rows], None if p is None else p[rows], shared, run, plan.verdict)
+        result = varying_.at(rows, t[rows], None if p is None else p[rows], shared, plan.run, plan.verdict)
         values[rows], standards[rows], verdicts[rows] = result
 
 

@@ -90,17 +90,17 @@ def _sum(
 ) -> tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.int32]]:
     """Values, standard uncertainties [J/mol] and verdicts of rows of one key.
 
-    Sensitivities of components whose shift is constant are added entry by entry, so what two components share is
-    fully correlated; components that vary with T are taken as independent.
+    Sensitivities are added entry by entry, so what two components share is fully correlated.
     """
-    from propdb.tables.core import vary
+    from propdb.tables.core import conditions, vary
 
     _, all_value, all_standard, _, all_verdict, varies = plan.arrays()
-    size, count = len(rows), len(numbers)
+    size = len(rows)
     value, square = np.zeros(size), np.zeros(size)
+    t, p = (None if a is None else a[rows] for a in conditions(plan, given))
     lacking = np.zeros(size, np.bool_)
     verdicts = np.zeros(size, np.int32)
-    entries: dict[str, NDArray[np.float64]] = {}
+    entries: dict[str, NDArray[np.float64]] = {}  # sensitivity x standard error of each row [J/mol]
     for place, number in enumerate(numbers.tolist()):
         present = x[:, place] > 0.0
         if varies[number]:
@@ -110,20 +110,28 @@ def _sum(
             kinds[rows] = number
             vary(plan, given, kinds, np.array([number], np.int32), whole[0], whole[1], verdict)
             mine, standards, verdict = whole[0][rows], whole[1][rows], verdict[rows]
-            square += np.where(present, x[:, place] * np.nan_to_num(standards), 0.0) ** 2
+            varying = plan.kinds[number].varying
+            here = np.flatnonzero(present & ~np.isnan(mine))
+            if varying is not None and len(here):
+                assert t is not None
+                its = varying.sensitivities(t[here], None if p is None else p[here], plan.run)
+                for entry, (part, coefficients) in its.items():
+                    if part.stated:
+                        vector = entries.setdefault(entry, np.zeros(size))
+                        vector[here] += x[here, place] * coefficients * part.standard
         else:
             mine = np.full(size, all_value[number])
             standards = np.full(size, all_standard[number])
             verdict = np.full(size, all_verdict[number], np.int32)
             for part in plan.kinds[number].parts:
                 if part.stated:
-                    vector = entries.setdefault(part.entry, np.zeros(count))
-                    vector[place] += part.coefficient * part.standard
+                    vector = entries.setdefault(part.entry, np.zeros(size))
+                    vector += x[:, place] * (part.coefficient * part.standard)
         value += np.where(present, x[:, place] * mine, 0.0)
         lacking |= present & np.isnan(standards)
         verdicts = _worse(plan, verdicts, np.where(present, verdict, 0).astype(np.int32))
     for vector in entries.values():
-        square += (x @ vector) ** 2
+        square += vector**2
     return value, np.where(lacking, math.nan, np.sqrt(square)), verdicts
 
 

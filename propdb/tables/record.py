@@ -67,11 +67,8 @@ def kinds_of(plan: Plan, tally: Tally) -> tuple[list[dict[str, Any]], dict[str, 
     counted = sorted(tally.kinds.items(), key=lambda pair: -pair[1]) or [(i, 0) for i in range(len(plan.kinds))]
     for number, rows in counted[:_MOST]:
         kind = plan.kinds[number]
-        entries, its = list(kind.entries), dict(kind.sources)
-        if kind.varying is not None:
-            entries += list(kind.varying.entries)
-            its |= kind.varying.sources
-        sources |= {key: text(source) for key, source in its.items()}
+        used = kind.used()
+        sources |= {key: text(source) for key, source in used.sources.items()}
         item: dict[str, Any] = {
             "species": kind.species.name if kind.species is not None else None,
             "as_written": kind.key.species,
@@ -81,7 +78,7 @@ def kinds_of(plan: Plan, tally: Tally) -> tuple[list[dict[str, Any]], dict[str, 
             "flag": kind.flag,
             "reason": kind.reason or None,
             "rows": rows or None,
-            "entries": entries,
+            "entries": {entry: used.origins.get(entry) for entry in used.entries},
             "warnings": list(kind.warnings),
         }
         if not plan.settings.evaluate:

@@ -236,8 +236,11 @@ def _tally(plan: Plan, request: Request) -> Tally:
 def _notes(plan: Plan) -> list[str]:
     notes = []
     if plan.layout.components:
-        what = "computed as ideal mixtures" if plan.settings.evaluate else "left in the number as it is"
-        notes.append(f"mixtures: any enthalpy of mixing is {what}; the shift is the sum over the components")
+        notes.append(
+            "mixtures are taken as ideal: the sum over the components, without an enthalpy of mixing"
+            if plan.settings.evaluate
+            else "mixtures: the shift is the sum over the components; an enthalpy of mixing stays as it is"
+        )
     if plan.layout.get("vapour") is not None:
         notes.append("the vapour fraction has no part in a shift: both phases have one zero")
     return notes

@@ -18,6 +18,7 @@ from propdb.tables.extras import need
 from propdb.tables.kinds import Key
 from propdb.tables.progress import Progress
 from propdb.tables.tally import Sample, Tally
+from propdb.tables.varying import Used
 
 __all__ = ["Counts", "convert_file", "spread"]
 
@@ -29,6 +30,7 @@ class Counts(NamedTuple):
     verdicts: list[tuple[str, str, int]]  # flag, reason, rows
     kinds: list[tuple[Key, int]]
     samples: list[Sample]
+    used: list[tuple[Key, Used]]  # what kinds of rows that depend on T stand on
     read: str  # SHA-256 of the input
     written: str  # and of the output
 
@@ -57,7 +59,8 @@ def convert_file(plan: Plan, stamp: str, source: str, target: str, name: str) ->
         out.close()
     verdicts = [(*plan.verdicts[n], times) for n, times in tally.verdicts.items()]
     kinds = [(plan.kinds[n].key, times) for n, times in tally.kinds.items()]
-    return Counts(tally.rows, verdicts, kinds, tally.first_samples(), sha256_of(Path(source)), out.hexdigest())
+    used = [(kind.key, kind.used()) for kind in plan.kinds]
+    return Counts(tally.rows, verdicts, kinds, tally.first_samples(), used, sha256_of(Path(source)), out.hexdigest())
 
 
 _plans: dict[str, Plan] = {}
@@ -125,7 +128,7 @@ def spread(
             if isinstance(counts, PropdbError):
                 client.cancel(futures)
                 raise counts
-            tally.merge(counts.rows, counts.verdicts, counts.kinds, counts.samples)
+            tally.merge(counts.rows, counts.verdicts, counts.kinds, counts.samples, counts.used)
             hashes[files[done - 1][0]], hashes[files[done - 1][1]] = counts.read, counts.written
             progress.step(counts.rows, done / len(files))
     return hashes

@@ -15,6 +15,7 @@ from propdb.tables.kinds import BAD_ROW, EXTRAPOLATED, NO_DATA, OK, Key
 if TYPE_CHECKING:
     from propdb.tables.core import Given, Plan, Rows
     from propdb.tables.streams import Streams
+    from propdb.tables.varying import Used
 
 __all__ = ["Sample", "Tally"]
 
@@ -78,6 +79,7 @@ class Tally:
         verdicts: Iterable[tuple[str, str, int]],
         kinds: Iterable[tuple[Key, int]],
         samples: Iterable[Sample],
+        used: Iterable[tuple[Key, Used]],
     ) -> None:
         """Add what another plan counted."""
         self.rows += rows
@@ -88,6 +90,10 @@ class Tally:
         numbers = self.plan.kinds_of([key for key, _ in pairs]).tolist() if pairs else []
         for number, (_, times) in zip(numbers, pairs, strict=True):
             self.kinds[number] = self.kinds.get(number, 0) + times
+        found = list(used)
+        for number, (_, its) in zip(self.plan.kinds_of([key for key, _ in found]).tolist(), found, strict=True):
+            if (varying := self.plan.kinds[number].varying) is not None:
+                varying.used.add(its)
         self.samples += samples
         self._trim()
 

@@ -24,17 +24,18 @@ from propdb.errors import PropdbError
 from propdb.levels.curves import BOILING_SLACK, PRINTED_SLACK, Curve
 from propdb.levels.engine import Levels
 from propdb.levels.states import MELTING_SLACK
-from propdb.model.records import SAME_T, T_STANDARD, Datum, Species, State
+from propdb.model.records import SAME_T, T_STANDARD, Datum, Part, Source, Species, State
 from propdb.tables.kinds import EXTRAPOLATED, NO_DATA, OK, Point, enthalpy_at, out_of_range, shift_at
 from propdb.tables.oracle import Basis
 
-__all__ = ["Shared", "Varying", "vary_enthalpy", "vary_shift"]
+__all__ = ["Shared", "Used", "Varying", "vary_enthalpy", "vary_shift"]
 
 FloatArray = NDArray[np.float64]
 
 #: Uncertainties are computed every so many kelvin and interpolated between [K].
 GRID = 50.0
-_MEMORY = 100_000
+_MEMORY = 50_000
+_MIDDLE = -1  # the node of a cell that is its middle
 
 
 class Shared:
@@ -76,7 +77,12 @@ class _Cell:
     base: float = math.nan  # value less the members' own antiderivatives [J/mol]
     standard: float = math.nan  # standard uncertainty at the middle [J/mol]
     grid: dict[int, float] = field(default_factory=dict)
+    parts: dict[int, tuple[Part, ...]] = field(default_factory=dict)  # sensitivities at the nodes of the grid
     only: tuple[float, ...] | None = None  # the few temperatures that are known, where there is no heat capacity [K]
+
+    def node(self, k: int) -> float:
+        """Temperature of a node of the grid, inside the cell [K]."""
+        return min(max(k * GRID, self.low + 1e-6), self.high - 1e-6)
 
     def middle(self) -> float:
         """The temperature at which the levels are asked [K]: the same whichever row comes first."""
@@ -85,6 +91,21 @@ class _Cell:
         if math.isinf(self.high):
             return self.low + 1.0
         return 0.5 * (self.low + self.high) if self.low > 0.0 else 0.9 * self.high
+
+
+@dataclass
+class Used:
+    """What answers stood on."""
+
+    entries: dict[str, None] = field(default_factory=dict)
+    sources: dict[str, Source] = field(default_factory=dict)
+    origins: dict[str, str] = field(default_factory=dict)  # source of each entry
+
+    def add(self, other: Used | Point) -> None:
+        """Add what others stood on."""
+        self.entries.update(dict.fromkeys(other.entries))
+        self.sources.update(other.sources)
+        self.origins.update(other.origins)
 
 
 class Varying:
@@ -102,10 +123,8 @@ class Varying:
         self._ask = ask
         self.cells = list(cells)
         self._ends = [cell.high for cell in self.cells]
-        self._memory: dict[tuple[float, float], tuple[float, float, str, str]] = {}
-        self.entries: dict[str, None] = {}
-        self.sources: dict[str, Any] = {}
-        self.sample: Point | None = None
+        self._memory: dict[tuple[float, float], tuple[float, float, str, str, tuple[Part, ...]]] = {}
+        self.used = Used()
 
     def equations(self) -> set[int]:
         """Ids of the equations it uses."""
@@ -186,26 +205,20 @@ class Varying:
         except PropdbError as error:
             cell.flag, cell.reason = NO_DATA, out_of_range(error)
         else:
-            self._note(point)
+            self.used.add(point)
             if t == T_STANDARD:  # nothing is heated there; elsewhere in the cell something is, by its entries
                 with suppress(PropdbError):
-                    self._note(self._ask(0.5 * (t + min(cell.high, 2.0 * t)), None))
+                    self.used.add(self._ask(0.5 * (t + min(cell.high, 2.0 * t)), None))
             if point.extrapolated:
                 cell.flag = EXTRAPOLATED
                 cell.reason = next((w for w in point.warnings if "extrapolated" in w), "extrapolated")
             cell.base = point.value - sum(c * float(e.h(t)) for c, e in cell.members or ())
             cell.standard = point.standard
-            if math.isnan(point.standard):
-                cell.grid[-1] = math.nan  # nothing to interpolate
+            cell.parts[_MIDDLE] = point.parts
         cell.ready = True
 
-    def _note(self, point: Point) -> None:
-        self.sample = self.sample or point
-        self.entries.update(dict.fromkeys(point.entries))
-        self.sources.update(point.sources)
-
     def _standard(self, cell: _Cell, t: FloatArray, run: Callable[[Callable[[], Any]], Any]) -> FloatArray | float:
-        if -1 in cell.grid:
+        if math.isnan(cell.standard):
             return math.nan
         low, high = int(t.min() // GRID), int(t.max() // GRID) + 1
         missing = [k for k in range(low, high + 1) if k not in cell.grid]
@@ -214,16 +227,16 @@ class Varying:
         known = [cell.grid[k] for k in range(low, high + 1)]
         if all(map(math.isnan, known)):
             return math.nan
-        nodes = [min(max(k * GRID, cell.low + 1e-6), cell.high - 1e-6) for k in range(low, high + 1)]
-        return np.interp(t, nodes, known)
+        return np.interp(t, [cell.node(k) for k in range(low, high + 1)], known)
 
     def _fill(self, cell: _Cell, nodes: Sequence[int]) -> None:
         for k in nodes:
-            t = min(max(k * GRID, cell.low + 1e-6), cell.high - 1e-6)
             try:
-                cell.grid[k] = self._ask(t, None).standard
+                point = self._ask(cell.node(k), None)
             except PropdbError:
-                cell.grid[k] = math.nan
+                cell.grid[k], cell.parts[k] = math.nan, ()
+            else:
+                cell.grid[k], cell.parts[k] = point.standard, point.parts
 
     def _each(
         self,
@@ -232,32 +245,85 @@ class Varying:
         run: Callable[[Callable[[], Any]], Any],
         verdict: Callable[[str, str], int],
     ) -> tuple[FloatArray, FloatArray, NDArray[np.int32]]:
-        pairs = list(zip(t.tolist(), [math.nan] * len(t) if p is None else p.tolist(), strict=True))
-        memory = self._memory
-        wanted = [pair for pair in dict.fromkeys(map(_hashable, pairs)) if pair not in memory]
-        if len(memory) + len(wanted) > _MEMORY:
-            memory.clear()
-            wanted = list(dict.fromkeys(map(_hashable, pairs)))
-        if wanted:
-            run(lambda: self._look(wanted))
-        found = [memory[_hashable(pair)] for pair in pairs]
+        pairs = self._remember(t, p, run)
+        found = [self._memory[pair] for pair in pairs]
         return (
             np.array([f[0] for f in found]),
             np.array([f[1] for f in found]),
             np.array([verdict(f[2], f[3]) for f in found], np.int32),
         )
 
+    def _remember(
+        self, t: FloatArray, p: FloatArray | None, run: Callable[[Callable[[], Any]], Any]
+    ) -> list[tuple[float, float]]:
+        """The temperature and pressure of each row, all of which are in memory now."""
+        pairs = list(map(_hashable, zip(t.tolist(), [math.nan] * len(t) if p is None else p.tolist(), strict=True)))
+        distinct = dict.fromkeys(pairs)
+        wanted = [pair for pair in distinct if pair not in self._memory]
+        if len(self._memory) + len(wanted) > _MEMORY:
+            self._memory.clear()
+            wanted = list(distinct)
+        if wanted:
+            run(lambda: self._look(wanted))
+        return pairs
+
+    def sensitivities(
+        self, temperatures: FloatArray, pressures: FloatArray | None, run: Callable[[Callable[[], Any]], Any]
+    ) -> dict[str, tuple[Part, FloatArray]]:
+        """By entry: a part that says its standard error, and its coefficient in each row [J/mol].
+
+        What rows share is fully correlated, so whoever adds rows up adds coefficients first. Along an equation they
+        are interpolated between the nodes of the grid, as the uncertainties are. Parameters as in :meth:`at`; all
+        rows must have a value there.
+        """
+        found: dict[str, tuple[Part, FloatArray]] = {}
+
+        def add(part: Part, rows: Any, coefficients: Any) -> None:
+            if part.entry not in found:
+                found[part.entry] = (part, np.zeros(len(temperatures)))
+            found[part.entry][1][rows] += coefficients
+
+        cells = np.searchsorted(np.asarray(self._ends[:-1]), temperatures, side="left")
+        for number in np.unique(cells).tolist():
+            cell, mine = self.cells[number], np.flatnonzero(cells == number)
+            t = temperatures[mine]
+            if cell.members is None:
+                places: dict[tuple[float, float], list[int]] = {}
+                pairs = self._remember(t, None if pressures is None else pressures[mine], run)
+                for row, pair in zip(mine.tolist(), pairs, strict=True):
+                    places.setdefault(pair, []).append(row)
+                for pair, rows in places.items():
+                    for part in self._memory[pair][4]:
+                        add(part, rows, part.coefficient)
+                continue
+            if not cell.ready:
+                run(partial(self._prepare, cell))
+            unheated = (t == T_STANDARD) if cell.middle() == T_STANDARD else np.zeros(len(t), np.bool_)
+            for part in cell.parts.get(_MIDDLE, ()) if unheated.any() else ():
+                add(part, mine[unheated], part.coefficient)
+            mine, t = mine[~unheated], t[~unheated]
+            if not len(t):
+                continue
+            nodes = range(int(t.min() // GRID), int(t.max() // GRID) + 2)
+            if missing := [k for k in nodes if k not in cell.parts]:
+                run(partial(self._fill, cell, missing))
+            kelvin = [cell.node(k) for k in nodes]
+            for part in {p.entry: p for k in nodes for p in cell.parts[k]}.values():
+                known = [sum(p.coefficient for p in cell.parts[k] if p.entry == part.entry) for k in nodes]
+                add(part, mine, np.interp(t, kelvin, known))
+        return found
+
     def _look(self, wanted: Sequence[tuple[float, float]]) -> None:
         for t, p in wanted:
             try:
                 point = self._ask(None if t < 0 else t, None if p < 0 else p)
             except PropdbError as error:
-                self._memory[(t, p)] = (math.nan, math.nan, NO_DATA, out_of_range(error))
+                self._memory[(t, p)] = (math.nan, math.nan, NO_DATA, out_of_range(error), ())
                 continue
-            self._note(point)
+            self.used.add(point)
             flag = EXTRAPOLATED if point.extrapolated else OK
             reason = next((w for w in point.warnings if "extrapolated" in w), "") if point.extrapolated else ""
-            self._memory[(t, p)] = (point.value, point.standard, flag, reason)
+            self._memory[(t, p)] = (point.value, point.standard, flag, reason, point.parts)
 
 
 def _hashable(pair: tuple[float, float]) -> tuple[float, float]:

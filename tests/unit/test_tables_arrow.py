@@ -228,6 +228,21 @@ def test_several_processes_give_the_same_bits(store: propdb.Store, tmp_path: Pat
         store.convert_table(source, tmp_path / "three", to=TO, scheduler="tcp://127.0.0.1:1")
 
 
+@pytest.mark.parametrize("mixture", [False, True])
+def test_workers_report_what_their_rows_stand_on(store: propdb.Store, tmp_path: Path, mixture: bool) -> None:
+    pytest.importorskip("distributed")
+    source = tmp_path / "year"
+    source.mkdir()
+    what = {"x[nitrogen]": [0.5, 1.0], "x[methane]": [0.5, 0.0]} if mixture else {"species": ["nitrogen", "methane"]}
+    pq.write_table(pa.table({**what, "phase": ["g", "g"], "T [K]": [400.0, 700.0]}), source / "a.parquet")
+    one = store.convert_table(source, tmp_path / "one", to=TO).data
+    two = store.convert_table(source, tmp_path / "two", to=TO, workers=1).data
+    assert len(two["kinds"]) == 2
+    assert all(kind["entries"] for kind in two["kinds"])
+    for part in ("kinds", "sources", "rows", "reasons", "datums", "columns", "input"):
+        assert one[part] == two[part], part
+
+
 def test_workers_for_one_file_are_refused(store: propdb.Store, tmp_path: Path) -> None:
     pq.write_table(random_table(5), tmp_path / "in.parquet")
     with pytest.raises(InvalidInput, match="directory of Parquet"):

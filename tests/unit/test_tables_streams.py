@@ -259,3 +259,59 @@ def test_the_sidecar_names_what_heats_a_row(store: propdb.Store, tmp_path: Path,
         assert kind["from"] is None
         assert set(kind["entries"]) >= {step.entry for step in one.steps if step.entry}
         assert any(step.what == "heating" for step in one.steps) == (to != "elements-same-T" or name != "oxygen")
+
+
+def run(store: propdb.Store, folder: Path, text: str, **options: Any) -> dict[str, Any]:
+    (folder / "in.csv").write_text(text, encoding="utf-8")
+    report = store.convert_table(folder / "in.csv", folder / "out.csv", overwrite=True, **options)
+    return dict(report.data)
+
+
+def test_the_duty_of_evaluated_rows_is_as_uncertain_as_the_heat_of_reaction(
+    store: propdb.Store, tmp_path: Path
+) -> None:
+    """A stream that is written in two rows is as uncertain as in one: both stand on the same entries."""
+    text = (
+        "side,species,phase,T [C],flow [mol/s]\nin,carbon monoxide,g,25,2\nin,oxygen,g,25,1\n"
+        "out,carbon dioxide,g,25,1\nout,carbon dioxide,g,25,0.5\nout,carbon dioxide,g,25,0.5\n"
+    )
+    found = run(store, tmp_path, text, to="elements-298K")["streams"]
+    one = store.reaction("CO(g) + 1/2 O2(g) -> CO2(g)", temperature="25C")
+    assert found["duty"] == pytest.approx(2 * one.value)
+    assert found["duty_uncertainty"] == pytest.approx(2 * one.uncertainty)
+
+
+@pytest.mark.parametrize("phase, pressure", [("l", ""), ("fluid", "10")])
+def test_what_inlets_and_outlets_share_cancels_in_the_duty(
+    store: propdb.Store, tmp_path: Path, phase: str, pressure: str
+) -> None:
+    text = f"side,species,phase,T [C],p [bar],flow [mol/s]\nin,water,l,25,1,2\nout,water,{phase},70,{pressure or 1},2\n"
+    found = run(store, tmp_path, text, to="elements-298K")["streams"]
+    state = {"phase": phase, "temperature": "70C", "pressure": f"{pressure}bar" if pressure else None}
+    one = store.enthalpy("water", datum="own:l@25C", **state)
+    assert one.uncertainty is not None
+    assert found["duty"] == pytest.approx(2 * one.value, rel=1e-6)
+    assert found["duty_uncertainty"] == pytest.approx(2 * one.uncertainty, rel=0.02)
+
+
+def test_a_mixture_is_as_uncertain_as_its_parts_in_two_streams(store: propdb.Store, tmp_path: Path) -> None:
+    """At the temperature of the state both stand on the heat capacities of the same elements."""
+    mixed = "side,x[carbon dioxide],x[carbon monoxide],phase,T [C],flow [mol/s]\nin,1,0,g,25,1\nout,0.5,0.5,g,25,4\n"
+    apart = (
+        "side,species,phase,T [C],flow [mol/s]\nin,carbon dioxide,g,25,1\n"
+        "out,carbon dioxide,g,25,2\nout,carbon monoxide,g,25,2\n"
+    )
+    first = run(store, tmp_path, mixed, to="elements-298K")["streams"]
+    second = run(store, tmp_path, apart, to="elements-298K")["streams"]
+    assert first["duty"] == pytest.approx(second["duty"])
+    assert first["duty_uncertainty"] == pytest.approx(second["duty_uncertainty"])
+    assert first["duty_uncertainty"] > 0.0
+
+
+def test_sources_without_an_uncertainty_are_named(store: propdb.Store, tmp_path: Path) -> None:
+    text = "side,species,phase,T [C],flow [mol/s]\nin,nitrogen,g,25,1\nout,nitrogen,g,180,1\n"
+    found = run(store, tmp_path, text, to="elements-298K")
+    entry = next(iter(found["kinds"][0]["entries"]))
+    assert found["streams"]["duty_uncertainty"] is None
+    assert found["streams"]["duty_uncertainty_note"] == f"not stated by nasa-tp-2002-211556 [{entry[:8]}]"
+    assert found["kinds"][0]["entries"] == {entry: "nasa-tp-2002-211556"}
