@@ -69,7 +69,7 @@ def read(batch: Any, plan: Plan) -> Given:
     if (column := layout.get("temperature")) is not None:
         t = temperature_scale(column.unit, column.name)(floats(batch.column(column.index)))
     if (column := layout.get("pressure")) is not None:
-        p = floats(batch.column(column.index)) * pressure_scale(column.unit, column.name)
+        p = pressure_scale(column.unit, column.name)(floats(batch.column(column.index)))
     if layout.components:
         fractions = np.empty((batch.num_rows, len(layout.components)))
         for place, component in enumerate(layout.components):

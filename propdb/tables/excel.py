@@ -148,12 +148,13 @@ def _copy(page: Any, cell: Any) -> Any:
 
 
 def _convert(rows: list[tuple[Any, ...]], page: Any, plan: Plan, tally: Tally, first: int) -> None:
-    from propdb.tables.core import compute
+    from propdb.tables.core import compute, needs_state
 
     if not rows:
         return
     problems: dict[int, str] = {}
-    given = _given(rows, plan, problems)
+    states: dict[int, str] = {}  # what is wrong with temperature and pressure
+    given = _given(rows, plan, problems, states)
     found = compute(plan, given)
     column = plan.layout.get("enthalpy")
     verdicts = found.verdicts.copy()
@@ -161,6 +162,9 @@ def _convert(rows: list[tuple[Any, ...]], page: Any, plan: Plan, tally: Tally, f
         h = found.value / found.scale
     else:
         h = (_numbers(rows, column.index, column.name, problems, wanted=True) * found.scale + found.value) / found.scale
+    if states:
+        needed = needs_state(plan, found)
+        problems |= {i: why for i, why in states.items() if i not in problems and (needed[i] or column is None)}
     for i, problem in problems.items():
         verdicts[i] = plan.verdict(BAD_ROW, problem)
         h[i] = math.nan
@@ -180,7 +184,7 @@ def _cell(row: tuple[Any, ...], index: int) -> Any:
     return row[index] if index < len(row) else None
 
 
-def _given(rows: list[tuple[Any, ...]], plan: Plan, problems: dict[int, str]) -> Given:
+def _given(rows: list[tuple[Any, ...]], plan: Plan, problems: dict[int, str], states: dict[int, str]) -> Given:
     from propdb.tables.core import Given
 
     layout = plan.layout
@@ -198,9 +202,9 @@ def _given(rows: list[tuple[Any, ...]], plan: Plan, problems: dict[int, str]) ->
         keys[role] = (np.array(codes, np.int32), [*places, None])
     t = p = flow = fractions = None
     if (column := layout.get("temperature")) is not None:
-        t = temperature_scale(column.unit, column.name)(_numbers(rows, column.index, column.name, problems))
+        t = temperature_scale(column.unit, column.name)(_numbers(rows, column.index, column.name, states))
     if (column := layout.get("pressure")) is not None:
-        p = _numbers(rows, column.index, column.name, problems) * pressure_scale(column.unit, column.name)
+        p = pressure_scale(column.unit, column.name)(_numbers(rows, column.index, column.name, states))
     if layout.components:
         fractions = np.empty((len(rows), len(layout.components)))
         for place, component in enumerate(layout.components):

@@ -224,9 +224,9 @@ def make_kind(
 
 
 def out_of_range(error: PropdbError) -> str:
-    """The reason of rows whose temperature the data do not reach, without the temperature of one of them."""
+    """The reason of rows that the data do not reach, without the temperature or pressure of one of them."""
     if isinstance(error, OutOfRange) and error.hint:
-        return f"outside the data at this temperature; {error.hint}"
+        return f"outside the data; {error.hint}"
     return one_line(error)
 
 

@@ -132,8 +132,11 @@ def summary(data: dict[str, Any], target: Path, seconds: float) -> list[str]:
     flags, total = data["rows"]["flags"], data["rows"]["total"]
     parts = [f"{times:,} {flag}" for flag, times in flags.items() if times]
     rate = f", {total / seconds:,.0f} rows/s" if total > 10_000 else ""
-    lines = [f"{target.name}: {total:,} rows: {', '.join(parts) or 'none'}{rate}"]
-    lines += [f"  {r['rows']:,} {r['flag']}: {r['reason']}" for r in data["reasons"][:8] if r["reason"]]
+    lines = [f"{target.name}: {total:,} {'row' if total == 1 else 'rows'}: {', '.join(parts) or 'none'}{rate}"]
+    for r in data["reasons"][:8]:
+        file = f" of {r['first_file']}" if "first_file" in r else ""
+        first = f"{'first in ' if r['rows'] > 1 else ''}row {r['first_row']:,}{file}"
+        lines += wrapped(f"{r['rows']:,} {r['flag']}: {r['reason'] or 'no reason'} ({first})", "  ", "    ")
     if len(data["reasons"]) > 8:
         lines.append(f"  and {len(data['reasons']) - 8} more reasons in {target.name}{SIDECAR}")
     return lines + [line for note in data["notes"] for line in wrapped(note, "  ", "    ")]

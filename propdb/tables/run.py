@@ -257,7 +257,8 @@ def _delimited(oracle: Oracle, request: Request, source: Path, part: Path, progr
         out.close()
     notes = _notes(plan)
     if not digits.fixed and plan.layout.get("enthalpy") is not None and digits.places < 2 and tally.rows:
-        notes.append(f"written to {digits.places} decimals, as the column is; --digits N for more")
+        places = "1 decimal" if digits.places == 1 else f"{digits.places} decimals"
+        notes.append(f"written to {places}, as the column is; --digits N for more")
     return Done(plan, tally, given.reader.hexdigest(), out.hexdigest(), notes)
 
 

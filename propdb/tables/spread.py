@@ -27,7 +27,7 @@ class Counts(NamedTuple):
     """What one file came to, without reference to the plan that counted it."""
 
     rows: int
-    verdicts: list[tuple[str, str, int]]  # flag, reason, rows
+    verdicts: list[tuple[str, str, int, tuple[str, int]]]  # as Tally.counts gives them
     kinds: list[tuple[Key, int]]
     samples: list[Sample]
     used: list[tuple[Key, Used]]  # what kinds of rows that depend on T stand on
@@ -57,10 +57,11 @@ def convert_file(plan: Plan, stamp: str, source: str, target: str, name: str) ->
         out = HashedWriter(raw)
         convert_parquet(Path(source), plan, out, tally, Progress(None), share=float, file=name, overlap=False)
         out.close()
-    verdicts = [(*plan.verdicts[n], times) for n, times in tally.verdicts.items()]
     kinds = [(plan.kinds[n].key, times) for n, times in tally.kinds.items()]
     used = [(kind.key, kind.used()) for kind in plan.kinds]
-    return Counts(tally.rows, verdicts, kinds, tally.first_samples(), used, sha256_of(Path(source)), out.hexdigest())
+    return Counts(
+        tally.rows, tally.counts(), kinds, tally.first_samples(), used, sha256_of(Path(source)), out.hexdigest()
+    )
 
 
 _plans: dict[str, Plan] = {}

@@ -74,6 +74,7 @@ class Streams:
     found: dict[tuple[str, str], _Stream] = field(default_factory=dict)
     moles: dict[tuple[int, str], float] = field(default_factory=lambda: defaultdict(float))
     varying: dict[str, _Sum] = field(default_factory=dict)  # by entry, over the rows that vary with T
+    negative: int = 0  # rows
     low: float = math.inf  # of the temperatures [K]
     high: float = -math.inf
     _lock: Lock = field(default_factory=Lock)
@@ -104,6 +105,7 @@ class Streams:
                 stream.rows += int(sums[3][code]) + int(lost_count[code])
                 stream.lost += int(lost_count[code])
             self._by_species(given, rows, np.where(np.isnan(flows), 0.0, flows), lost, sides, read)
+            self.negative += int(np.count_nonzero(flows < 0.0))
             t = given.temperature
             if t is not None and not np.isnan(t).all():
                 self.low = min(self.low, float(np.nanmin(t)))
@@ -189,6 +191,18 @@ class Streams:
             raise DatumMismatch(verdict.why, hint="convert --to elements-298K; --across sums all the same")
         totals = {side: sum(s.watts for s in self.found.values() if s.side == side) for side in (IN, OUT)}
         lost = sum(s.lost for s in self.found.values())
+        strange = sorted({s.side for s in self.found.values()} - {IN, OUT, ""})
+        if both and strange:
+            notes.append(f"neither in nor out, and in no total: side {', '.join(map(repr, strange[:4]))}")
+        if both and any(not s.side for s in self.found.values()):
+            notes.append("streams without a side are in no total")
+        if self.negative:
+            rows = (
+                "1 row has a negative flow, which is"
+                if self.negative == 1
+                else f"{self.negative} rows have negative flows, which are"
+            )
+            notes.append(f"{rows} added up with the sign")
         if lost:
             rows = "1 row" if lost == 1 else f"{lost} rows"
             notes.append(f"{rows} without an enthalpy or a flow left out, so totals and duty are incomplete")

@@ -42,6 +42,7 @@ class Tally:
     verdicts: dict[int, int] = field(default_factory=dict)
     kinds: dict[int, int] = field(default_factory=dict)
     samples: list[Sample] = field(default_factory=list)
+    firsts: dict[int, tuple[str, int]] = field(default_factory=dict)  # file and row where each verdict first stands
     _lock: Lock = field(default_factory=Lock)
 
     def add(
@@ -60,7 +61,13 @@ class Tally:
         kinds = rows.kinds
         by_verdict = np.bincount(verdicts).tolist() if len(verdicts) else []
         by_kind = [] if kinds is None or not len(kinds) else np.bincount(kinds).tolist()
-        bad = np.flatnonzero(verdicts)[:_SAMPLES].tolist() if len(by_verdict) > 1 else []
+        bad: list[int] = []
+        firsts: list[tuple[int, int]] = []
+        if len(by_verdict) > 1:
+            places = np.flatnonzero(verdicts)
+            bad = places[:_SAMPLES].tolist()
+            numbers, where = np.unique(verdicts[places], return_index=True)
+            firsts = list(zip(numbers.tolist(), places[where].tolist(), strict=True))
         with self._lock:
             self.rows += len(verdicts)
             for table, counts in ((self.verdicts, by_verdict), (self.kinds, by_kind)):
@@ -70,22 +77,25 @@ class Tally:
             for row in bad:
                 flag, reason = self.plan.verdicts[verdicts[row]]
                 self.samples.append(Sample(first + row, flag, reason, file))
+            for number, row in firsts:
+                self._first(number, file, first + row)
             if len(self.samples) > 50 * _SAMPLES:
                 self._trim()
 
     def merge(
         self,
         rows: int,
-        verdicts: Iterable[tuple[str, str, int]],
+        verdicts: Iterable[tuple[str, str, int, tuple[str, int]]],
         kinds: Iterable[tuple[Key, int]],
         samples: Iterable[Sample],
         used: Iterable[tuple[Key, Used]],
     ) -> None:
         """Add what another plan counted."""
         self.rows += rows
-        for flag, reason, times in verdicts:
+        for flag, reason, times, first in verdicts:
             number = self.plan.verdict(flag, reason)
             self.verdicts[number] = self.verdicts.get(number, 0) + times
+            self._first(number, *first)
         pairs = list(kinds)
         numbers = self.plan.kinds_of([key for key, _ in pairs]).tolist() if pairs else []
         for number, (_, times) in zip(numbers, pairs, strict=True):
@@ -96,6 +106,14 @@ class Tally:
                 varying.used.add(its)
         self.samples += samples
         self._trim()
+
+    def _first(self, number: int, file: str, row: int) -> None:
+        self.firsts[number] = min((file, row), self.firsts.get(number, (file, row)))
+
+    def counts(self) -> list[tuple[str, str, int, tuple[str, int]]]:
+        """Flag, reason, rows, and the file and row where each first stands: for another tally to merge."""
+        verdicts = self.plan.verdicts
+        return [(*verdicts[n], times, self.firsts.get(n, ("", 0))) for n, times in self.verdicts.items()]
 
     def _trim(self) -> None:
         self.samples.sort(key=lambda s: (s.file, s.row))
@@ -109,11 +127,11 @@ class Tally:
         return counts
 
     def reasons(self, most: int = 50) -> list[dict[str, Any]]:
-        """Reasons with the number of their rows, the most frequent first."""
+        """Reasons with the number of their rows and the first of them, the most frequent first."""
         found = [
-            {"flag": self.plan.verdicts[number][0], "reason": self.plan.verdicts[number][1], "rows": times}
-            for number, times in self.verdicts.items()
-            if number
+            {"flag": flag, "reason": reason, "rows": times, "first_row": row} | ({"first_file": file} if file else {})
+            for flag, reason, times, (file, row) in self.counts()
+            if flag != OK
         ]
         found.sort(key=lambda r: -int(str(r["rows"])))
         return found[:most]

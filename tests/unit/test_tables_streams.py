@@ -179,7 +179,7 @@ def test_mass_flows_and_mixtures(store: propdb.Store, tmp_path: Path) -> None:
         x * store.enthalpy(name, phase="g", temperature="525C", datum="gas-25C").value
         for name, x in (("nitrogen", 0.79), ("oxygen", 0.21))
     )
-    molar = 0.79 * 28.0134e-3 + 0.21 * 31.9988e-3
+    molar = 0.79 * 28.014e-3 + 0.21 * 31.9988e-3
     assert found["duty"] == pytest.approx(per_mol / molar, rel=1e-4)
     assert found["streams"][0]["flow_mass"] == pytest.approx(1.0)
 
@@ -315,3 +315,36 @@ def test_sources_without_an_uncertainty_are_named(store: propdb.Store, tmp_path:
     assert found["streams"]["duty_uncertainty"] is None
     assert found["streams"]["duty_uncertainty_note"] == f"not stated by nasa-tp-2002-211556 [{entry[:8]}]"
     assert found["kinds"][0]["entries"] == {entry: "nasa-tp-2002-211556"}
+
+
+def test_streams_that_enter_no_total_are_named(store: propdb.Store, tmp_path: Path) -> None:
+    head = "side,species,datum,h [kJ/mol],flow [mol/s]\n"
+    rows = [f"{side},nitrogen,gas-25C,1.0,{flow}" for side, flow in (("in", 2), ("Outlet", 1), ("up", 1), ("", 1))]
+    found = run(store, tmp_path, head + "\n".join([*rows, "in,nitrogen,gas-25C,1.0,-1"]) + "\n", to="gas-25C")[
+        "streams"
+    ]
+    assert (found["total_in"], found["total_out"]) == pytest.approx((1.0, 1.0))
+    assert found["notes"] == [
+        "neither in nor out, and in no total: side 'up'",
+        "streams without a side are in no total",
+        "1 row has a negative flow, which is added up with the sign",
+    ]
+
+
+#: A flow that carries 1 mol/s, in many units. Molar volumes at 0 °C and 1 atm, 60 °F and 1 atm: 22.41397 L/mol,
+#: 379.484 ft3/lbmol; nitrogen has 28.014 g/mol (CIAAW, abridged).
+UNITS = {
+    "kmol/h": 3.6, "mol/min": 60.0, "lbmol/h": 3600 / 453.59237, "kg/h": 3.6 * 28.014, "t/d": 0.0864 * 28.014,
+    "g/s": 28.014, "lb/hr": 3.6 * 28.014 / 0.45359237, "klb/h": 3.6e-3 * 28.014 / 0.45359237,
+    "Nm3/h": 3.6 * 22.41397, "Nm³/h": 3.6 * 22.41397, "kNm3/h": 3.6e-3 * 22.41397,
+    "scf/h": 3600 / 453.59237 * 379.484, "MMSCFD": 86400e-6 / 453.59237 * 379.484,
+    "MMscf/d": 86400e-6 / 453.59237 * 379.484,
+}  # fmt: skip
+
+
+@pytest.mark.parametrize("unit", UNITS)
+def test_units_of_flow(store: propdb.Store, tmp_path: Path, unit: str) -> None:
+    text = f"species,datum,h [kJ/mol],flow [{unit}]\nnitrogen,gas-25C,1000.0,{UNITS[unit]!r}\n"
+    found = run(store, tmp_path, text, to="gas-25C")["streams"]
+    assert found["total"] == pytest.approx(1000.0, rel=2e-5)
+    assert found["streams"][0]["flow_amount"] == pytest.approx(1.0, rel=2e-5)
