@@ -38,7 +38,8 @@ def convert_rows(block: bytes, first: int, work: BlockWork) -> Part:
     table: list[list[str]] = []
     problems: dict[int, str] = {}
     blank: dict[int, list[bytes]] = {}
-    for line in raw:
+    places: list[int] = []  # of the rows among all lines
+    for place, line in enumerate(raw):
         text = line.rstrip(b"\r\n")
         if not text and width > 1:
             blank.setdefault(len(texts), []).append(line)
@@ -49,6 +50,7 @@ def convert_rows(block: bytes, first: int, work: BlockWork) -> Part:
             problems[len(texts)] = f"{many} where the header has {width}"
             text += mark.encode() * max(0, width - len(fields))
             fields = (fields + [""] * width)[:width]
+        places.append(place)
         texts.append(text)
         table.append(fields)
     ends = [line[len(line.rstrip(b"\r\n")) :] for line in raw if width == 1 or line.rstrip(b"\r\n")]
@@ -91,7 +93,7 @@ def convert_rows(block: bytes, first: int, work: BlockWork) -> Part:
         tail = mark.join([*(localised(work, cell) for cell in cells), added_tail(work, verdicts[i])])
         pieces += [text, mark.encode(), tail.encode(), ends[i]]
     pieces += blank.get(len(texts), ())
-    work.tally.add(given, rows, verdicts, lambda: h, first=first)
+    work.tally.add(given, rows, verdicts, lambda: h, numbers=first + np.array(places, np.int64))
     return Part(len(table), [b"".join(pieces)])
 
 

@@ -174,6 +174,12 @@ def bind(
     return Layout(tuple(names), columns, components)
 
 
+def looks_like_header(names: Sequence[str]) -> bool:
+    """Do two or more names of a row say what their columns are?"""
+    roles = [role for role, words in ROLES.items() if any(_answers(name, role, words) for name in names)]
+    return len(roles) + any(_COMPONENT.fullmatch(name) is not None for name in names) >= 2
+
+
 def _answers(header: str, role: str, words: tuple[str, ...]) -> bool:
     name, _ = split_unit(header)
     if _two_units(header):

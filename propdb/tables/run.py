@@ -179,6 +179,8 @@ def convert_table(
     """See :meth:`propdb.api.Store.convert_table`."""
     check_paths(source, target, overwrite=request.overwrite)
     kind = kind_of_file(source)
+    if target.suffix.lower() == ".xlsm":
+        raise InvalidInput("macros are not kept", where=str(target), hint="end the name with .xlsx")
     if kind != "directory" and kind_of_file(target) != kind:
         raise InvalidInput(
             f"the input is {source.suffix} and the output {target.suffix}",

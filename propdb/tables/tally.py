@@ -52,12 +52,20 @@ class Tally:
         verdicts: NDArray[np.int32],
         h: Callable[[], NDArray[np.float64]],
         *,
-        first: int,
+        first: int = 1,
+        numbers: NDArray[np.int64] | None = None,
         file: str = "",
     ) -> None:
-        """Add a batch whose first row has the number ``first``; ``h`` gives its enthalpies, for streams."""
+        """Add a batch; ``h`` gives its enthalpies, for streams.
+
+        Rows have the ``numbers`` that are given, or go on from ``first``.
+        """
         if self.streams is not None:
             self.streams.add(given, rows, h())
+
+        def number_of(row: int) -> int:
+            return first + row if numbers is None else int(numbers[row])
+
         kinds = rows.kinds
         by_verdict = np.bincount(verdicts).tolist() if len(verdicts) else []
         by_kind = [] if kinds is None or not len(kinds) else np.bincount(kinds).tolist()
@@ -66,8 +74,8 @@ class Tally:
         if len(by_verdict) > 1:
             places = np.flatnonzero(verdicts)
             bad = places[:_SAMPLES].tolist()
-            numbers, where = np.unique(verdicts[places], return_index=True)
-            firsts = list(zip(numbers.tolist(), places[where].tolist(), strict=True))
+            kinds_of_bad, where = np.unique(verdicts[places], return_index=True)
+            firsts = list(zip(kinds_of_bad.tolist(), places[where].tolist(), strict=True))
         with self._lock:
             self.rows += len(verdicts)
             for table, counts in ((self.verdicts, by_verdict), (self.kinds, by_kind)):
@@ -76,9 +84,9 @@ class Tally:
                         table[number] = table.get(number, 0) + times
             for row in bad:
                 flag, reason = self.plan.verdicts[verdicts[row]]
-                self.samples.append(Sample(first + row, flag, reason, file))
+                self.samples.append(Sample(number_of(row), flag, reason, file))
             for number, row in firsts:
-                self._first(number, file, first + row)
+                self._first(number, file, number_of(row))
             if len(self.samples) > 50 * _SAMPLES:
                 self._trim()
 

@@ -349,3 +349,113 @@ def test_excel_refusals(store: propdb.Store, tmp_path: Path) -> None:
         store.convert_table(source, target, to=TO)
     assert not target.exists()
     assert not list(tmp_path.glob(".*"))
+
+
+def test_excel_keeps_values_and_formats(store: propdb.Store, tmp_path: Path) -> None:
+    import datetime as dt
+
+    openpyxl = pytest.importorskip("openpyxl")
+    from openpyxl.styles import Font, PatternFill
+    from openpyxl.worksheet.formula import ArrayFormula
+
+    book = openpyxl.Workbook()
+    page = book.active
+    page.append(["species", "h [kJ/kg]", "when", "n", "calc", "wrong"])
+    page.append(["nitrogen", 1.5, dt.datetime(2026, 1, 2, 3, 4, 5), 0.25, "=B2*2", "#N/A"])
+    page.append(["nitrogen", 2.5, dt.time(1, 2, 3), True, ArrayFormula("E3:E3", "=B2:B2*2"), "#DIV/0!"])
+    page["F2"].data_type = page["F3"].data_type = "e"
+    page["A1"].font = Font(bold=True)
+    page["A2"].fill = PatternFill("solid", fgColor="FFFF00")
+    page["B2"].number_format = "0.000"
+    page["D2"].number_format = "0.0%"
+    page["G3"].fill = PatternFill("solid", fgColor="FF0000")  # a format without a value, beside the table
+    book.save(tmp_path / "in.xlsx")
+    report = store.convert_table(tmp_path / "in.xlsx", tmp_path / "out.xlsx", to=TO, from_="gas-25C")
+    assert report.flags["ok"] == 2
+    assert "column widths" in str(report)
+    out = openpyxl.load_workbook(tmp_path / "out.xlsx").active
+    for row in page["A1:F3"]:
+        for cell in row:
+            new = out[cell.coordinate]
+            if cell.coordinate == "E3":
+                assert (new.value.text, new.value.ref) == ("=B2:B2*2", "E3:E3")
+            else:
+                assert (new.value, new.data_type) == (cell.value, cell.data_type), cell.coordinate
+            assert new.number_format == cell.number_format
+            assert (new.font.b, new.fill.fgColor.rgb) == (cell.font.b, cell.fill.fgColor.rgb)
+
+
+def test_excel_keeps_all_digits(store: propdb.Store, tmp_path: Path) -> None:
+    """Excel stores seventeen digits where a number needs them; so do the cells that are added."""
+    import zipfile
+
+    openpyxl = pytest.importorskip("openpyxl")
+    write_book(tmp_path / "some.xlsx", [["species", "datum", "h [kJ/kg]", "n"], ["methane", "gas-25C", 12.625, 123.75]])
+    with zipfile.ZipFile(tmp_path / "some.xlsx") as old, zipfile.ZipFile(tmp_path / "in.xlsx", "w") as new:
+        for name in old.namelist():
+            data = old.read(name).replace(b"<v>12.625</v>", b"<v>0.30000000000000004</v>")
+            new.writestr(name, data.replace(b"<v>123.75</v>", b"<v>2.0000000000000004</v>"))
+    store.convert_table(tmp_path / "in.xlsx", tmp_path / "out.xlsx", to=TO)
+    row = [cell.value for cell in openpyxl.load_workbook(tmp_path / "out.xlsx").active[2]]
+    assert row[2:4] == [0.30000000000000004, 2.0000000000000004]
+    table = pa.table({"species": ["methane"], "datum": ["gas-25C"], "h [kJ/kg]": [0.30000000000000004]})
+    pq.write_table(table, tmp_path / "in.parquet")
+    store.convert_table(tmp_path / "in.parquet", tmp_path / "out.parquet", to=TO)
+    assert row[4] == pq.read_table(tmp_path / "out.parquet").column(3)[0].as_py()
+
+
+def test_excel_empty_rows_are_none_of_the_table(store: propdb.Store, tmp_path: Path) -> None:
+    openpyxl = pytest.importorskip("openpyxl")
+    rows = [["species", "h [kJ/kg]"], ["methane", 1.0], [None, None], ["methan", 2.0], ["methane", "1,234.5"], [None]]
+    write_book(tmp_path / "in.xlsx", rows)
+    report = store.convert_table(tmp_path / "in.xlsx", tmp_path / "out.xlsx", to=TO, from_="gas-25C")
+    assert report.data["rows"]["total"] == 3
+    assert [sample["row"] for sample in report.data["first_rows_not_ok"]] == [3, 4]
+    assert "is text, not a number" in report.data["first_rows_not_ok"][1]["reason"]
+    out = openpyxl.load_workbook(tmp_path / "out.xlsx").active
+    assert [cell.value for cell in out[3]] == [None] * 7
+    assert out["F4"].value == "bad row"
+
+
+def test_excel_sheets_and_headers(store: propdb.Store, tmp_path: Path) -> None:
+    openpyxl = pytest.importorskip("openpyxl")
+    good: list[list[Any]] = [["species", "datum", "h [kJ/kg]"], ["methane", "gas-25C", 1.0]]
+    write_book(tmp_path / "in.xlsx", good, ("cover", "data"))
+    book = openpyxl.load_workbook(tmp_path / "in.xlsx")
+    book["cover"].sheet_state = "hidden"
+    book.active = 1
+    book.save(tmp_path / "in.xlsx")
+    report = store.convert_table(tmp_path / "in.xlsx", tmp_path / "out.xlsx", to=TO)
+    assert report.clean
+    assert "nor are other sheets (cover)" in report.data["notes"][-1]
+    assert openpyxl.load_workbook(tmp_path / "out.xlsx").sheetnames == ["data"]
+    for above in ([["Data sheet 12"]], [[None]], [["Data sheet 12"], [None]]):
+        write_book(tmp_path / "in.xlsx", above + good)
+        with pytest.raises(InvalidInput, match=f"row {len(above) + 1} does; delete the rows above"):
+            store.convert_table(tmp_path / "in.xlsx", tmp_path / "out.xlsx", to=TO, overwrite=True)
+    with pytest.raises(InvalidInput, match="macros"):
+        store.convert_table(tmp_path / "in.xlsx", tmp_path / "out.xlsm", to=TO)
+    (tmp_path / "old.xlsx").write_bytes(bytes.fromhex("d0cf11e0a1b11ae1") + b"\0" * 512)
+    with pytest.raises(InvalidInput, match=r"\.xls workbook or has a password"):
+        store.convert_table(tmp_path / "old.xlsx", tmp_path / "new.xlsx", to=TO)
+
+
+def test_a_damaged_sheet_is_one_line(store: propdb.Store, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """And nothing else is printed, when the half-written output is thrown away."""
+    import gc
+    import sys
+    import zipfile
+
+    pytest.importorskip("openpyxl")
+    write_book(tmp_path / "some.xlsx", [["species", "datum", "h [kJ/kg]"], *[["methane", "gas-25C", 1.0]] * 100])
+    with zipfile.ZipFile(tmp_path / "some.xlsx") as old, zipfile.ZipFile(tmp_path / "in.xlsx", "w") as new:
+        for name in old.namelist():
+            data = old.read(name)
+            new.writestr(name, data[: len(data) // 2] if name.endswith("sheet1.xml") else data)
+    heard: list[Any] = []
+    monkeypatch.setattr(sys, "unraisablehook", heard.append)
+    with pytest.raises(InvalidInput, match="cannot be read as a workbook"):
+        store.convert_table(tmp_path / "in.xlsx", tmp_path / "out.xlsx", to=TO)
+    gc.collect()
+    assert not heard
+    assert sorted(path.name for path in tmp_path.iterdir()) == ["in.xlsx", "some.xlsx"]
