@@ -21,6 +21,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from propdb.errors import InvalidInput
+from propdb.tables.batches import TOO_LARGE
 from propdb.tables.columns import looks_like_header
 from propdb.tables.decimals import MISSING
 from propdb.tables.extras import need
@@ -263,7 +264,10 @@ def _added(rows: list[tuple[Any, ...]], plan: Plan, tally: Tally, numbers: NDArr
     if column is None:
         h = found.value / found.scale
     else:
-        h = (_numbers(rows, column.index, column.name, problems, wanted=True) * found.scale + found.value) / found.scale
+        given_h = _numbers(rows, column.index, column.name, problems, wanted=True)
+        with np.errstate(over="ignore", invalid="ignore"):
+            h = (given_h * found.scale + found.value) / found.scale
+        problems |= dict.fromkeys(np.flatnonzero(np.abs(h) >= TOO_LARGE).tolist(), "the enthalpy is too large")
     if states:
         needed = needs_state(plan, found)
         problems |= {i: why for i, why in states.items() if i not in problems and (needed[i] or column is None)}

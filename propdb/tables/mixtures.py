@@ -70,7 +70,7 @@ def component_names(plan: Plan) -> list[str | None]:
 def amounts(
     plan: Plan, given: Given, rows: NDArray[np.intp], molar: NDArray[np.float64], wet: NDArray[np.bool_]
 ) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
-    """Amount fractions of some rows, and what they sum to as given (NaN: one is negative; infinite: too much water).
+    """Amount fractions of some rows, and what they sum to as given (NaN: one is negative; -inf: too much water).
 
     ``molar`` are the molar masses of the components [kg/mol]; ``wet`` says which is water beside a dry composition.
     """
@@ -84,7 +84,7 @@ def amounts(
             water = x[:, wet].sum(axis=1)
             alone = (total == 0.0) & (water == 1.0)  # steam has no dry part
             x = np.where(wet, x, x / np.where(alone, 1.0, total)[:, None] * (1.0 - water)[:, None])
-            total = np.where(alone, 1.0, np.where(water > 1.0, math.inf, total))
+            total = np.where(alone, 1.0, np.where(water > 1.0, -math.inf, total))
         else:
             x = x / total[:, None]
         if components[0].mass:
@@ -115,7 +115,7 @@ def mixture_rows(plan: Plan, given: Given) -> Rows:
         good = np.abs(total - 1.0) <= ROUNDING
         for row, sum_ in zip(rows[~good][:1000].tolist(), total[~good].tolist(), strict=False):
             shown = f"the fractions sum to {sum_:.4g}, not to 1"
-            if not math.isfinite(sum_):
+            if math.isnan(sum_) or sum_ == -math.inf:
                 shown = "a negative fraction" if math.isnan(sum_) else "more water than the whole"
             verdicts[row] = plan.verdict(BAD_ROW, shown)
         if np.count_nonzero(~good) > 1000:

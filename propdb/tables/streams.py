@@ -31,6 +31,8 @@ _SIDES = {
 }
 #: A species whose flow differs by more than this between inlets and outlets has reacted [1].
 REACTED = 1e-3
+#: What is not below this is no flow, in any unit [1].
+LARGEST = 1e18
 #: A sensitivity that cancels to this share of its terms is rounding [1].
 ROUNDING = 1e-9
 
@@ -309,7 +311,7 @@ def flows_of(plan: Plan, given: Given, rows: Rows) -> tuple[NDArray[np.float64],
     else:
         assert rows.kinds is not None
         molar = _molar(plan)[rows.kinds]
-    flows = given.flow * unit.factor
+    flows = np.where(np.abs(given.flow) < LARGEST, given.flow, math.nan) * unit.factor
     return (flows / molar if unit.mass else flows), molar
 
 

@@ -10,6 +10,7 @@ point, a pinned table) ask the levels for each distinct temperature.
 from __future__ import annotations
 
 import math
+import re
 from bisect import bisect_left
 from collections.abc import Callable, Mapping, Sequence
 from contextlib import suppress
@@ -35,6 +36,7 @@ FloatArray = NDArray[np.float64]
 #: Uncertainties are computed every so many kelvin and interpolated between [K].
 GRID = 50.0
 _MEMORY = 50_000
+_SPAN = re.compile(r" \S+, \S+ K to \S+, \S+ K(?= is extrapolated)")
 _MIDDLE = -1  # the node of a cell that is its middle
 
 
@@ -183,19 +185,16 @@ class Varying:
             if cell.flag == NO_DATA:
                 continue
             here = rows[mine]
-            total = np.full(len(t), cell.base)
-            for coefficient, equation in cell.members:
-                h = shared.h(equation, here, t)
-                if coefficient == 1.0:
-                    total += h
-                elif coefficient == -1.0:
-                    total -= h
-                else:
-                    total += coefficient * h
+            try:
+                total = _total(cell, here, t, shared)
+            except PropdbError:  # an equation overflows at a temperature of the batch
+                total = _one_by_one(cell, here, t)
+                verdicts[np.arange(size)[mine][np.isnan(total)]] = verdict(NO_DATA, "too extreme a temperature")
             value[mine] = total
             standard[mine] = self._standard(cell, t, run)
             if cell.middle() == T_STANDARD and (unheated := t == T_STANDARD).any():  # nothing is heated there
                 standard[mine] = np.where(unheated, cell.standard, standard[mine])
+        standard[np.isnan(value)] = np.nan
         return value, standard, verdicts
 
     def _prepare(self, cell: _Cell) -> None:
@@ -211,7 +210,8 @@ class Varying:
                     self.used.add(self._ask(0.5 * (t + min(cell.high, 2.0 * t)), None))
             if point.extrapolated:
                 cell.flag = EXTRAPOLATED
-                cell.reason = next((w for w in point.warnings if "extrapolated" in w), "extrapolated")
+                reason = next((w for w in point.warnings if "extrapolated" in w), "extrapolated")
+                cell.reason = _SPAN.sub("", reason)  # rows have other temperatures than the middle
             cell.base = point.value - sum(c * float(e.h(t)) for c, e in cell.members or ())
             cell.standard = point.standard
             cell.parts[_MIDDLE] = point.parts
@@ -324,6 +324,29 @@ class Varying:
             flag = EXTRAPOLATED if point.extrapolated else OK
             reason = next((w for w in point.warnings if "extrapolated" in w), "") if point.extrapolated else ""
             self._memory[(t, p)] = (point.value, point.standard, flag, reason, point.parts)
+
+
+def _total(cell: _Cell, rows: NDArray[np.intp], t: FloatArray, shared: Shared) -> FloatArray:
+    """Values [J/mol] of rows of one cell."""
+    total = np.full(len(t), cell.base)
+    for coefficient, equation in cell.members or ():
+        h = shared.h(equation, rows, t)
+        if coefficient == 1.0:
+            total += h
+        elif coefficient == -1.0:
+            total -= h
+        else:
+            total += coefficient * h
+    return total
+
+
+def _one_by_one(cell: _Cell, rows: NDArray[np.intp], t: FloatArray) -> FloatArray:
+    """The same, NaN where an equation overflows."""
+    total = np.full(len(t), math.nan)
+    for i in range(len(t)):
+        with suppress(PropdbError):
+            total[i] = _total(cell, rows[i : i + 1], t[i : i + 1], Shared(t[i : i + 1], {}))[0]
+    return total
 
 
 def _hashable(pair: tuple[float, float]) -> tuple[float, float]:

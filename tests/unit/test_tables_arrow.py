@@ -8,6 +8,7 @@ import math
 import subprocess
 import sys
 from collections.abc import Iterator
+from decimal import Decimal
 from functools import partial
 from pathlib import Path
 from typing import Any
@@ -459,3 +460,70 @@ def test_a_damaged_sheet_is_one_line(store: propdb.Store, tmp_path: Path, monkey
     gc.collect()
     assert not heard
     assert sorted(path.name for path in tmp_path.iterdir()) == ["in.xlsx", "some.xlsx"]
+
+
+HUGE = {
+    "infinite": (pa.array([1.0, math.inf]), "no enthalpy"),
+    "float": (pa.array([1.0, 1e308]), "the enthalpy is too large"),
+    "integer": (pa.array([1, 2**62]), "the enthalpy is too large"),
+    "unsigned": (pa.array([1, 2**64 - 1], pa.uint64()), "the enthalpy is too large"),
+    "decimal": (pa.array([Decimal("1.25"), Decimal("9" * 36 + ".25")], pa.decimal128(38, 2)), "too large"),
+}
+
+
+@pytest.mark.filterwarnings("error")
+@pytest.mark.parametrize("kind", HUGE)
+def test_a_number_that_is_too_large_is_a_bad_row(store: propdb.Store, tmp_path: Path, kind: str) -> None:
+    column, words = HUGE[kind]
+    table = pa.table({"species": ["methane"] * 2, "h [kJ/kg]": column})
+    pq.write_table(table, tmp_path / "in.parquet")
+    report = store.convert_table(tmp_path / "in.parquet", tmp_path / "out.parquet", to=TO, from_="gas-25C")
+    out = pq.read_table(tmp_path / "out.parquet")
+    assert out.select(table.schema.names).equals(table)
+    assert out.column("flag").to_pylist() == ["ok", "bad row"]
+    assert words in out.column("reason")[1].as_py()
+    assert out.column(2)[1].as_py() is None
+    assert report.flags["bad row"] == 1
+
+
+@pytest.mark.filterwarnings("error")
+def test_numbers_that_are_none_in_any_column(store: propdb.Store, tmp_path: Path) -> None:
+    odd = [1.0, math.inf, -math.inf, math.nan, None, 1e308]
+    table = pa.table(
+        {
+            "species": ["water"] * 6, "phase": ["fluid"] * 6, "T [K]": [500.0] * 6, "p [bar]": odd,
+            "flow [kg/h]": odd[::-1], "side": ["in", "out"] * 3,
+        }
+    )  # fmt: skip
+    pq.write_table(table, tmp_path / "in.parquet")
+    report = store.convert_table(tmp_path / "in.parquet", tmp_path / "out.parquet", to=TO, across=True)
+    assert report.flags == {"ok": 1, "extrapolated": 0, "no data": 0, "bad row": 5}
+    assert sum(stream["rows_left_out"] for stream in report.data["streams"]["streams"]) == 6
+    pq.write_table(table.drop_columns(["p [bar]", "side"]), tmp_path / "in.parquet")
+    options: dict[str, Any] = {"to": TO, "phase": None, "pressure": "1bar", "overwrite": True}
+    report = store.convert_table(tmp_path / "in.parquet", tmp_path / "out.parquet", **options)
+    assert report.data["streams"]["streams"][0]["rows_left_out"] == 5
+
+
+@pytest.mark.parametrize("hot", [1e308, 1e-300])
+def test_an_extreme_temperature_spoils_no_other_row(store: propdb.Store, tmp_path: Path, hot: float) -> None:
+    table = pa.table({"species": ["nitrogen", "methane"] * 2, "phase": ["g"] * 4, "T [K]": [500.0, hot, hot, 700.0]})
+    pq.write_table(table, tmp_path / "in.parquet")
+    report = store.convert_table(tmp_path / "in.parquet", tmp_path / "out.parquet", to=TO, extrapolate=True)
+    out = pq.read_table(tmp_path / "out.parquet").to_pylist()
+    assert [row["flag"] for row in out][::3] == ["ok", "ok"]
+    assert report.flags["ok"] == 2
+    for row in (out[0], out[3]):
+        one = store.enthalpy(row["species"], phase="g", temperature=row["T [K]"], datum=TO)
+        assert row[f"h on {TO} [kJ/mol]"] == pytest.approx(one.value, rel=1e-12)
+    assert not any(" K to " in (row["reason"] or "") for row in out)
+
+
+def test_the_type_of_text_does_not_matter(store: propdb.Store, tmp_path: Path) -> None:
+    for kind in (pa.string(), pa.large_string(), pa.string_view()):
+        table = pa.table({"species": pa.array(["methane", None], kind), "h [kJ/kg]": [1.0, 2.0]})
+        pq.write_table(table, tmp_path / "in.parquet")
+        options: dict[str, Any] = {"to": TO, "from_": "gas-25C", "overwrite": True}
+        report = store.convert_table(tmp_path / "in.parquet", tmp_path / "out.parquet", **options)
+        assert report.flags["ok"] == 1
+        assert pq.read_table(tmp_path / "out.parquet").schema.field("species").type == kind
