@@ -7,7 +7,10 @@ store under the same paths, and the same content in the store.
 from __future__ import annotations
 
 import contextlib
+import logging
+import signal
 from collections.abc import Iterator, Sequence
+from multiprocessing import resource_tracker
 from pathlib import Path
 from typing import Any, NamedTuple
 from uuid import uuid4
@@ -87,13 +90,35 @@ def _client(scheduler: str | None, workers: int) -> Iterator[Any]:
         with client:
             yield client
         return
-    with (
-        distributed.LocalCluster(
-            n_workers=workers, threads_per_worker=1, processes=True, dashboard_address=":0", silence_logs=50
-        ) as cluster,
-        distributed.Client(cluster) as client,
-    ):
+    for name in ("distributed", "tornado", "asyncio"):  # what goes wrong in a task comes back as its value
+        logging.getLogger(name).setLevel(logging.CRITICAL + 1)
+    with contextlib.ExitStack() as stack:
+        with _uninterrupted():
+            cluster = distributed.LocalCluster(
+                n_workers=workers, threads_per_worker=1, processes=True, dashboard_address=":0", silence_logs=50
+            )
+            stack.callback(_close, cluster)
+            client = stack.enter_context(distributed.Client(cluster))
         yield client
+
+
+def _close(cluster: Any) -> None:
+    with contextlib.suppress(AssertionError):  # of a worker that is closing already
+        cluster.close()
+
+
+@contextlib.contextmanager
+def _uninterrupted() -> Iterator[None]:
+    """Start processes that leave Ctrl-C to the one that waits for them, and ends them."""
+    if not hasattr(signal, "pthread_sigmask"):
+        yield
+        return
+    resource_tracker.ensure_running()  # or starting it would let the signal through again
+    before = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})
+    try:
+        yield
+    finally:
+        signal.pthread_sigmask(signal.SIG_SETMASK, before)
 
 
 def spread(

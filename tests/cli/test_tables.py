@@ -91,6 +91,33 @@ def test_an_interrupt_leaves_nothing_behind(default_store: Path, samples: Path) 
     assert sorted(p.name for p in samples.iterdir()) == before
 
 
+@pytest.mark.extras
+@pytest.mark.skipif(sys.platform == "win32", reason="sends a signal the POSIX way")
+@pytest.mark.parametrize("pause", [0.0, 3.0])
+def test_an_interrupt_of_workers_is_quiet(default_store: Path, tmp_path: Path, pause: float) -> None:
+    """Ctrl-C reaches every process of a terminal; only the one that waits says something, and none stays."""
+    pq = pytest.importorskip("pyarrow.parquet")
+    pa = pytest.importorskip("pyarrow")
+    pytest.importorskip("distributed")
+    (tmp_path / "year").mkdir()
+    count = 400_000
+    columns = {"T [K]": [300.0 + i % 500 for i in range(count)], "h [kJ/kg]": [float(i) for i in range(count)]}
+    for i in range(8):
+        pq.write_table(pa.table(columns), tmp_path / "year" / f"{i}.parquet")
+    command = [sys.executable, "-m", "propdb", "convert-table", str(tmp_path / "year"), str(tmp_path / "out")]
+    command += ["--species", "methane", "--from", "gas-25C", "--to", "elements-same-T", "--workers", "1"]
+    run = subprocess.Popen(command, stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True, start_new_session=True)
+    while run.poll() is None and not any(tmp_path.glob(".*.part")):
+        time.sleep(0.02)
+    time.sleep(pause)
+    os.killpg(run.pid, signal.SIGINT)
+    out, err = run.communicate(timeout=60)
+    assert "Traceback" not in err
+    if run.returncode:  # it was not over before
+        assert run.returncode == 130
+        assert [path.name for path in tmp_path.iterdir()] == ["year"]
+
+
 def test_tabulate_shows_phases_and_entries(line: Any) -> None:
     done = line("tabulate water --datum elements-298K --low 80C --high 120C --step 20K")
     assert done.code == 0

@@ -527,3 +527,41 @@ def test_the_type_of_text_does_not_matter(store: propdb.Store, tmp_path: Path) -
         report = store.convert_table(tmp_path / "in.parquet", tmp_path / "out.parquet", **options)
         assert report.flags["ok"] == 1
         assert pq.read_table(tmp_path / "out.parquet").schema.field("species").type == kind
+
+
+def test_a_directory_is_replaced_whole_or_not_at_all(
+    store: propdb.Store, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    import os
+
+    from propdb.tables import output
+
+    (tmp_path / "year").mkdir()
+    pq.write_table(random_table(5), tmp_path / "year" / "a.parquet")
+    (tmp_path / "out").mkdir()
+    (tmp_path / "out" / "old").write_text("old", encoding="utf-8")
+    replace = os.replace
+
+    def full(source: Any, target: Any) -> None:
+        if str(source).endswith(".part") and Path(target).name == "out":
+            raise OSError(28, "No space left on device")
+        replace(source, target)
+
+    monkeypatch.setattr(output.os, "replace", full)
+    with pytest.raises(PropdbError, match="No space left"):
+        store.convert_table(tmp_path / "year", tmp_path / "out", to=TO, overwrite=True)
+    assert sorted(p.name for p in tmp_path.iterdir()) == ["out", "year"]
+    assert [p.name for p in (tmp_path / "out").iterdir()] == ["old"]
+    monkeypatch.undo()
+    store.convert_table(tmp_path / "year", tmp_path / "out", to=TO, overwrite=True)
+    assert sorted(p.name for p in tmp_path.iterdir()) == ["out", "out.propdb.json", "year"]
+    assert [p.name for p in (tmp_path / "out").iterdir()] == ["a.parquet"]
+
+
+@pytest.mark.skipif(sys.platform == "win32", reason="has no named pipes in directories")
+def test_a_pipe_is_refused(store: propdb.Store, tmp_path: Path) -> None:
+    import os
+
+    os.mkfifo(tmp_path / "in.csv")
+    with pytest.raises(InvalidInput, match="neither a file nor a directory"):
+        store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to=TO)
