@@ -300,7 +300,7 @@ def _unusable(plan: Plan, kind: Kind, t: FloatArray, p: FloatArray | None) -> It
         yield np.isnan(t), "no temperature"
         if real:
             yield np.ones(len(t), np.bool_) if p is None else np.isnan(p), "no pressure, which the real fluid needs"
-    if p is not None and (real or saturated):
+    if p is not None and (real or saturated or (evaluate and kind.key.phase == "l")):
         yield ~np.isnan(p) & ~((p > 0.0) & (p < math.inf)), "a pressure that is not above 0"
 
 

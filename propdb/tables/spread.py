@@ -94,9 +94,15 @@ def _client(scheduler: str | None, workers: int) -> Iterator[Any]:
         logging.getLogger(name).setLevel(logging.CRITICAL + 1)
     with contextlib.ExitStack() as stack:
         with _uninterrupted():
-            cluster = distributed.LocalCluster(
-                n_workers=workers, threads_per_worker=1, processes=True, dashboard_address=":0", silence_logs=50
-            )
+            try:
+                cluster = distributed.LocalCluster(
+                    n_workers=workers, threads_per_worker=1, processes=True, dashboard_address=":0", silence_logs=50
+                )
+            except (OSError, RuntimeError, TimeoutError) as error:
+                raise PropdbError(
+                    f"no worker could be started: {error}",
+                    hint='a script that starts workers does so under: if __name__ == "__main__":',
+                ) from None
             stack.callback(_close, cluster)
             client = stack.enter_context(distributed.Client(cluster))
         yield client

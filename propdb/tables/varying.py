@@ -88,6 +88,8 @@ class _Cell:
 
     def middle(self) -> float:
         """The temperature at which the levels are asked [K]: the same whichever row comes first."""
+        if self.only is not None:  # what the others get
+            return max(self.only, default=T_STANDARD) + 1.0
         if self.low < T_STANDARD < self.high:
             return T_STANDARD
         if math.isinf(self.high):
@@ -171,11 +173,13 @@ class Varying:
             if not len(t):
                 continue
             p = None if pressures is None else pressures[mine]
-            if cell.only is not None and not np.isin(t, cell.only).any():
+            if cell.only is not None:
                 if not cell.ready:
                     run(partial(self._prepare, cell))
-                verdicts[mine] = verdict(NO_DATA, cell.reason)
-                continue
+                if cell.flag == NO_DATA and (other := ~np.isin(t, cell.only)).any():
+                    verdicts[np.arange(size)[mine][other]] = verdict(NO_DATA, cell.reason)
+                    mine = np.arange(size)[mine][~other]
+                    t, p = temperatures[mine], None if pressures is None else pressures[mine]
             if cell.members is None:
                 value[mine], standard[mine], verdicts[mine] = self._each(t, p, run, verdict)
                 continue

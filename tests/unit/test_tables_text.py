@@ -310,6 +310,29 @@ def test_rows_of_the_real_fluid_need_a_pressure(convert: Convert) -> None:
     assert rows[2]["reason"] == rows[3]["reason"] == "a pressure that is not above 0"
 
 
+def test_liquid_water_under_pressure_is_liquid(store: propdb.Store, convert: Convert) -> None:
+    """Saturated water at 100 °C has 419.1 kJ/kg, steam at 150 °C and 1 bar 2776.6 kJ/kg: steam tables on IAPWS-95."""
+    text = "T [C],p [bar]\n100,1\n100,1.01325\n100,100\n150,1\n150,5\n25,-1\n25,0\n25,\n"
+    options = {"species": "water", "phase": "l", "to": "steam-triple-point", "unit": "kJ/kg"}
+    _, rows, _ = convert(text, **options)
+    assert [row["flag"] for row in rows] == ["ok", "ok", "ok", "no data", "ok", "bad row", "bad row", "ok"]
+    h = [float(row["h on steam-triple-point [kJ/kg]"] or "nan") for row in rows]
+    assert h[0] == pytest.approx(419.1, abs=0.1)
+    assert h[1] == pytest.approx(419.1, abs=0.1)
+    assert 5.0 < h[2] - h[1] < 10.0  # v dp, 0.00104 m3/kg x 99 bar, less its thermal part
+    assert "it has boiled at this pressure" in rows[3]["reason"]
+    with pytest.raises(PropdbError, match=r"no liquid at 423\.15 K and 1 bar: it boils at 372\.7"):
+        store.enthalpy("water", phase="l", temperature="150C", pressure="1bar", datum="steam-triple-point")
+
+
+def test_the_reason_of_a_row_is_its_own(convert: Convert) -> None:
+    """What is known at one temperature only says so, whichever rows stand beside it."""
+    one = "species,phase,T [C]\nammonia,aq,60\n"
+    reasons = {convert(text)[1][0]["reason"] for text in (one, one + "ammonia,aq,25\n", one + "ammonia,aq,70\n")}
+    assert reasons == {"outside the data; known at 298.15 K only"}
+    assert [row["flag"] for row in convert(one + "ammonia,aq,25\n")[1]] == ["no data", "ok"]
+
+
 def test_gauge_pressure_with_its_atmosphere(store: propdb.Store, convert: Convert) -> None:
     text = "T [C],p [bar(g)]\n250,39\n"
     _, rows, _ = convert(text, species="water", phase="fluid", units=["pressure=bar(g)+1bar"])
