@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 
 from propdb._version import __version__
 from propdb.model.answer import CAUTION
-from propdb.model.text import wrapped
+from propdb.model.text import visible, wrapped
 from propdb.tables.kinds import BAD_ROW, NO_DATA, OK
 
 if TYPE_CHECKING:
@@ -136,7 +136,7 @@ def summary(data: dict[str, Any], target: Path, seconds: float) -> list[str]:
     for r in data["reasons"][:8]:
         file = f" of {r['first_file']}" if "first_file" in r else ""
         first = f"{'first in ' if r['rows'] > 1 else ''}row {r['first_row']:,}{file}"
-        lines += wrapped(f"{r['rows']:,} {r['flag']}: {r['reason'] or 'no reason'} ({first})", "  ", "    ")
+        lines += wrapped(f"{r['rows']:,} {r['flag']}: {visible(r['reason'] or 'no reason')} ({first})", "  ", "    ")
     if len(data["reasons"]) > 8:
         lines.append(f"  and {len(data['reasons']) - 8} more reasons in {target.name}{SIDECAR}")
     return lines + [line for note in data["notes"] for line in wrapped(note, "  ", "    ")]

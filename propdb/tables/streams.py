@@ -15,7 +15,7 @@ from propdb.datum import may_sum
 from propdb.errors import DatumMismatch
 from propdb.levels.parts import add_parts, combined
 from propdb.model.records import Part
-from propdb.model.text import columns, wrapped
+from propdb.model.text import columns, visible, wrapped
 from propdb.tables.scales import flow_unit
 from propdb.units import format_number
 
@@ -335,7 +335,9 @@ def _texts(given: Given, role: str, none: str) -> tuple[NDArray[np.int32], list[
 def lines(found: dict[str, Any]) -> list[str]:
     """The summary for a person."""
     shown = [f"enthalpy flows on {found['datum']}"]
-    rows = [(s["stream"], s["side"] or "", f"{s['enthalpy_flow']:.3f}", "kW") for s in found["streams"]]
+    rows = [
+        (visible(s["stream"]), visible(s["side"] or ""), f"{s['enthalpy_flow']:.3f}", "kW") for s in found["streams"]
+    ]
     if "duty" not in found:
         rows.append(("total", "", f"{found['total']:.3f}", "kW"))
     else:

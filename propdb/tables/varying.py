@@ -11,7 +11,6 @@ from __future__ import annotations
 
 import math
 import re
-from bisect import bisect_left
 from collections.abc import Callable, Mapping, Sequence
 from contextlib import suppress
 from dataclasses import dataclass, field
@@ -22,10 +21,9 @@ import numpy as np
 from numpy.typing import NDArray
 
 from propdb.errors import PropdbError
-from propdb.levels.curves import BOILING_SLACK, PRINTED_SLACK, Curve
-from propdb.levels.engine import Levels
-from propdb.levels.states import MELTING_SLACK
+from propdb.levels.curves import Curve
 from propdb.model.records import SAME_T, T_STANDARD, Datum, Part, Source, Species, State
+from propdb.tables.cells import GRID, Cell, cells_of
 from propdb.tables.kinds import EXTRAPOLATED, NO_DATA, OK, Point, enthalpy_at, out_of_range, shift_at
 from propdb.tables.oracle import Basis
 
@@ -33,8 +31,6 @@ __all__ = ["Shared", "Used", "Varying", "vary_enthalpy", "vary_shift"]
 
 FloatArray = NDArray[np.float64]
 
-#: Uncertainties are computed every so many kelvin and interpolated between [K].
-GRID = 50.0
 _MEMORY = 50_000
 _SPAN = re.compile(r" \S+, \S+ K to \S+, \S+ K(?= is extrapolated)")
 _MIDDLE = -1  # the node of a cell that is its middle
@@ -69,35 +65,6 @@ class Shared:
 
 
 @dataclass
-class _Cell:
-    low: float
-    high: float
-    members: tuple[tuple[float, Any], ...] | None  # (coefficient, equation); None: ask for each temperature
-    ready: bool = False
-    flag: str = OK
-    reason: str = ""
-    base: float = math.nan  # value less the members' own antiderivatives [J/mol]
-    standard: float = math.nan  # standard uncertainty at the middle [J/mol]
-    grid: dict[int, float] = field(default_factory=dict)
-    parts: dict[int, tuple[Part, ...]] = field(default_factory=dict)  # sensitivities at the nodes of the grid
-    only: tuple[float, ...] | None = None  # the few temperatures that are known, where there is no heat capacity [K]
-
-    def node(self, k: int) -> float:
-        """Temperature of a node of the grid, inside the cell [K]."""
-        return min(max(k * GRID, self.low + 1e-6), self.high - 1e-6)
-
-    def middle(self) -> float:
-        """The temperature at which the levels are asked [K]: the same whichever row comes first."""
-        if self.only is not None:  # what the others get
-            return max(self.only, default=T_STANDARD) + 1.0
-        if self.low < T_STANDARD < self.high:
-            return T_STANDARD
-        if math.isinf(self.high):
-            return self.low + 1.0
-        return 0.5 * (self.low + self.high) if self.low > 0.0 else 0.9 * self.high
-
-
-@dataclass
 class Used:
     """What answers stood on."""
 
@@ -123,7 +90,7 @@ class Varying:
         Going up in temperature, without gaps.
     """
 
-    def __init__(self, ask: Callable[[float | None, float | None], Point], cells: Sequence[_Cell]) -> None:
+    def __init__(self, ask: Callable[[float | None, float | None], Point], cells: Sequence[Cell]) -> None:
         self._ask = ask
         self.cells = list(cells)
         self._ends = [cell.high for cell in self.cells]
@@ -201,7 +168,7 @@ class Varying:
         standard[np.isnan(value)] = np.nan
         return value, standard, verdicts
 
-    def _prepare(self, cell: _Cell) -> None:
+    def _prepare(self, cell: Cell) -> None:
         t = cell.middle()
         try:
             point = self._ask(t, None)
@@ -221,7 +188,7 @@ class Varying:
             cell.parts[_MIDDLE] = point.parts
         cell.ready = True
 
-    def _standard(self, cell: _Cell, t: FloatArray, run: Callable[[Callable[[], Any]], Any]) -> FloatArray | float:
+    def _standard(self, cell: Cell, t: FloatArray, run: Callable[[Callable[[], Any]], Any]) -> FloatArray | float:
         if math.isnan(cell.standard):
             return math.nan
         low, high = int(t.min() // GRID), int(t.max() // GRID) + 1
@@ -233,7 +200,7 @@ class Varying:
             return math.nan
         return np.interp(t, [cell.node(k) for k in range(low, high + 1)], known)
 
-    def _fill(self, cell: _Cell, nodes: Sequence[int]) -> None:
+    def _fill(self, cell: Cell, nodes: Sequence[int]) -> None:
         for k in nodes:
             try:
                 point = self._ask(cell.node(k), None)
@@ -330,7 +297,7 @@ class Varying:
             self._memory[(t, p)] = (point.value, point.standard, flag, reason, point.parts)
 
 
-def _total(cell: _Cell, rows: NDArray[np.intp], t: FloatArray, shared: Shared) -> FloatArray:
+def _total(cell: Cell, rows: NDArray[np.intp], t: FloatArray, shared: Shared) -> FloatArray:
     """Values [J/mol] of rows of one cell."""
     total = np.full(len(t), cell.base)
     for coefficient, equation in cell.members or ():
@@ -344,7 +311,7 @@ def _total(cell: _Cell, rows: NDArray[np.intp], t: FloatArray, shared: Shared) -
     return total
 
 
-def _one_by_one(cell: _Cell, rows: NDArray[np.intp], t: FloatArray) -> FloatArray:
+def _one_by_one(cell: Cell, rows: NDArray[np.intp], t: FloatArray) -> FloatArray:
     """The same, NaN where an equation overflows."""
     total = np.full(len(t), math.nan)
     for i in range(len(t)):
@@ -367,7 +334,7 @@ def vary_shift(basis: Basis, species: Species, source: Datum, target: Datum, *, 
         return shift_at(levels, species, source, target, phase=phase, temperature=t)
 
     signed = [(sign, d) for sign, d in ((1.0, source), (-1.0, target)) if d.temperature == SAME_T]
-    return Varying(ask, _cells(levels, species, signed, phase=phase, own=None))
+    return Varying(ask, cells_of(levels, species, signed, phase=phase, own=None))
 
 
 def vary_enthalpy(
@@ -391,90 +358,6 @@ def vary_enthalpy(
         or (track is not None and not isinstance(track, Curve))
         or levels._tables.get(species.name)
     ):
-        return Varying(ask, [_Cell(0.0, math.inf, None)])
+        return Varying(ask, [Cell(0.0, math.inf, None)])
     signed = [(-1.0, target)] if target.temperature == SAME_T else []
-    return Varying(ask, _cells(levels, species, signed, phase=phase, own=state))
-
-
-def _cells(
-    levels: Levels, species: Species, signed: Sequence[tuple[float, Datum]], *, phase: str, own: State | None
-) -> list[_Cell]:
-    """Cut the axis wherever a member changes its equation, its form, or whether it can be at all."""
-    schedule = sorted(
-        {
-            upper
-            for _, datum in signed
-            for element, _ in species.composition
-            for upper, _ in datum.schedule.get(element, ())
-            if math.isfinite(upper)
-        }
-    )
-    cells: list[_Cell] = []
-    for low, high in zip([0.0, *schedule], [*schedule, math.inf], strict=True):
-        inside = _Cell(low, high, None).middle()
-        members: list[tuple[float, str, str, str]] = []
-        if own is not None:
-            members.append((1.0, species.name, own.phase, own.form))
-        try:
-            for sign, datum in signed:
-                for term in levels.zero_of(datum, species, phase=phase, temperature=inside).terms:
-                    if term.zero.temperature == SAME_T:
-                        state = State(term.zero.phase, None, term.zero.form)
-                        state = levels.check(term.species, state)
-                        members.append((sign * float(term.coefficient), term.species, state.phase, state.form))
-        except PropdbError:
-            cells.append(_Cell(low, high, None))
-            continue
-        cells += _pieces(levels, low, high, members)
-    return cells
-
-
-def _pieces(levels: Levels, low: float, high: float, members: Sequence[tuple[float, str, str, str]]) -> list[_Cell]:
-    tracks = []
-    marks: set[float] = set()
-    for coefficient, name, phase, form in members:
-        tree = levels.tree(name)
-        track = tree.tracks.get((phase, form))
-        if track is None and not levels._tables.get(name):
-            known = tuple(n.temperature for n in tree.nodes if (n.phase, n.form) == (phase, form))
-            return [_Cell(low, high, None, only=known)]
-        if not isinstance(track, Curve) or levels._tables.get(name):
-            return [_Cell(low, high, None)]
-        tracks.append((coefficient, track))
-        for i, piece in enumerate(track.pieces):
-            marks |= {piece.tmin - PRINTED_SLACK, piece.tmax + PRINTED_SLACK}
-            if i + 1 < len(track.pieces):
-                marks.add(track._border(i))
-        if phase == "l":
-            for quantity, slack in (("Tm", -MELTING_SLACK), ("Tc", 0.0)):
-                point = levels.value(name, quantity)
-                if point is not None:
-                    marks.add(point + slack)
-            if track.boiling is not None:
-                marks.add(track.boiling + BOILING_SLACK)
-    ends = [low, *sorted(t for t in marks if low < t < high), high]
-    cells = []
-    for a, b in zip(ends, ends[1:], strict=False):
-        inside = _Cell(a, b, None).middle()
-        chosen = [(coefficient, _equation(track, inside)) for coefficient, track in tracks]
-        complete = all(equation is not None for _, equation in chosen)
-        cells.append(_Cell(a, b, _merged(chosen) if complete else None))
-    return cells
-
-
-def _equation(track: Curve, t: float) -> Any:
-    """The equation that serves a temperature [K]; None where a heat capacity alone does not say the enthalpy."""
-    if track.phase == "l" and track.boiling is not None and t > track.boiling + BOILING_SLACK:
-        return None
-    borders = [track._border(i) for i in range(len(track.pieces) - 1)]
-    equation = track.pieces[bisect_left(borders, t)].equation
-    return None if getattr(equation, "unstated", ()) else equation
-
-
-def _merged(members: Sequence[tuple[float, Any]]) -> tuple[tuple[float, Any], ...]:
-    """Members that move along one equation are one; those that cancel are none."""
-    found: dict[int, tuple[float, Any]] = {}
-    for coefficient, equation in members:
-        old = found.get(id(equation), (0.0, equation))
-        found[id(equation)] = (old[0] + coefficient, equation)
-    return tuple((c, e) for c, e in found.values() if c)
+    return Varying(ask, cells_of(levels, species, signed, phase=phase, own=state))

@@ -134,3 +134,20 @@ def test_tabulate_refuses_in_one_line(line: Any, tmp_path: Path) -> None:
     assert "watr" in line("tabulate watr --datum elements-298K").problem
     assert "kW" in line("tabulate water --datum elements-298K --unit kW").problem
     assert ".doc" in line("tabulate", "water", "--datum", "elements-298K", "--out", str(tmp_path / "x.doc")).problem
+
+
+def test_tabulate_tells_why_below_the_table(line: Any) -> None:
+    done = line("tabulate iron iron --datum elements-298K --low 300K --high 1900K --step 400K")
+    assert done.code == 0
+    assert max(map(len, done.out.splitlines())) <= 100
+    assert "no data (1)" in done.out
+    assert "\n(1) iron, cr (alpha): the heat capacity does not reach 1100 K" in done.out
+    assert done.out.count("300.00") == 1
+
+
+@pytest.mark.extras
+def test_tabulate_to_a_file_is_summed_up(line: Any, samples: Path) -> None:
+    done = line("tabulate water --datum elements-298K --low 80C --high 120C --step 20K --out water.csv")
+    assert done.out.splitlines()[0] == "water.csv: 5 rows: 5 ok"
+    assert len(done.out.splitlines()) < 6
+    assert (samples / "water.csv").read_text(encoding="utf-8").count("\n") == 6
