@@ -174,6 +174,17 @@ def bind(
     return Layout(tuple(names), columns, components)
 
 
+def check_header(rows: Iterable[Sequence[str]], where: str) -> None:
+    """Refuse a first row that names no columns where a later one does. Raises InvalidInput."""
+    for number, names in enumerate(rows, start=1):
+        if looks_like_header(names):
+            if number == 1:
+                return
+            raise InvalidInput(
+                f"its first row names no columns, and row {number} does", where=where, hint="delete the rows above it"
+            )
+
+
 def looks_like_header(names: Sequence[str]) -> bool:
     """Do two or more names of a row say what their columns are?"""
     roles = [role for role, words in ROLES.items() if any(_answers(name, role, words) for name in names)]

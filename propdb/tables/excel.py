@@ -22,7 +22,7 @@ from numpy.typing import NDArray
 
 from propdb.errors import InvalidInput
 from propdb.tables.batches import TOO_LARGE
-from propdb.tables.columns import looks_like_header
+from propdb.tables.columns import check_header
 from propdb.tables.decimals import MISSING
 from propdb.tables.extras import need
 from propdb.tables.kinds import BAD_ROW
@@ -107,20 +107,17 @@ def _rows(sheet: Any, path: Path) -> Iterator[tuple[Any, ...]]:
         raise InvalidInput(f"cannot be read as a workbook: {why}", where=str(path), hint="save it anew") from None
 
 
-def _head(rows: Iterator[tuple[Any, ...]], path: Path) -> tuple[tuple[Any, ...], tuple[str, ...], list[Any]]:
+def _head(
+    rows: Iterator[tuple[Any, ...]], path: Path, *, search: bool
+) -> tuple[tuple[Any, ...], tuple[str, ...], list[Any]]:
     """The first row, its names, and rows that were read beyond it.
 
     Raises InvalidInput for an empty sheet, or where a later row looks like the header and the first does not.
     """
     head, *beyond = [*islice(rows, _SEARCHED)] or [()]
     names = _names(head)
-    found = next((i for i, row in enumerate(beyond, start=2) if looks_like_header(_names(row))), None)
-    if found is not None and not looks_like_header(names):
-        raise InvalidInput(
-            f"its first row names no columns, and row {found} does",
-            where=str(path),
-            hint="delete the rows above the header",
-        )
+    if search:
+        check_header((_names(row) for row in (head, *beyond)), str(path))
     if not any(names):
         raise InvalidInput("the first row is empty", where=str(path), hint="it names the columns")
     return head, names, beyond
@@ -149,7 +146,7 @@ def _convert_excel(oracle: Oracle, request: Request, source: Path, part: Path, p
         sheet = _sheet(book, request.sheet, source)
         total = max(int(sheet.max_row or 1) - 1, 1)
         rows = _rows(sheet, source)
-        head, names, beyond = _head(rows, source)
+        head, names, beyond = _head(rows, source, search=not request.columns)
         plan = make_plan(oracle, request, names, where=source.name)
         tally = _tally(plan, request)
         out = Workbook(write_only=True)

@@ -12,9 +12,10 @@ from typing import NamedTuple
 from propdb.errors import InvalidInput
 from propdb.model.records import SAME_T
 from propdb.tables.buffers import arrow
-from propdb.tables.columns import Layout, bind, listed
+from propdb.tables.columns import Layout, bind, check_header, listed
 from propdb.tables.core import Plan, Settings
 from propdb.tables.delimited import convert_delimited, open_delimited
+from propdb.tables.lines import first_rows
 from propdb.tables.mixtures import check_components
 from propdb.tables.oracle import Oracle
 from propdb.tables.output import HashedWriter, Whole, check_paths, sha256_of
@@ -252,6 +253,8 @@ def _delimited(oracle: Oracle, request: Request, source: Path, part: Path, progr
     arrow()
     with source.open("rb") as file, part.open("wb") as raw:
         given = open_delimited(source, file, comma=request.comma)
+        if not request.columns:
+            check_header(first_rows(given.head, given.dialect.delimiter), source.name)
         plan = make_plan(oracle, request, given.head.names, where=source.name)
         tally = _tally(plan, request)
         out = HashedWriter(raw)

@@ -463,6 +463,7 @@ REFUSED: list[tuple[str | bytes, dict[str, Any], type[PropdbError], tuple[str, .
         ("no column of water", "--composition"),
     ),
     (GOOD, {"composition": "dry"}, InvalidInput, ("--composition",)),
+    ("Stream report\n\n" + GOOD, {}, InvalidInput, ("row 3 does", "delete the rows above")),
     ("species,datum,h [kJ/kg] [kJ/mol]\nmethane,gas-25C,1\n", {}, InvalidInput, ("two units", "[kJ/mol]")),
     (
         "species,phase,T [C],p [barg]\nwater,fluid,250,9\n",
