@@ -514,6 +514,23 @@ def test_paths_are_refused(store: propdb.Store, tmp_path: Path) -> None:
     assert sorted(p.name for p in tmp_path.iterdir()) == ["in.csv", "link.csv", "there.csv"]
 
 
+@pytest.mark.parametrize("cell", ["1.5", "x"])
+def test_a_very_long_cell(convert: Convert, cell: str) -> None:
+    long = "a" * 200_000
+    report, _, raw = convert(f"h [kJ/kg],{long}\n{cell},{long}\n2.5,b\n", from_="gas-25C", species="nitrogen")
+    assert report.flags["ok"] == (2 if cell == "1.5" else 1)
+    assert raw.splitlines()[1].startswith(f"{cell},{long},".encode())
+
+
+def test_names_from_a_file_do_not_reach_the_terminal_raw(convert: Convert) -> None:
+    text = (
+        'stream,species,datum,h [kJ/mol],flow [mol/s]\n"\x1b[31mred\n",nitrogen,gas-25C,1.0,1\n,\x1b[0m,gas-25C,1.0,1\n'
+    )
+    report, _, _ = convert(text, to="gas-25C")
+    assert "\x1b" not in str(report)
+    assert "\\x1b[31mred" in str(report)
+
+
 def test_an_interrupt_leaves_nothing(store: propdb.Store, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     from propdb.tables.progress import Progress
 
