@@ -115,7 +115,7 @@ class Tables(Core):
         scheduler : str, optional
             Address of a Dask scheduler, for a directory of Parquet: each task converts one file.
         workers : int, optional
-            The same with so many processes on this machine.
+            The same with so many processes on this machine; a script calls it under ``if __name__ == "__main__"``.
         progress : callable, optional
             Gets a line now and then: share, rows, rate [rows/s] and time left.
 

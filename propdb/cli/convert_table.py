@@ -56,7 +56,11 @@ def convert_table(
     ] = None,
     units: Annotated[
         list[str] | None,
-        _option("--units", "ROLE=UNIT", "Unit of the temperature, pressure or flow column: temperature=C."),
+        _option(
+            "--units",
+            "ROLE=UNIT",
+            "Unit of a temperature, pressure or flow column: temperature=C, pressure=barg+1.01325bar.",
+        ),
     ] = None,
     composition: Annotated[
         str, _option("--composition", "wet|dry", "dry: fractions but that of water sum to 1; water is of the whole.")

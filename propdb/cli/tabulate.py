@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections import Counter
 from typing import TYPE_CHECKING, Annotated
 
 import typer
@@ -62,15 +63,28 @@ def tabulate(
         source=source,
         extrapolate=extrapolate,
     )
-    call.show(table.as_dict, lambda: text(table))
+    call.show(table.as_dict, lambda: text(table) if out is None else written(table, out))
+
+
+def written(table: Tabulation, out: str) -> str:
+    """What a person reads of a table that went to a file."""
+    flags = Counter(line.flag for line in table.lines)
+    count = f"{len(table.lines):,} {'row' if len(table.lines) == 1 else 'rows'}"
+    shown = [f"{out}: {count}: {', '.join(f'{times:,} {flag}' for flag, times in flags.items())}"]
+    shown += wrapped(f"enthalpy on {table.datum}: {table.sentence}", "  ", "    ")
+    for reason, times in Counter(line.reason for line in table.lines if line.reason).most_common(8):
+        shown += wrapped(f"{times:,}: {reason}", "  ", "    ")
+    return "\n".join(shown)
 
 
 def text(table: Tabulation) -> str:
     """The table for a terminal: entries by the first characters of their ids."""
     from propdb.model.cite import text as cite
+    from propdb.tables.decimals import uncertainty_text
     from propdb.units import enthalpy_decimals, format_number, parse_unit
 
     places = enthalpy_decimals(parse_unit(table.unit))
+    reasons = {reason: i for i, reason in enumerate(dict.fromkeys(x.reason for x in table.lines if x.reason), start=1)}
     rows: list[tuple[str, ...]] = [
         ("species", "phase", table.headers[3], f"h [{table.unit}]", "u", f"cp [{table.cp_unit}]", "", "", "entries")
     ]
@@ -82,16 +96,18 @@ def text(table: Tabulation) -> str:
                 phase,
                 format_number(line.shown, decimals=2),
                 "" if line.h is None else format_number(line.h, decimals=places),
-                "" if line.uncertainty is None else format_number(line.uncertainty, significant=2),
+                "" if line.uncertainty is None else uncertainty_text(line.uncertainty),
                 "" if line.cp is None else format_number(line.cp, significant=5),
                 f"* {line.mark}" if line.mark else "",
-                "" if line.flag == "ok" else f"{line.flag}: {line.reason}",
+                "" if line.flag == "ok" else f"{line.flag} ({reasons.get(line.reason, 0)})",
                 " ".join(entry[:8] for entry in line.entries if not entry.startswith("model:")),
             )
         )
     shown = [*wrapped(f"Enthalpy on {table.datum}: {table.sentence}"), ""]
     shown += columns(rows, right=(2, 3, 4, 5))
     shown += ["", *wrapped("u: standard uncertainty; empty where an entry states none. *: both sides of a transition.")]
+    for reason, i in reasons.items():
+        shown += wrapped(f"({i}) {reason}", "", "    ")
     shown += ["", "Sources"]
     for key, source in table.sources.items():
         shown += [f"  {key}", *wrapped(cite(source), "    ")]

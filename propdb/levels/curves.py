@@ -380,8 +380,7 @@ class Formulation:
         if state.phase == "l" and not state.saturated and state.pressure is None:
             return water.liquid_enthalpy(temperature=t)
         if state.phase == "l" and state.saturated != "liquid" and state.pressure is not None:
-            p = state.pressure
-            return water.enthalpy(temperature=t, pressure=p)
+            return water.pressed_liquid_enthalpy(temperature=t, pressure=state.pressure, slack=BOILING_SLACK)
         return water.enthalpy(temperature=t, pressure=state.pressure, saturated=state.saturated)
 
     def legs(self, start: State, end: State) -> list[Leg]:

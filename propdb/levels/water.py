@@ -192,3 +192,21 @@ def liquid_enthalpy(*, temperature: float) -> float:
         return h_sat
     rho = density(temperature=temperature, pressure=1e5, liquid=True)
     return _at(temperature, rho)[0] * M_WATER
+
+
+def pressed_liquid_enthalpy(*, temperature: float, pressure: float, slack: float) -> float:
+    """Enthalpy [J/mol] of liquid water at temperature [K] and pressure [Pa].
+
+    A boiling point is often given to a degree, so up to ``slack`` [K] above it the liquid is taken as overheated.
+    Raises NoSuchState beyond.
+    """
+    p_sat = saturation(temperature=temperature)[0]
+    if pressure < p_sat:
+        boils = saturation_temperature(pressure=pressure)
+        if temperature > boils + slack:
+            raise NoSuchState(
+                f"water is no liquid at {temperature:.6g} K and {pressure / 1e5:.6g} bar: it boils at {boils:.6g} K",
+                hint="it has boiled at this pressure; use --phase fluid with --pressure",
+            )
+    rho = density(temperature=temperature, pressure=pressure, liquid=True)
+    return _at(temperature, rho)[0] * M_WATER

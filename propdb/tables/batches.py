@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
 from typing import TYPE_CHECKING, Any, NamedTuple
 
 import numpy as np
@@ -11,13 +10,17 @@ from numpy.typing import NDArray
 
 from propdb.errors import InvalidInput
 from propdb.tables.buffers import arrow, codes_of, dictionary_of, floats, number_array, text_array, valid
-from propdb.tables.kinds import BAD_ROW, EXTRAPOLATED, OK
+from propdb.tables.decimals import MOST_PLACES
+from propdb.tables.kinds import BAD_ROW
 from propdb.tables.scales import pressure_scale, temperature_scale
 
 if TYPE_CHECKING:
     from propdb.tables.core import Given, Plan, Rows
 
 __all__ = ["Done", "added_fields", "check_types", "convert_arrow", "read"]
+
+#: An enthalpy that is no number of a table, in any unit; text is read up to here, too.
+TOO_LARGE = 10.0**MOST_PLACES
 
 _KEYS = ("species", "datum", "phase", "form")
 
@@ -38,7 +41,12 @@ def check_types(schema: Any, plan: Plan, *, where: str) -> None:
         kind = schema.field(column.index).type
         value = kind.value_type if types.is_dictionary(kind) else kind
         if role in (*_KEYS, "stream", "side"):
-            right = types.is_string(value) or types.is_large_string(value) or types.is_null(value)
+            right = (
+                types.is_string(value)
+                or types.is_large_string(value)
+                or types.is_string_view(value)
+                or types.is_null(value)
+            )
             wanted = "text"
         else:
             right = types.is_floating(kind) or types.is_integer(kind) or types.is_decimal(kind) or types.is_null(kind)
@@ -69,7 +77,7 @@ def read(batch: Any, plan: Plan) -> Given:
     if (column := layout.get("temperature")) is not None:
         t = temperature_scale(column.unit, column.name)(floats(batch.column(column.index)))
     if (column := layout.get("pressure")) is not None:
-        p = floats(batch.column(column.index)) * pressure_scale(column.unit, column.name)
+        p = pressure_scale(column.unit, column.name)(floats(batch.column(column.index)))
     if layout.components:
         fractions = np.empty((batch.num_rows, len(layout.components)))
         for place, component in enumerate(layout.components):
@@ -130,17 +138,22 @@ def added_fields(schema: Any, plan: Plan) -> list[Any]:
 
 def _wider(kind: Any, plan: Plan) -> Any:
     digits = plan.settings.digits
-    return arrow().decimal128(38, kind.scale if digits is None else digits)
+    return arrow().decimal128(38, min(kind.scale, MOST_PLACES) if digits is None else digits)
 
 
 def _add(given: NDArray[np.float64] | None, rows: Rows, plan: Plan) -> tuple[NDArray[np.float64], NDArray[np.int32]]:
     """``(h * scale + shift) / scale``, in the order of the scalar answers."""
     if given is None:
         return rows.value / rows.scale, rows.verdicts
-    h = given * rows.scale
-    h += rows.value
-    h /= rows.scale
+    with np.errstate(over="ignore", invalid="ignore"):
+        h = given * rows.scale
+        h += rows.value
+        h /= rows.scale
     verdicts = rows.verdicts
+    large = np.abs(h) >= TOO_LARGE
+    if large.any():
+        h[large] = math.nan
+        verdicts = np.where(large, plan.verdict(BAD_ROW, "the enthalpy is too large"), verdicts).astype(np.int32)
     bad = ~np.isfinite(given)
     if bad.any():
         h[bad] = math.nan
@@ -152,10 +165,11 @@ def _decimal(
     array: Any, rows: Rows, plan: Plan
 ) -> tuple[Any, NDArray[np.float64], NDArray[np.int32], NDArray[np.float64]]:
     """Decimal numbers stay decimal: the shift is rounded to their decimals and added exactly."""
-    from decimal import Decimal
+    from decimal import Context, Decimal
 
+    exact = Context(prec=200)
     kind = _wider(array.type, plan)
-    ten = Decimal(1).scaleb(-kind.scale)
+    ten, most = Decimal(1).scaleb(-kind.scale), Decimal(TOO_LARGE)
     shift = rows.value / rows.scale
     there = valid(array)
     bad = np.zeros(len(array), np.bool_) if there is None else ~there
@@ -163,14 +177,19 @@ def _decimal(
     if bad.any():
         verdicts = np.where(bad, plan.verdict(BAD_ROW, "no enthalpy"), verdicts).astype(np.int32)
     lost = bad | np.isnan(shift)
-    numbers = [None if lost[i] else array[i].as_py() + Decimal(repr(float(shift[i]))) for i in range(len(array))]
+    large = np.zeros(len(array), np.bool_)
     words = np.zeros(2 * len(array), np.uint64)
     h = np.full(len(array), math.nan)
-    for i, number in enumerate(numbers):
-        if number is not None:
-            scaled = int(number.quantize(ten).scaleb(kind.scale))
-            words[2 * i], words[2 * i + 1] = scaled & (2**64 - 1), (scaled >> 64) & (2**64 - 1)
-            h[i] = float(number)
+    for i in np.flatnonzero(~lost).tolist():
+        number = exact.add(array[i].as_py(), Decimal(repr(float(shift[i]))))
+        if abs(number) >= most:
+            large[i] = lost[i] = True
+            continue
+        scaled = int(exact.scaleb(exact.quantize(number, ten), kind.scale))
+        words[2 * i], words[2 * i + 1] = scaled & (2**64 - 1), (scaled >> 64) & (2**64 - 1)
+        h[i] = float(number)
+    if large.any():
+        verdicts = np.where(large, plan.verdict(BAD_ROW, "the enthalpy is too large"), verdicts).astype(np.int32)
     return number_array(words.view("V16"), kind, lost), h, verdicts, shift
 
 
@@ -184,15 +203,3 @@ def _flags(plan: Plan, verdicts: NDArray[np.int32]) -> list[Any]:
         number_array(verdicts, pa.int32(), none[verdicts]), text_array([reason for _, reason in table]), safe=False
     )
     return [dictionary_of(to_flag[verdicts], flags), reason]
-
-
-def count(plan: Plan, verdicts: NDArray[np.int32], counts: dict[int, int]) -> None:
-    """Add the verdicts of a batch to running counts."""
-    for number, times in enumerate(np.bincount(verdicts).tolist()):
-        if times:
-            counts[number] = counts.get(number, 0) + times
-
-
-def worst(flags: Sequence[str]) -> str:
-    """The worst of several flags."""
-    return next((f for f in (BAD_ROW, "no data", EXTRAPOLATED) if f in flags), OK)

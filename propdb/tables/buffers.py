@@ -79,7 +79,7 @@ def floats(array: Any) -> NDArray[np.float64]:
     if pa.types.is_null(array.type):
         return np.full(len(array), np.nan)
     if array.type != pa.float64():
-        array = array.cast(pa.float64())
+        array = array.cast(pa.float64(), safe=False)  # an integer beyond 2**53 loses its last digits
     values: NDArray[np.float64] = view(array, np.float64)
     there = valid(array)
     return values if there is None else np.where(there, values, np.nan)

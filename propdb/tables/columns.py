@@ -74,6 +74,12 @@ class Layout:
         return sorted({c.index for c in self.columns.values()} | {c.index for c in self.components})
 
 
+def _two_units(header: str) -> bool:
+    name, second = split_unit(header)
+    name, first = split_unit(name)
+    return bool(name and first and second)
+
+
 def split_unit(header: str) -> tuple[str, str]:
     """``h [kJ/kg]`` or ``T (°C)`` into name and unit; the unit is "" where none is written."""
     found = _UNIT.fullmatch(header)
@@ -168,8 +174,27 @@ def bind(
     return Layout(tuple(names), columns, components)
 
 
+def check_header(rows: Iterable[Sequence[str]], where: str) -> None:
+    """Refuse a first row that names no columns where a later one does. Raises InvalidInput."""
+    for number, names in enumerate(rows, start=1):
+        if looks_like_header(names):
+            if number == 1:
+                return
+            raise InvalidInput(
+                f"its first row names no columns, and row {number} does", where=where, hint="delete the rows above it"
+            )
+
+
+def looks_like_header(names: Sequence[str]) -> bool:
+    """Do two or more names of a row say what their columns are?"""
+    roles = [role for role, words in ROLES.items() if any(_answers(name, role, words) for name in names)]
+    return len(roles) + any(_COMPONENT.fullmatch(name) is not None for name in names) >= 2
+
+
 def _answers(header: str, role: str, words: tuple[str, ...]) -> bool:
     name, _ = split_unit(header)
+    if _two_units(header):
+        name, _ = split_unit(name)
     if role == "temperature" and name not in _SAME_CASE and name.lower() == "t":
         return False
     return name.lower() in words
@@ -196,6 +221,8 @@ def listed(names: Sequence[str]) -> str:
 
 
 def _column(role: str, index: int, header: str, units: Mapping[str, str], where: str) -> Column:
+    if _two_units(header):
+        raise InvalidInput(f"two units for the {role} in the header {header!r}", where=where, hint="leave one out")
     _, unit = split_unit(header)
     given = units.get(role, "")
     if unit and given and not _same_unit(role, unit, given):
@@ -204,7 +231,7 @@ def _column(role: str, index: int, header: str, units: Mapping[str, str], where:
             where=where,
             hint="leave the option out, or correct the header",
         )
-    return Column(role, index, header, unit or given)
+    return Column(role, index, header, given or unit)
 
 
 def _same_unit(role: str, first: str, second: str) -> bool:
@@ -213,6 +240,8 @@ def _same_unit(role: str, first: str, second: str) -> bool:
     from propdb.units import parse_unit
 
     try:
+        if role == "pressure" and second.partition("+")[0].strip() == first:
+            return True  # p [barg] and --units pressure=barg+1.01325bar
         return role == "enthalpy" and parse_unit(first) == parse_unit(second)
     except PropdbError:
         return False

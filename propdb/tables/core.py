@@ -11,7 +11,7 @@ A plan can be pickled; where it arrives, the store is opened anew.
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from threading import Lock
 from typing import Any, NamedTuple
@@ -108,6 +108,10 @@ class Plan:
     def stamp(self) -> str:
         """Content hash and log head of the store."""
         return self.oracle.ask(lambda basis: basis.stamp)
+
+    def run(self, question: Callable[[], Any]) -> Any:
+        """Call a function in the thread of the oracle."""
+        return self.oracle.ask(lambda _: question())
 
     def verdict(self, flag: str, reason: str = "") -> int:
         """The number of a flag with its reason."""
@@ -224,6 +228,17 @@ def compute(plan: Plan, given: Given) -> Rows:
     return Rows(values, standards, scales, verdicts, kinds, False)
 
 
+def conditions(plan: Plan, given: Given) -> tuple[FloatArray, FloatArray | None]:
+    """Temperature [K] and pressure [Pa] of every row, by column or by option."""
+    settings = plan.settings
+    t, p = given.temperature, given.pressure
+    if t is None:
+        t = np.full(given.rows, math.nan if settings.temperature is None else settings.temperature)
+    if p is None and settings.pressure is not None:
+        p = np.full(given.rows, settings.pressure)
+    return t, p
+
+
 def vary(
     plan: Plan,
     given: Given,
@@ -234,40 +249,59 @@ def vary(
     verdicts: NDArray[np.int32],
 ) -> None:
     """Fill in the rows whose kind depends on T."""
-    settings = plan.settings
-    t = given.temperature
-    if t is None:
-        t = np.full(given.rows, math.nan if settings.temperature is None else settings.temperature)
-    p = given.pressure
-    if p is None and settings.pressure is not None:
-        p = np.full(given.rows, settings.pressure)
+    t, p = conditions(plan, given)
     usable = (t > 0.0) & (t < math.inf)
-    may_lack = bool(settings.saturated) and p is not None
     shared = Shared(np.where(usable & (t < 1e6) & (t > 1.0), t, 298.15), plan.users)
     whole = len(varying) == 1 and bool((kinds == varying[0]).all())
     order = None if whole else np.argsort(kinds.astype(np.int16) if len(plan.kinds) < 2**15 else kinds, kind="stable")
     sorted_kinds = kinds if order is None else kinds[order]
-
-    def run(question: Callable[[], Any]) -> Any:
-        return plan.oracle.ask(lambda _: question())
 
     for number in dict.fromkeys(varying.tolist()):
         if order is None:
             rows = np.arange(given.rows)
         else:
             rows = order[np.searchsorted(sorted_kinds, number) : np.searchsorted(sorted_kinds, number, side="right")]
-        good = usable[rows]
-        if not may_lack and not good.all():
-            bad = rows[~good]
-            verdicts[bad] = plan.verdict(BAD_ROW, "no temperature above 0 K")
-            values[bad] = standards[bad] = math.nan
+        good = np.ones(len(rows), np.bool_)
+        for bad, reason in _unusable(plan, plan.kinds[number], t[rows], None if p is None else p[rows]):
+            verdicts[rows[good & bad]] = plan.verdict(BAD_ROW, reason)
+            good &= ~bad
+        if not good.all():
+            values[rows[~good]] = standards[rows[~good]] = math.nan
             rows = rows[good]
         if not len(rows):
             continue
         varying_ = plan.kinds[number].varying
         assert varying_ is not None
-        result = varying_.at(rows, t[rows], None if p is None else p[rows], shared, run, plan.verdict)
+        result = varying_.at(rows, t[rows], None if p is None else p[rows], shared, plan.run, plan.verdict)
         values[rows], standards[rows], verdicts[rows] = result
+
+
+def needs_state(plan: Plan, rows: Rows) -> NDArray[np.bool_]:
+    """Which rows depend on temperature and pressure: in the others those may be anything."""
+    varies = plan.arrays()[5]
+    if rows.mix is not None:
+        return np.asarray(((rows.mix[0] > 0.0) & varies[rows.mix[1]]).any(axis=1), np.bool_)
+    assert rows.kinds is not None
+    return varies[rows.kinds]
+
+
+def _unusable(plan: Plan, kind: Kind, t: FloatArray, p: FloatArray | None) -> Iterator[tuple[NDArray[np.bool_], str]]:
+    """Which rows do not say a state, and why; temperatures in K, pressures in Pa."""
+    cold = ~np.isnan(t) & ~((t > 0.0) & (t < math.inf))
+    yield cold, "a temperature that is not above 0 K"
+    evaluate = plan.settings.evaluate  # a shift depends on nothing but the temperature
+    real, saturated = evaluate and kind.key.phase == "fluid", evaluate and bool(plan.settings.saturated)
+    if saturated:
+        lacks = np.isnan(t) if p is None else np.isnan(t) & np.isnan(p)
+        yield lacks, "no temperature" if p is None else "neither a temperature nor a pressure"
+        if p is not None:
+            yield ~np.isnan(t) & ~np.isnan(p), "a saturated state has a temperature or a pressure, not both"
+    else:
+        yield np.isnan(t), "no temperature"
+        if real:
+            yield np.ones(len(t), np.bool_) if p is None else np.isnan(p), "no pressure, which the real fluid needs"
+    if p is not None and (real or saturated or (evaluate and kind.key.phase == "l")):
+        yield ~np.isnan(p) & ~((p > 0.0) & (p < math.inf)), "a pressure that is not above 0"
 
 
 def added_names(plan: Plan) -> list[str]:

@@ -16,7 +16,7 @@ from propdb.units import EnthalpyUnit, parse_unit
 
 if TYPE_CHECKING:
     from propdb.tables.oracle import Basis
-    from propdb.tables.varying import Varying
+    from propdb.tables.varying import Used, Varying
 
 __all__ = ["BAD_ROW", "EXTRAPOLATED", "NO_DATA", "OK", "Key", "Kind", "Point", "make_kind", "one_line", "shift_at"]
 
@@ -44,6 +44,7 @@ class Point(NamedTuple):
     parts: tuple[Part, ...]
     entries: tuple[str, ...]
     sources: Mapping[str, Source]
+    origins: Mapping[str, str]  # source of each entry
     warnings: tuple[str, ...]
     legs: int
 
@@ -77,10 +78,20 @@ class Kind:
     parts: tuple[Part, ...] = ()
     entries: tuple[str, ...] = ()
     sources: Mapping[str, Source] = field(default_factory=dict)
+    origins: Mapping[str, str] = field(default_factory=dict)  # source of each entry
     warnings: tuple[str, ...] = ()
     near: tuple[str, ...] = ()  # what an unknown name may have meant
     unknown: bool = False
     varying: Varying | None = None
+
+    def used(self) -> Used:
+        """The entries and sources of its rows so far."""
+        from propdb.tables.varying import Used
+
+        found = Used(dict.fromkeys(self.entries), dict(self.sources), dict(self.origins))
+        if self.varying is not None:
+            found.add(self.varying.used)
+        return found
 
 
 def one_line(error: PropdbError) -> str:
@@ -110,6 +121,7 @@ def _point(levels: Levels, plus: Sequence[Member], minus: Sequence[Member], befo
         parts=derived.parts,
         entries=tuple(dict.fromkeys(i for i in ids if i)),
         sources=derived.sources(),
+        origins={leg.entry: leg.source for leg in derived.legs if leg.entry},
         warnings=tuple(derived.warnings()),
         legs=len(derived.legs),
     )
@@ -205,15 +217,16 @@ def make_kind(
         parts=point.parts,
         entries=point.entries,
         sources=point.sources,
+        origins=point.origins,
         warnings=point.warnings,
         **common,  # type: ignore[arg-type]
     )
 
 
 def out_of_range(error: PropdbError) -> str:
-    """The reason of rows whose temperature the data do not reach, without the temperature of one of them."""
+    """The reason of rows that the data do not reach, without the temperature or pressure of one of them."""
     if isinstance(error, OutOfRange) and error.hint:
-        return f"outside the data at this temperature; {error.hint}"
+        return f"outside the data; {error.hint}"
     return one_line(error)
 
 

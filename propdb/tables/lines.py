@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import csv
 import re
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
 from typing import NamedTuple
 
 from propdb.errors import InvalidInput
@@ -14,6 +14,7 @@ __all__ = ["BLOCK", "Dialect", "Head", "blocks", "decode", "physical_rows", "rea
 
 BLOCK = 1 << 20
 _LONGEST = 16 << 20  # a row longer than this is a quote that was never closed
+csv.field_size_limit(max(csv.field_size_limit(), 4 * _LONGEST))  # else 128 kB, and an error
 _BOMS = ((b"\xff\xfe", "UTF-16"), (b"\xfe\xff", "UTF-16"), (b"\x00\x00\xfe\xff", "UTF-32"))
 
 
@@ -86,6 +87,13 @@ def read_head(file: HashedReader, *, delimiter: str | None, where: str) -> tuple
         raw, end = raw[:-1], b"\r\n"
     names = next(csv.reader([decode(raw)], delimiter=delimiter), [])
     return Head(data[:prefix] + raw, end, tuple(names), text[stop + 1 :]), delimiter
+
+
+def first_rows(head: Head, delimiter: str, most: int = 30) -> Iterator[Sequence[str]]:
+    """The header and the lines below it, as fields."""
+    yield head.names
+    for line in head.rest.split(b"\n", most)[:most]:
+        yield next(csv.reader([decode(line.rstrip(b"\r"))], delimiter=delimiter), [])
 
 
 def _guess(line: bytes) -> str:

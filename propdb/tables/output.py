@@ -21,6 +21,8 @@ def check_paths(source: Path, target: Path, *, overwrite: bool) -> None:
     """Refuse an input that is not there, an output that is the input or exists. Raises PropdbError, InvalidInput."""
     if not source.exists():
         raise PropdbError("there is no such file", where=str(source), hint="correct the path")
+    if not source.is_file() and not source.is_dir():
+        raise InvalidInput("is neither a file nor a directory", where=str(source), hint="save it to a file first")
     if target.exists() and os.path.samefile(source, target):
         raise InvalidInput("the output is the input", where=str(target), hint="give another name")
     if source.is_dir() and source.resolve() in target.resolve().parents:
@@ -81,8 +83,9 @@ class Whole:
             for file, content in beside:
                 file.with_name(f".{file.name}.{os.getpid()}.part").write_bytes(content)
             if self._directory and self.target.exists():
-                shutil.rmtree(self.target)
-            os.replace(self.part, self.target)
+                self._exchange()
+            else:
+                os.replace(self.part, self.target)
             for file, _ in beside:
                 os.replace(file.with_name(f".{file.name}.{os.getpid()}.part"), file)
         except OSError as error:
@@ -90,6 +93,17 @@ class Whole:
                 file.with_name(f".{file.name}.{os.getpid()}.part").unlink(missing_ok=True)
             raise cannot(self.target, error) from None
         self._done = True
+
+    def _exchange(self) -> None:
+        """A directory cannot be replaced in one go: the old one goes aside, and comes back if the new one cannot."""
+        old = self.part.with_suffix(".old")
+        os.replace(self.target, old)
+        try:
+            os.replace(self.part, self.target)
+        except BaseException:
+            os.replace(old, self.target)
+            raise
+        shutil.rmtree(old, ignore_errors=True)
 
     def __exit__(
         self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None

@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 
 from propdb._version import __version__
 from propdb.model.answer import CAUTION
-from propdb.model.text import wrapped
+from propdb.model.text import visible, wrapped
 from propdb.tables.kinds import BAD_ROW, NO_DATA, OK
 
 if TYPE_CHECKING:
@@ -67,11 +67,8 @@ def kinds_of(plan: Plan, tally: Tally) -> tuple[list[dict[str, Any]], dict[str, 
     counted = sorted(tally.kinds.items(), key=lambda pair: -pair[1]) or [(i, 0) for i in range(len(plan.kinds))]
     for number, rows in counted[:_MOST]:
         kind = plan.kinds[number]
-        entries, its = list(kind.entries), dict(kind.sources)
-        if kind.varying is not None:
-            entries += list(kind.varying.entries)
-            its |= kind.varying.sources
-        sources |= {key: text(source) for key, source in its.items()}
+        used = kind.used()
+        sources |= {key: text(source) for key, source in used.sources.items()}
         item: dict[str, Any] = {
             "species": kind.species.name if kind.species is not None else None,
             "as_written": kind.key.species,
@@ -81,7 +78,7 @@ def kinds_of(plan: Plan, tally: Tally) -> tuple[list[dict[str, Any]], dict[str, 
             "flag": kind.flag,
             "reason": kind.reason or None,
             "rows": rows or None,
-            "entries": entries,
+            "entries": {entry: used.origins.get(entry) for entry in used.entries},
             "warnings": list(kind.warnings),
         }
         if not plan.settings.evaluate:
@@ -135,8 +132,11 @@ def summary(data: dict[str, Any], target: Path, seconds: float) -> list[str]:
     flags, total = data["rows"]["flags"], data["rows"]["total"]
     parts = [f"{times:,} {flag}" for flag, times in flags.items() if times]
     rate = f", {total / seconds:,.0f} rows/s" if total > 10_000 else ""
-    lines = [f"{target.name}: {total:,} rows: {', '.join(parts) or 'none'}{rate}"]
-    lines += [f"  {r['rows']:,} {r['flag']}: {r['reason']}" for r in data["reasons"][:8] if r["reason"]]
+    lines = [f"{target.name}: {total:,} {'row' if total == 1 else 'rows'}: {', '.join(parts) or 'none'}{rate}"]
+    for r in data["reasons"][:8]:
+        file = f" of {r['first_file']}" if "first_file" in r else ""
+        first = f"{'first in ' if r['rows'] > 1 else ''}row {r['first_row']:,}{file}"
+        lines += wrapped(f"{r['rows']:,} {r['flag']}: {visible(r['reason'] or 'no reason')} ({first})", "  ", "    ")
     if len(data["reasons"]) > 8:
         lines.append(f"  and {len(data['reasons']) - 8} more reasons in {target.name}{SIDECAR}")
     return lines + [line for note in data["notes"] for line in wrapped(note, "  ", "    ")]

@@ -12,9 +12,10 @@ from typing import NamedTuple
 from propdb.errors import InvalidInput
 from propdb.model.records import SAME_T
 from propdb.tables.buffers import arrow
-from propdb.tables.columns import Layout, bind, listed
+from propdb.tables.columns import Layout, bind, check_header, listed
 from propdb.tables.core import Plan, Settings
 from propdb.tables.delimited import convert_delimited, open_delimited
+from propdb.tables.lines import first_rows
 from propdb.tables.mixtures import check_components
 from propdb.tables.oracle import Oracle
 from propdb.tables.output import HashedWriter, Whole, check_paths, sha256_of
@@ -179,6 +180,8 @@ def convert_table(
     """See :meth:`propdb.api.Store.convert_table`."""
     check_paths(source, target, overwrite=request.overwrite)
     kind = kind_of_file(source)
+    if target.suffix.lower() == ".xlsm":
+        raise InvalidInput("macros are not kept", where=str(target), hint="end the name with .xlsx")
     if kind != "directory" and kind_of_file(target) != kind:
         raise InvalidInput(
             f"the input is {source.suffix} and the output {target.suffix}",
@@ -236,8 +239,11 @@ def _tally(plan: Plan, request: Request) -> Tally:
 def _notes(plan: Plan) -> list[str]:
     notes = []
     if plan.layout.components:
-        what = "computed as ideal mixtures" if plan.settings.evaluate else "left in the number as it is"
-        notes.append(f"mixtures: any enthalpy of mixing is {what}; the shift is the sum over the components")
+        notes.append(
+            "mixtures are taken as ideal: the sum over the components, without an enthalpy of mixing"
+            if plan.settings.evaluate
+            else "mixtures: the shift is the sum over the components; an enthalpy of mixing stays as it is"
+        )
     if plan.layout.get("vapour") is not None:
         notes.append("the vapour fraction has no part in a shift: both phases have one zero")
     return notes
@@ -247,6 +253,8 @@ def _delimited(oracle: Oracle, request: Request, source: Path, part: Path, progr
     arrow()
     with source.open("rb") as file, part.open("wb") as raw:
         given = open_delimited(source, file, comma=request.comma)
+        if not request.columns:
+            check_header(first_rows(given.head, given.dialect.delimiter), source.name)
         plan = make_plan(oracle, request, given.head.names, where=source.name)
         tally = _tally(plan, request)
         out = HashedWriter(raw)
@@ -254,7 +262,8 @@ def _delimited(oracle: Oracle, request: Request, source: Path, part: Path, progr
         out.close()
     notes = _notes(plan)
     if not digits.fixed and plan.layout.get("enthalpy") is not None and digits.places < 2 and tally.rows:
-        notes.append(f"written to {digits.places} decimals, as the column is; --digits N for more")
+        places = "1 decimal" if digits.places == 1 else f"{digits.places} decimals"
+        notes.append(f"written to {places}, as the column is; --digits N for more")
     return Done(plan, tally, given.reader.hexdigest(), out.hexdigest(), notes)
 
 

@@ -7,7 +7,10 @@ store under the same paths, and the same content in the store.
 from __future__ import annotations
 
 import contextlib
+import logging
+import signal
 from collections.abc import Iterator, Sequence
+from multiprocessing import resource_tracker
 from pathlib import Path
 from typing import Any, NamedTuple
 from uuid import uuid4
@@ -18,6 +21,7 @@ from propdb.tables.extras import need
 from propdb.tables.kinds import Key
 from propdb.tables.progress import Progress
 from propdb.tables.tally import Sample, Tally
+from propdb.tables.varying import Used
 
 __all__ = ["Counts", "convert_file", "spread"]
 
@@ -26,9 +30,10 @@ class Counts(NamedTuple):
     """What one file came to, without reference to the plan that counted it."""
 
     rows: int
-    verdicts: list[tuple[str, str, int]]  # flag, reason, rows
+    verdicts: list[tuple[str, str, int, tuple[str, int]]]  # as Tally.counts gives them
     kinds: list[tuple[Key, int]]
     samples: list[Sample]
+    used: list[tuple[Key, Used]]  # what kinds of rows that depend on T stand on
     read: str  # SHA-256 of the input
     written: str  # and of the output
 
@@ -55,9 +60,11 @@ def convert_file(plan: Plan, stamp: str, source: str, target: str, name: str) ->
         out = HashedWriter(raw)
         convert_parquet(Path(source), plan, out, tally, Progress(None), share=float, file=name, overlap=False)
         out.close()
-    verdicts = [(*plan.verdicts[n], times) for n, times in tally.verdicts.items()]
     kinds = [(plan.kinds[n].key, times) for n, times in tally.kinds.items()]
-    return Counts(tally.rows, verdicts, kinds, tally.first_samples(), sha256_of(Path(source)), out.hexdigest())
+    used = [(kind.key, kind.used()) for kind in plan.kinds]
+    return Counts(
+        tally.rows, tally.counts(), kinds, tally.first_samples(), used, sha256_of(Path(source)), out.hexdigest()
+    )
 
 
 _plans: dict[str, Plan] = {}
@@ -83,13 +90,41 @@ def _client(scheduler: str | None, workers: int) -> Iterator[Any]:
         with client:
             yield client
         return
-    with (
-        distributed.LocalCluster(
-            n_workers=workers, threads_per_worker=1, processes=True, dashboard_address=":0", silence_logs=50
-        ) as cluster,
-        distributed.Client(cluster) as client,
-    ):
+    for name in ("distributed", "tornado", "asyncio"):  # what goes wrong in a task comes back as its value
+        logging.getLogger(name).setLevel(logging.CRITICAL + 1)
+    with contextlib.ExitStack() as stack:
+        with _uninterrupted():
+            try:
+                cluster = distributed.LocalCluster(
+                    n_workers=workers, threads_per_worker=1, processes=True, dashboard_address=":0", silence_logs=50
+                )
+            except (OSError, RuntimeError, TimeoutError) as error:
+                raise PropdbError(
+                    f"no worker could be started: {error}",
+                    hint='a script that starts workers does so under: if __name__ == "__main__":',
+                ) from None
+            stack.callback(_close, cluster)
+            client = stack.enter_context(distributed.Client(cluster))
         yield client
+
+
+def _close(cluster: Any) -> None:
+    with contextlib.suppress(AssertionError):  # of a worker that is closing already
+        cluster.close()
+
+
+@contextlib.contextmanager
+def _uninterrupted() -> Iterator[None]:
+    """Start processes that leave Ctrl-C to the one that waits for them, and ends them."""
+    if not hasattr(signal, "pthread_sigmask"):
+        yield
+        return
+    resource_tracker.ensure_running()  # or starting it would let the signal through again
+    before = signal.pthread_sigmask(signal.SIG_BLOCK, {signal.SIGINT})
+    try:
+        yield
+    finally:
+        signal.pthread_sigmask(signal.SIG_SETMASK, before)
 
 
 def spread(
@@ -125,7 +160,7 @@ def spread(
             if isinstance(counts, PropdbError):
                 client.cancel(futures)
                 raise counts
-            tally.merge(counts.rows, counts.verdicts, counts.kinds, counts.samples)
+            tally.merge(counts.rows, counts.verdicts, counts.kinds, counts.samples, counts.used)
             hashes[files[done - 1][0]], hashes[files[done - 1][1]] = counts.read, counts.written
             progress.step(counts.rows, done / len(files))
     return hashes

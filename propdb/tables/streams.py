@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections import defaultdict
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from threading import Lock
 from typing import TYPE_CHECKING, Any
 
@@ -15,8 +15,9 @@ from propdb.datum import may_sum
 from propdb.errors import DatumMismatch
 from propdb.levels.parts import add_parts, combined
 from propdb.model.records import Part
-from propdb.model.text import columns, wrapped
+from propdb.model.text import columns, visible, wrapped
 from propdb.tables.scales import flow_unit
+from propdb.units import format_number
 
 if TYPE_CHECKING:
     from propdb.tables.core import Given, Plan, Rows
@@ -30,6 +31,12 @@ _SIDES = {
 }
 #: A species whose flow differs by more than this between inlets and outlets has reacted [1].
 REACTED = 1e-3
+#: What is not below this is no flow, in any unit [1].
+LARGEST = 1e18
+#: A sensitivity that cancels to this share of its terms is rounding [1].
+ROUNDING = 1e-9
+
+_SIGNS = {IN: -1.0, OUT: 1.0}
 
 
 @dataclass
@@ -41,6 +48,15 @@ class _Stream:
     mass: float = 0.0  # [kg/s]
     rows: int = 0
     lost: int = 0  # rows without an enthalpy or a flow
+
+
+@dataclass
+class _Sum:
+    """The sensitivity of the duty to one entry, added up."""
+
+    part: Part
+    coefficient: float = 0.0  # out less in [mol/s x J/mol]
+    size: float = 0.0  # the same without signs, to tell what cancels from rounding
 
 
 @dataclass
@@ -59,8 +75,8 @@ class Streams:
     across: bool = False
     found: dict[tuple[str, str], _Stream] = field(default_factory=dict)
     moles: dict[tuple[int, str], float] = field(default_factory=lambda: defaultdict(float))
-    square: float = 0.0  # variance of the duty from rows that vary with T [W^2]
-    lacking: dict[str, None] = field(default_factory=dict)  # species of such rows, where no uncertainty is stated
+    varying: dict[str, _Sum] = field(default_factory=dict)  # by entry, over the rows that vary with T
+    negative: int = 0  # rows
     low: float = math.inf  # of the temperatures [K]
     high: float = -math.inf
     _lock: Lock = field(default_factory=Lock)
@@ -90,15 +106,23 @@ class Streams:
                 stream.mass += float(sums[2][code])
                 stream.rows += int(sums[3][code]) + int(lost_count[code])
                 stream.lost += int(lost_count[code])
-            self._by_species(rows, np.where(np.isnan(flows), 0.0, flows), sides, read)
+            self._by_species(given, rows, np.where(np.isnan(flows), 0.0, flows), lost, sides, read)
+            self.negative += int(np.count_nonzero(flows < 0.0))
             t = given.temperature
             if t is not None and not np.isnan(t).all():
                 self.low = min(self.low, float(np.nanmin(t)))
                 self.high = max(self.high, float(np.nanmax(t)))
 
-    def _by_species(self, rows: Rows, flows: NDArray[np.float64], sides: NDArray[np.int32], read: list[str]) -> None:
-        """Amounts by kind of row and side, and what cannot be followed entry by entry."""
-        varies = self.plan.arrays()[5]
+    def _by_species(
+        self,
+        given: Given,
+        rows: Rows,
+        flows: NDArray[np.float64],
+        lost: NDArray[np.bool_],
+        sides: NDArray[np.int32],
+        read: list[str],
+    ) -> None:
+        """Amounts by kind of row and side, and the sensitivities of rows that vary with T."""
         if rows.mix is not None:
             x, numbers = rows.mix
         else:
@@ -113,13 +137,26 @@ class Streams:
                 sums = np.bincount(numbers[here, column], weights=weights)
                 for number in np.flatnonzero(sums).tolist():
                     self.moles[(number, side)] += float(sums[number])
-        vary = varies[numbers].any(axis=1)
-        counted = vary & (flows != 0.0) & ~np.isnan(rows.value)
-        terms = (flows * rows.standard)[counted]
-        lacking = np.unique(numbers[counted & np.isnan(rows.standard)])
-        species = [self.plan.kinds[number].species for number in lacking.tolist()]
-        self.lacking |= dict.fromkeys(one.name for one in species if one is not None)
-        self.square += float(np.nansum(terms**2))
+        from propdb.tables.core import conditions
+
+        signs = np.array([_SIGNS.get(side, 0.0) for side in read])[sides]
+        weights = np.where(lost, 0.0, signs * flows)[:, None] * x
+        varies = self.plan.arrays()[5]
+        if not varies[numbers].any():
+            return
+        t, p = conditions(self.plan, given)
+        for column in range(x.shape[1]):
+            for number in np.unique(numbers[:, column]).tolist():
+                varying = self.plan.kinds[number].varying
+                here = np.flatnonzero((numbers[:, column] == number) & (weights[:, column] != 0.0))
+                if varying is None or not len(here):
+                    continue
+                found = varying.sensitivities(t[here], None if p is None else p[here], self.plan.run)
+                for entry, (part, coefficients) in found.items():
+                    terms = weights[here, column] * coefficients
+                    total = self.varying.setdefault(entry, _Sum(part))
+                    total.coefficient += float(terms.sum())
+                    total.size += float(np.abs(terms).sum())
 
     # -- results --------------------------------------------------------------------------------------------------
 
@@ -156,6 +193,18 @@ class Streams:
             raise DatumMismatch(verdict.why, hint="convert --to elements-298K; --across sums all the same")
         totals = {side: sum(s.watts for s in self.found.values() if s.side == side) for side in (IN, OUT)}
         lost = sum(s.lost for s in self.found.values())
+        strange = sorted({s.side for s in self.found.values()} - {IN, OUT, ""})
+        if both and strange:
+            notes.append(f"neither in nor out, and in no total: side {', '.join(map(repr, strange[:4]))}")
+        if both and any(not s.side for s in self.found.values()):
+            notes.append("streams without a side are in no total")
+        if self.negative:
+            rows = (
+                "1 row has a negative flow, which is"
+                if self.negative == 1
+                else f"{self.negative} rows have negative flows, which are"
+            )
+            notes.append(f"{rows} added up with the sign")
         if lost:
             rows = "1 row" if lost == 1 else f"{lost} rows"
             notes.append(f"{rows} without an enthalpy or a flow left out, so totals and duty are incomplete")
@@ -184,33 +233,40 @@ class Streams:
         }
         if both:
             standard, missing = self._duty_uncertainty()
-            rest = f"; the other entries make {standard / 1e3:.3g} kW" if standard else ""
+            rest = f"; the other entries make standard {format_number(standard / 1e3, significant=2)} kW"
+            given = "flows and temperatures" if plan.settings.evaluate else "flows and given enthalpies"
             found |= {
                 "total_in": totals[IN] / 1e3,
                 "total_out": totals[OUT] / 1e3,
                 "duty": (totals[OUT] - totals[IN]) / 1e3,
                 "duty_uncertainty": None if missing else standard / 1e3,
-                "duty_uncertainty_note": "standard, from the data alone; the uncertainty of the given enthalpies is "
-                "not in it"
-                if not missing
-                else f"not stated {' and '.join(missing)}{rest}",
+                "duty_uncertainty_note": f"not stated by {', '.join(missing)}{rest if standard else ''}"
+                if missing
+                else f"standard, of the data alone; that of {given} is not in it",
             }
         return found
 
     def _duty_uncertainty(self) -> tuple[float, list[str]]:
-        parts: list[Part] = []
-        for (number, side), moles in self.moles.items():
-            sign = {IN: -1.0, OUT: 1.0}.get(side, 0.0)
-            parts += [
-                Part(p.entry, p.coefficient * sign * moles, p.standard, p.stated)
-                for p in self.plan.kinds[number].parts
-                if sign
-            ]
+        """Standard uncertainty of the duty [W], entry by entry, and the sources that state none, with the entries."""
+        parts = [
+            Part(p.entry, p.coefficient * _SIGNS[side] * moles, p.standard, p.stated)
+            for (number, side), moles in self.moles.items()
+            if side in _SIGNS
+            for p in self.plan.kinds[number].parts
+        ]
+        parts += [
+            replace(total.part, coefficient=total.coefficient)
+            for total in self.varying.values()
+            if abs(total.coefficient) > ROUNDING * total.size
+        ]
         standard, missing = combined(add_parts(parts))
-        names = [f"by {', '.join(i[:8] for i in missing[:4])}"] if missing else []
-        if self.lacking:
-            names.append(f"for the heat of {', '.join(list(self.lacking)[:6])}")
-        return math.hypot(standard, math.sqrt(self.square)), names
+        origins: dict[str, str] = {}
+        for kind in self.plan.kinds:
+            origins |= kind.used().origins
+        by_source: dict[str, list[str]] = {}
+        for entry in missing:
+            by_source.setdefault(origins.get(entry, "entry"), []).append(entry[:8])
+        return standard, [f"{key} [{_few(ids)}]" for key, ids in by_source.items()]
 
     def _unbalanced(self, per_side: dict[str, dict[str, float]]) -> list[str]:
         """Elements whose flows differ between inlets and outlets."""
@@ -226,6 +282,10 @@ class Streams:
             if abs(flows[IN][element] - flows[OUT][element]) > REACTED * max(flows[IN][element], flows[OUT][element])
         ]
         return [f"the elements do not balance: {'; '.join(off)}"] if off else []
+
+
+def _few(ids: list[str]) -> str:
+    return " ".join(ids) if len(ids) <= 8 else f"{' '.join(ids[:6])} and {len(ids) - 6} more"
 
 
 def reaction_between(inlets: dict[str, float], outlets: dict[str, float]) -> list[str]:
@@ -251,7 +311,7 @@ def flows_of(plan: Plan, given: Given, rows: Rows) -> tuple[NDArray[np.float64],
     else:
         assert rows.kinds is not None
         molar = _molar(plan)[rows.kinds]
-    flows = given.flow * unit.factor
+    flows = np.where(np.abs(given.flow) < LARGEST, given.flow, math.nan) * unit.factor
     return (flows / molar if unit.mass else flows), molar
 
 
@@ -275,7 +335,9 @@ def _texts(given: Given, role: str, none: str) -> tuple[NDArray[np.int32], list[
 def lines(found: dict[str, Any]) -> list[str]:
     """The summary for a person."""
     shown = [f"enthalpy flows on {found['datum']}"]
-    rows = [(s["stream"], s["side"] or "", f"{s['enthalpy_flow']:.3f}", "kW") for s in found["streams"]]
+    rows = [
+        (visible(s["stream"]), visible(s["side"] or ""), f"{s['enthalpy_flow']:.3f}", "kW") for s in found["streams"]
+    ]
     if "duty" not in found:
         rows.append(("total", "", f"{found['total']:.3f}", "kW"))
     else:

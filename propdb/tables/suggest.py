@@ -52,6 +52,7 @@ class _Score:
     legs: int
     spread: float  # standard uncertainty of the duty, class defaults where none is stated [W, or J/mol x rows]
     shifts: tuple[float, ...]  # of each kind of row [J/mol]
+    evaluated: bool  # rows are states, and have no datum of their own
 
     def alike(self, other: _Score) -> bool:
         """Has every species of the table its zero in the same place?"""
@@ -61,8 +62,9 @@ class _Score:
         if not self.legs:
             return "its levels are all at hand: no shift needs any data"
         steps = "one step" if self.legs == 1 else f"{self.legs} steps"
-        size = f", {self.spread:.2g} {unit} of uncertainty with it" if unit else ""
-        return f"{steps} of data between the table's datums and it{size}"
+        size = f", {self.spread:.2g} {unit} of uncertainty with it (typical where not stated)" if unit else ""
+        where = "between its states and the zeros" if self.evaluated else "between the table's datums and it"
+        return f"{steps} of data {where}{size}"
 
 
 def suggest(tally: Tally) -> Suggestion:
@@ -186,7 +188,7 @@ def _scores(
         except PropdbError:
             continue
         spread = sqrt(sum((p.coefficient * p.standard) ** 2 for p in add_parts(parts))) / 1e3
-        scores.append(_Score(candidate, legs, spread, tuple(shifts)))
+        scores.append(_Score(candidate, legs, spread, tuple(shifts), not own))
     return sorted(scores, key=lambda s: (s.legs, float(f"{s.spread:.6g}"), _away(s.datum)))
 
 

@@ -178,7 +178,7 @@ def _given(table: Any, work: BlockWork, count: int, whole: bool) -> Given:
         t = _finite(floats(_column(table, column.index)))
         t = temperature_scale(column.unit, column.name)(t)
     if whole and (column := layout.get("pressure")) is not None:
-        p = _finite(floats(_column(table, column.index))) * pressure_scale(column.unit, column.name)
+        p = pressure_scale(column.unit, column.name)(_finite(floats(_column(table, column.index))))
     if layout.components:
         fractions = np.empty((count, len(layout.components)))
         for place, component in enumerate(layout.components):

@@ -11,10 +11,10 @@ from propdb.errors import InvalidInput, NoData, PropdbError
 from propdb.levels.curves import Curve, Formulation
 from propdb.levels.engine import Levels
 from propdb.model.answer import CAUTION
-from propdb.model.records import Datum, Source, Species, State
+from propdb.model.records import Datum, Entry, Source, Species, State
+from propdb.tables.cells import equation_at
 from propdb.tables.kinds import EXTRAPOLATED, NO_DATA, OK, enthalpy_at, finite, one_line
 from propdb.tables.phases import stretches
-from propdb.tables.varying import _equation
 from propdb.units import EnthalpyUnit, parse_heat_capacity_unit
 from propdb.units.table import SCALES
 
@@ -130,7 +130,7 @@ def tabulate(
     def shown(t: float) -> float:
         return round(t * denominator / numerator - float(offset), 9)
 
-    for one in species:
+    for one in {one.name: one for one in species}.values():
         per = unit.scale(molar_mass=one.molar_mass)
         per_degree = cp_unit.scale(molar_mass=one.molar_mass)
         parts = stretches(levels, one, phase, form)
@@ -184,7 +184,8 @@ def _line(
     found = None if h is None else heat_capacity(levels, species.name, state)
     if found is not None:
         cp = found[0] / per_degree
-        entries = tuple(dict.fromkeys((*entries, found[1])))
+        entries = tuple(dict.fromkeys((*entries, found[1].id)))
+        sources[found[1].source] = levels.data.source(found[1].source)
     line = Line(
         species.name, phase, state.form, t, shown, h, uncertainty, cp, mark, flag, reason, entries,
         tuple(sorted(sources)),
@@ -192,7 +193,7 @@ def _line(
     return line, sources
 
 
-def heat_capacity(levels: Levels, species: str, state: State) -> tuple[float, str] | None:
+def heat_capacity(levels: Levels, species: str, state: State) -> tuple[float, Entry] | None:
     """Heat capacity [J/mol/K] of a state and the entry it is from; None where it is not known."""
     track = levels.tree(species).tracks.get((state.phase, state.form))
     t = state.temperature
@@ -201,21 +202,21 @@ def heat_capacity(levels: Levels, species: str, state: State) -> tuple[float, st
     if isinstance(track, Curve):
         if not track.covers(t) and not track.extrapolate:
             return None
-        equation = _equation(track, t)
+        equation = equation_at(track, t)
         piece = next((p for p in track.pieces if p.equation is equation), None)
-        return None if piece is None else (float(equation.cp(t)), piece.entry.id)
+        return None if piece is None else (float(equation.cp(t)), piece.entry)
     if isinstance(track, Formulation) and state.phase == "l":
         return _slope(lambda x: track.h(State("l", x)), t, track)
     return None
 
 
-def _slope(h: Callable[[float], float], t: float, track: Formulation) -> tuple[float, str] | None:
+def _slope(h: Callable[[float], float], t: float, track: Formulation) -> tuple[float, Entry] | None:
     """Central difference, at 1 bar: above the boiling point there the liquid follows saturation, and none is given."""
     from propdb.levels import water
 
     try:
         if water.saturation(temperature=t + _STEP)[0] >= 1e5:
             return None
-        return (h(t + _STEP) - h(t - _STEP)) / (2.0 * _STEP), track.entry.id
+        return (h(t + _STEP) - h(t - _STEP)) / (2.0 * _STEP), track.entry
     except PropdbError:
         return None

@@ -15,6 +15,7 @@ from propdb.tables.kinds import BAD_ROW, EXTRAPOLATED, NO_DATA, OK, Key
 if TYPE_CHECKING:
     from propdb.tables.core import Given, Plan, Rows
     from propdb.tables.streams import Streams
+    from propdb.tables.varying import Used
 
 __all__ = ["Sample", "Tally"]
 
@@ -41,6 +42,7 @@ class Tally:
     verdicts: dict[int, int] = field(default_factory=dict)
     kinds: dict[int, int] = field(default_factory=dict)
     samples: list[Sample] = field(default_factory=list)
+    firsts: dict[int, tuple[str, int]] = field(default_factory=dict)  # file and row where each verdict first stands
     _lock: Lock = field(default_factory=Lock)
 
     def add(
@@ -50,16 +52,30 @@ class Tally:
         verdicts: NDArray[np.int32],
         h: Callable[[], NDArray[np.float64]],
         *,
-        first: int,
+        first: int = 1,
+        numbers: NDArray[np.int64] | None = None,
         file: str = "",
     ) -> None:
-        """Add a batch whose first row has the number ``first``; ``h`` gives its enthalpies, for streams."""
+        """Add a batch; ``h`` gives its enthalpies, for streams.
+
+        Rows have the ``numbers`` that are given, or go on from ``first``.
+        """
         if self.streams is not None:
             self.streams.add(given, rows, h())
+
+        def number_of(row: int) -> int:
+            return first + row if numbers is None else int(numbers[row])
+
         kinds = rows.kinds
         by_verdict = np.bincount(verdicts).tolist() if len(verdicts) else []
         by_kind = [] if kinds is None or not len(kinds) else np.bincount(kinds).tolist()
-        bad = np.flatnonzero(verdicts)[:_SAMPLES].tolist() if len(by_verdict) > 1 else []
+        bad: list[int] = []
+        firsts: list[tuple[int, int]] = []
+        if len(by_verdict) > 1:
+            places = np.flatnonzero(verdicts)
+            bad = places[:_SAMPLES].tolist()
+            kinds_of_bad, where = np.unique(verdicts[places], return_index=True)
+            firsts = list(zip(kinds_of_bad.tolist(), places[where].tolist(), strict=True))
         with self._lock:
             self.rows += len(verdicts)
             for table, counts in ((self.verdicts, by_verdict), (self.kinds, by_kind)):
@@ -68,28 +84,44 @@ class Tally:
                         table[number] = table.get(number, 0) + times
             for row in bad:
                 flag, reason = self.plan.verdicts[verdicts[row]]
-                self.samples.append(Sample(first + row, flag, reason, file))
+                self.samples.append(Sample(number_of(row), flag, reason, file))
+            for number, row in firsts:
+                self._first(number, file, number_of(row))
             if len(self.samples) > 50 * _SAMPLES:
                 self._trim()
 
     def merge(
         self,
         rows: int,
-        verdicts: Iterable[tuple[str, str, int]],
+        verdicts: Iterable[tuple[str, str, int, tuple[str, int]]],
         kinds: Iterable[tuple[Key, int]],
         samples: Iterable[Sample],
+        used: Iterable[tuple[Key, Used]],
     ) -> None:
         """Add what another plan counted."""
         self.rows += rows
-        for flag, reason, times in verdicts:
+        for flag, reason, times, first in verdicts:
             number = self.plan.verdict(flag, reason)
             self.verdicts[number] = self.verdicts.get(number, 0) + times
+            self._first(number, *first)
         pairs = list(kinds)
         numbers = self.plan.kinds_of([key for key, _ in pairs]).tolist() if pairs else []
         for number, (_, times) in zip(numbers, pairs, strict=True):
             self.kinds[number] = self.kinds.get(number, 0) + times
+        found = list(used)
+        for number, (_, its) in zip(self.plan.kinds_of([key for key, _ in found]).tolist(), found, strict=True):
+            if (varying := self.plan.kinds[number].varying) is not None:
+                varying.used.add(its)
         self.samples += samples
         self._trim()
+
+    def _first(self, number: int, file: str, row: int) -> None:
+        self.firsts[number] = min((file, row), self.firsts.get(number, (file, row)))
+
+    def counts(self) -> list[tuple[str, str, int, tuple[str, int]]]:
+        """Flag, reason, rows, and the file and row where each first stands: for another tally to merge."""
+        verdicts = self.plan.verdicts
+        return [(*verdicts[n], times, self.firsts.get(n, ("", 0))) for n, times in self.verdicts.items()]
 
     def _trim(self) -> None:
         self.samples.sort(key=lambda s: (s.file, s.row))
@@ -103,11 +135,11 @@ class Tally:
         return counts
 
     def reasons(self, most: int = 50) -> list[dict[str, Any]]:
-        """Reasons with the number of their rows, the most frequent first."""
+        """Reasons with the number of their rows and the first of them, the most frequent first."""
         found = [
-            {"flag": self.plan.verdicts[number][0], "reason": self.plan.verdicts[number][1], "rows": times}
-            for number, times in self.verdicts.items()
-            if number
+            {"flag": flag, "reason": reason, "rows": times, "first_row": row} | ({"first_file": file} if file else {})
+            for flag, reason, times, (file, row) in self.counts()
+            if flag != OK
         ]
         found.sort(key=lambda r: -int(str(r["rows"])))
         return found[:most]

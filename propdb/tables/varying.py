@@ -10,7 +10,7 @@ point, a pinned table) ask the levels for each distinct temperature.
 from __future__ import annotations
 
 import math
-from bisect import bisect_left
+import re
 from collections.abc import Callable, Mapping, Sequence
 from contextlib import suppress
 from dataclasses import dataclass, field
@@ -21,20 +21,19 @@ import numpy as np
 from numpy.typing import NDArray
 
 from propdb.errors import PropdbError
-from propdb.levels.curves import BOILING_SLACK, PRINTED_SLACK, Curve
-from propdb.levels.engine import Levels
-from propdb.levels.states import MELTING_SLACK
-from propdb.model.records import SAME_T, T_STANDARD, Datum, Species, State
+from propdb.levels.curves import Curve
+from propdb.model.records import SAME_T, T_STANDARD, Datum, Part, Source, Species, State
+from propdb.tables.cells import GRID, Cell, cells_of
 from propdb.tables.kinds import EXTRAPOLATED, NO_DATA, OK, Point, enthalpy_at, out_of_range, shift_at
 from propdb.tables.oracle import Basis
 
-__all__ = ["Shared", "Varying", "vary_enthalpy", "vary_shift"]
+__all__ = ["Shared", "Used", "Varying", "vary_enthalpy", "vary_shift"]
 
 FloatArray = NDArray[np.float64]
 
-#: Uncertainties are computed every so many kelvin and interpolated between [K].
-GRID = 50.0
-_MEMORY = 100_000
+_MEMORY = 50_000
+_SPAN = re.compile(r" \S+, \S+ K to \S+, \S+ K(?= is extrapolated)")
+_MIDDLE = -1  # the node of a cell that is its middle
 
 
 class Shared:
@@ -66,25 +65,18 @@ class Shared:
 
 
 @dataclass
-class _Cell:
-    low: float
-    high: float
-    members: tuple[tuple[float, Any], ...] | None  # (coefficient, equation); None: ask for each temperature
-    ready: bool = False
-    flag: str = OK
-    reason: str = ""
-    base: float = math.nan  # value less the members' own antiderivatives [J/mol]
-    standard: float = math.nan  # standard uncertainty at the middle [J/mol]
-    grid: dict[int, float] = field(default_factory=dict)
-    only: tuple[float, ...] | None = None  # the few temperatures that are known, where there is no heat capacity [K]
+class Used:
+    """What answers stood on."""
 
-    def middle(self) -> float:
-        """The temperature at which the levels are asked [K]: the same whichever row comes first."""
-        if self.low < T_STANDARD < self.high:
-            return T_STANDARD
-        if math.isinf(self.high):
-            return self.low + 1.0
-        return 0.5 * (self.low + self.high) if self.low > 0.0 else 0.9 * self.high
+    entries: dict[str, None] = field(default_factory=dict)
+    sources: dict[str, Source] = field(default_factory=dict)
+    origins: dict[str, str] = field(default_factory=dict)  # source of each entry
+
+    def add(self, other: Used | Point) -> None:
+        """Add what others stood on."""
+        self.entries.update(dict.fromkeys(other.entries))
+        self.sources.update(other.sources)
+        self.origins.update(other.origins)
 
 
 class Varying:
@@ -98,14 +90,12 @@ class Varying:
         Going up in temperature, without gaps.
     """
 
-    def __init__(self, ask: Callable[[float | None, float | None], Point], cells: Sequence[_Cell]) -> None:
+    def __init__(self, ask: Callable[[float | None, float | None], Point], cells: Sequence[Cell]) -> None:
         self._ask = ask
         self.cells = list(cells)
         self._ends = [cell.high for cell in self.cells]
-        self._memory: dict[tuple[float, float], tuple[float, float, str, str]] = {}
-        self.entries: dict[str, None] = {}
-        self.sources: dict[str, Any] = {}
-        self.sample: Point | None = None
+        self._memory: dict[tuple[float, float], tuple[float, float, str, str, tuple[Part, ...]]] = {}
+        self.used = Used()
 
     def equations(self) -> set[int]:
         """Ids of the equations it uses."""
@@ -150,11 +140,13 @@ class Varying:
             if not len(t):
                 continue
             p = None if pressures is None else pressures[mine]
-            if cell.only is not None and not np.isin(t, cell.only).any():
+            if cell.only is not None:
                 if not cell.ready:
                     run(partial(self._prepare, cell))
-                verdicts[mine] = verdict(NO_DATA, cell.reason)
-                continue
+                if cell.flag == NO_DATA and (other := ~np.isin(t, cell.only)).any():
+                    verdicts[np.arange(size)[mine][other]] = verdict(NO_DATA, cell.reason)
+                    mine = np.arange(size)[mine][~other]
+                    t, p = temperatures[mine], None if pressures is None else pressures[mine]
             if cell.members is None:
                 value[mine], standard[mine], verdicts[mine] = self._each(t, p, run, verdict)
                 continue
@@ -164,48 +156,40 @@ class Varying:
             if cell.flag == NO_DATA:
                 continue
             here = rows[mine]
-            total = np.full(len(t), cell.base)
-            for coefficient, equation in cell.members:
-                h = shared.h(equation, here, t)
-                if coefficient == 1.0:
-                    total += h
-                elif coefficient == -1.0:
-                    total -= h
-                else:
-                    total += coefficient * h
+            try:
+                total = _total(cell, here, t, shared)
+            except PropdbError:  # an equation overflows at a temperature of the batch
+                total = _one_by_one(cell, here, t)
+                verdicts[np.arange(size)[mine][np.isnan(total)]] = verdict(NO_DATA, "too extreme a temperature")
             value[mine] = total
             standard[mine] = self._standard(cell, t, run)
             if cell.middle() == T_STANDARD and (unheated := t == T_STANDARD).any():  # nothing is heated there
                 standard[mine] = np.where(unheated, cell.standard, standard[mine])
+        standard[np.isnan(value)] = np.nan
         return value, standard, verdicts
 
-    def _prepare(self, cell: _Cell) -> None:
+    def _prepare(self, cell: Cell) -> None:
         t = cell.middle()
         try:
             point = self._ask(t, None)
         except PropdbError as error:
             cell.flag, cell.reason = NO_DATA, out_of_range(error)
         else:
-            self._note(point)
+            self.used.add(point)
             if t == T_STANDARD:  # nothing is heated there; elsewhere in the cell something is, by its entries
                 with suppress(PropdbError):
-                    self._note(self._ask(0.5 * (t + min(cell.high, 2.0 * t)), None))
+                    self.used.add(self._ask(0.5 * (t + min(cell.high, 2.0 * t)), None))
             if point.extrapolated:
                 cell.flag = EXTRAPOLATED
-                cell.reason = next((w for w in point.warnings if "extrapolated" in w), "extrapolated")
+                reason = next((w for w in point.warnings if "extrapolated" in w), "extrapolated")
+                cell.reason = _SPAN.sub("", reason)  # rows have other temperatures than the middle
             cell.base = point.value - sum(c * float(e.h(t)) for c, e in cell.members or ())
             cell.standard = point.standard
-            if math.isnan(point.standard):
-                cell.grid[-1] = math.nan  # nothing to interpolate
+            cell.parts[_MIDDLE] = point.parts
         cell.ready = True
 
-    def _note(self, point: Point) -> None:
-        self.sample = self.sample or point
-        self.entries.update(dict.fromkeys(point.entries))
-        self.sources.update(point.sources)
-
-    def _standard(self, cell: _Cell, t: FloatArray, run: Callable[[Callable[[], Any]], Any]) -> FloatArray | float:
-        if -1 in cell.grid:
+    def _standard(self, cell: Cell, t: FloatArray, run: Callable[[Callable[[], Any]], Any]) -> FloatArray | float:
+        if math.isnan(cell.standard):
             return math.nan
         low, high = int(t.min() // GRID), int(t.max() // GRID) + 1
         missing = [k for k in range(low, high + 1) if k not in cell.grid]
@@ -214,16 +198,16 @@ class Varying:
         known = [cell.grid[k] for k in range(low, high + 1)]
         if all(map(math.isnan, known)):
             return math.nan
-        nodes = [min(max(k * GRID, cell.low + 1e-6), cell.high - 1e-6) for k in range(low, high + 1)]
-        return np.interp(t, nodes, known)
+        return np.interp(t, [cell.node(k) for k in range(low, high + 1)], known)
 
-    def _fill(self, cell: _Cell, nodes: Sequence[int]) -> None:
+    def _fill(self, cell: Cell, nodes: Sequence[int]) -> None:
         for k in nodes:
-            t = min(max(k * GRID, cell.low + 1e-6), cell.high - 1e-6)
             try:
-                cell.grid[k] = self._ask(t, None).standard
+                point = self._ask(cell.node(k), None)
             except PropdbError:
-                cell.grid[k] = math.nan
+                cell.grid[k], cell.parts[k] = math.nan, ()
+            else:
+                cell.grid[k], cell.parts[k] = point.standard, point.parts
 
     def _each(
         self,
@@ -232,32 +216,108 @@ class Varying:
         run: Callable[[Callable[[], Any]], Any],
         verdict: Callable[[str, str], int],
     ) -> tuple[FloatArray, FloatArray, NDArray[np.int32]]:
-        pairs = list(zip(t.tolist(), [math.nan] * len(t) if p is None else p.tolist(), strict=True))
-        memory = self._memory
-        wanted = [pair for pair in dict.fromkeys(map(_hashable, pairs)) if pair not in memory]
-        if len(memory) + len(wanted) > _MEMORY:
-            memory.clear()
-            wanted = list(dict.fromkeys(map(_hashable, pairs)))
-        if wanted:
-            run(lambda: self._look(wanted))
-        found = [memory[_hashable(pair)] for pair in pairs]
+        pairs = self._remember(t, p, run)
+        found = [self._memory[pair] for pair in pairs]
         return (
             np.array([f[0] for f in found]),
             np.array([f[1] for f in found]),
             np.array([verdict(f[2], f[3]) for f in found], np.int32),
         )
 
+    def _remember(
+        self, t: FloatArray, p: FloatArray | None, run: Callable[[Callable[[], Any]], Any]
+    ) -> list[tuple[float, float]]:
+        """The temperature and pressure of each row, all of which are in memory now."""
+        pairs = list(map(_hashable, zip(t.tolist(), [math.nan] * len(t) if p is None else p.tolist(), strict=True)))
+        distinct = dict.fromkeys(pairs)
+        wanted = [pair for pair in distinct if pair not in self._memory]
+        if len(self._memory) + len(wanted) > _MEMORY:
+            self._memory.clear()
+            wanted = list(distinct)
+        if wanted:
+            run(lambda: self._look(wanted))
+        return pairs
+
+    def sensitivities(
+        self, temperatures: FloatArray, pressures: FloatArray | None, run: Callable[[Callable[[], Any]], Any]
+    ) -> dict[str, tuple[Part, FloatArray]]:
+        """By entry: a part that says its standard error, and its coefficient in each row [J/mol].
+
+        What rows share is fully correlated, so whoever adds rows up adds coefficients first. Along an equation they
+        are interpolated between the nodes of the grid, as the uncertainties are. Parameters as in :meth:`at`; all
+        rows must have a value there.
+        """
+        found: dict[str, tuple[Part, FloatArray]] = {}
+
+        def add(part: Part, rows: Any, coefficients: Any) -> None:
+            if part.entry not in found:
+                found[part.entry] = (part, np.zeros(len(temperatures)))
+            found[part.entry][1][rows] += coefficients
+
+        cells = np.searchsorted(np.asarray(self._ends[:-1]), temperatures, side="left")
+        for number in np.unique(cells).tolist():
+            cell, mine = self.cells[number], np.flatnonzero(cells == number)
+            t = temperatures[mine]
+            if cell.members is None:
+                places: dict[tuple[float, float], list[int]] = {}
+                pairs = self._remember(t, None if pressures is None else pressures[mine], run)
+                for row, pair in zip(mine.tolist(), pairs, strict=True):
+                    places.setdefault(pair, []).append(row)
+                for pair, rows in places.items():
+                    for part in self._memory[pair][4]:
+                        add(part, rows, part.coefficient)
+                continue
+            if not cell.ready:
+                run(partial(self._prepare, cell))
+            unheated = (t == T_STANDARD) if cell.middle() == T_STANDARD else np.zeros(len(t), np.bool_)
+            for part in cell.parts.get(_MIDDLE, ()) if unheated.any() else ():
+                add(part, mine[unheated], part.coefficient)
+            mine, t = mine[~unheated], t[~unheated]
+            if not len(t):
+                continue
+            nodes = range(int(t.min() // GRID), int(t.max() // GRID) + 2)
+            if missing := [k for k in nodes if k not in cell.parts]:
+                run(partial(self._fill, cell, missing))
+            kelvin = [cell.node(k) for k in nodes]
+            for part in {p.entry: p for k in nodes for p in cell.parts[k]}.values():
+                known = [sum(p.coefficient for p in cell.parts[k] if p.entry == part.entry) for k in nodes]
+                add(part, mine, np.interp(t, kelvin, known))
+        return found
+
     def _look(self, wanted: Sequence[tuple[float, float]]) -> None:
         for t, p in wanted:
             try:
                 point = self._ask(None if t < 0 else t, None if p < 0 else p)
             except PropdbError as error:
-                self._memory[(t, p)] = (math.nan, math.nan, NO_DATA, out_of_range(error))
+                self._memory[(t, p)] = (math.nan, math.nan, NO_DATA, out_of_range(error), ())
                 continue
-            self._note(point)
+            self.used.add(point)
             flag = EXTRAPOLATED if point.extrapolated else OK
             reason = next((w for w in point.warnings if "extrapolated" in w), "") if point.extrapolated else ""
-            self._memory[(t, p)] = (point.value, point.standard, flag, reason)
+            self._memory[(t, p)] = (point.value, point.standard, flag, reason, point.parts)
+
+
+def _total(cell: Cell, rows: NDArray[np.intp], t: FloatArray, shared: Shared) -> FloatArray:
+    """Values [J/mol] of rows of one cell."""
+    total = np.full(len(t), cell.base)
+    for coefficient, equation in cell.members or ():
+        h = shared.h(equation, rows, t)
+        if coefficient == 1.0:
+            total += h
+        elif coefficient == -1.0:
+            total -= h
+        else:
+            total += coefficient * h
+    return total
+
+
+def _one_by_one(cell: Cell, rows: NDArray[np.intp], t: FloatArray) -> FloatArray:
+    """The same, NaN where an equation overflows."""
+    total = np.full(len(t), math.nan)
+    for i in range(len(t)):
+        with suppress(PropdbError):
+            total[i] = _total(cell, rows[i : i + 1], t[i : i + 1], Shared(t[i : i + 1], {}))[0]
+    return total
 
 
 def _hashable(pair: tuple[float, float]) -> tuple[float, float]:
@@ -274,7 +334,7 @@ def vary_shift(basis: Basis, species: Species, source: Datum, target: Datum, *, 
         return shift_at(levels, species, source, target, phase=phase, temperature=t)
 
     signed = [(sign, d) for sign, d in ((1.0, source), (-1.0, target)) if d.temperature == SAME_T]
-    return Varying(ask, _cells(levels, species, signed, phase=phase, own=None))
+    return Varying(ask, cells_of(levels, species, signed, phase=phase, own=None))
 
 
 def vary_enthalpy(
@@ -298,90 +358,6 @@ def vary_enthalpy(
         or (track is not None and not isinstance(track, Curve))
         or levels._tables.get(species.name)
     ):
-        return Varying(ask, [_Cell(0.0, math.inf, None)])
+        return Varying(ask, [Cell(0.0, math.inf, None)])
     signed = [(-1.0, target)] if target.temperature == SAME_T else []
-    return Varying(ask, _cells(levels, species, signed, phase=phase, own=state))
-
-
-def _cells(
-    levels: Levels, species: Species, signed: Sequence[tuple[float, Datum]], *, phase: str, own: State | None
-) -> list[_Cell]:
-    """Cut the axis wherever a member changes its equation, its form, or whether it can be at all."""
-    schedule = sorted(
-        {
-            upper
-            for _, datum in signed
-            for element, _ in species.composition
-            for upper, _ in datum.schedule.get(element, ())
-            if math.isfinite(upper)
-        }
-    )
-    cells: list[_Cell] = []
-    for low, high in zip([0.0, *schedule], [*schedule, math.inf], strict=True):
-        inside = _Cell(low, high, None).middle()
-        members: list[tuple[float, str, str, str]] = []
-        if own is not None:
-            members.append((1.0, species.name, own.phase, own.form))
-        try:
-            for sign, datum in signed:
-                for term in levels.zero_of(datum, species, phase=phase, temperature=inside).terms:
-                    if term.zero.temperature == SAME_T:
-                        state = State(term.zero.phase, None, term.zero.form)
-                        state = levels.check(term.species, state)
-                        members.append((sign * float(term.coefficient), term.species, state.phase, state.form))
-        except PropdbError:
-            cells.append(_Cell(low, high, None))
-            continue
-        cells += _pieces(levels, low, high, members)
-    return cells
-
-
-def _pieces(levels: Levels, low: float, high: float, members: Sequence[tuple[float, str, str, str]]) -> list[_Cell]:
-    tracks = []
-    marks: set[float] = set()
-    for coefficient, name, phase, form in members:
-        tree = levels.tree(name)
-        track = tree.tracks.get((phase, form))
-        if track is None and not levels._tables.get(name):
-            known = tuple(n.temperature for n in tree.nodes if (n.phase, n.form) == (phase, form))
-            return [_Cell(low, high, None, only=known)]
-        if not isinstance(track, Curve) or levels._tables.get(name):
-            return [_Cell(low, high, None)]
-        tracks.append((coefficient, track))
-        for i, piece in enumerate(track.pieces):
-            marks |= {piece.tmin - PRINTED_SLACK, piece.tmax + PRINTED_SLACK}
-            if i + 1 < len(track.pieces):
-                marks.add(track._border(i))
-        if phase == "l":
-            for quantity, slack in (("Tm", -MELTING_SLACK), ("Tc", 0.0)):
-                point = levels.value(name, quantity)
-                if point is not None:
-                    marks.add(point + slack)
-            if track.boiling is not None:
-                marks.add(track.boiling + BOILING_SLACK)
-    ends = [low, *sorted(t for t in marks if low < t < high), high]
-    cells = []
-    for a, b in zip(ends, ends[1:], strict=False):
-        inside = _Cell(a, b, None).middle()
-        chosen = [(coefficient, _equation(track, inside)) for coefficient, track in tracks]
-        complete = all(equation is not None for _, equation in chosen)
-        cells.append(_Cell(a, b, _merged(chosen) if complete else None))
-    return cells
-
-
-def _equation(track: Curve, t: float) -> Any:
-    """The equation that serves a temperature [K]; None where a heat capacity alone does not say the enthalpy."""
-    if track.phase == "l" and track.boiling is not None and t > track.boiling + BOILING_SLACK:
-        return None
-    borders = [track._border(i) for i in range(len(track.pieces) - 1)]
-    equation = track.pieces[bisect_left(borders, t)].equation
-    return None if getattr(equation, "unstated", ()) else equation
-
-
-def _merged(members: Sequence[tuple[float, Any]]) -> tuple[tuple[float, Any], ...]:
-    """Members that move along one equation are one; those that cancel are none."""
-    found: dict[int, tuple[float, Any]] = {}
-    for coefficient, equation in members:
-        old = found.get(id(equation), (0.0, equation))
-        found[id(equation)] = (old[0] + coefficient, equation)
-    return tuple((c, e) for c, e in found.values() if c)
+    return Varying(ask, cells_of(levels, species, signed, phase=phase, own=state))

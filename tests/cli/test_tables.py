@@ -91,6 +91,33 @@ def test_an_interrupt_leaves_nothing_behind(default_store: Path, samples: Path) 
     assert sorted(p.name for p in samples.iterdir()) == before
 
 
+@pytest.mark.extras
+@pytest.mark.skipif(sys.platform == "win32", reason="sends a signal the POSIX way")
+@pytest.mark.parametrize("pause", [0.0, 3.0])
+def test_an_interrupt_of_workers_is_quiet(default_store: Path, tmp_path: Path, pause: float) -> None:
+    """Ctrl-C reaches every process of a terminal; only the one that waits says something, and none stays."""
+    pq = pytest.importorskip("pyarrow.parquet")
+    pa = pytest.importorskip("pyarrow")
+    pytest.importorskip("distributed")
+    (tmp_path / "year").mkdir()
+    count = 400_000
+    columns = {"T [K]": [300.0 + i % 500 for i in range(count)], "h [kJ/kg]": [float(i) for i in range(count)]}
+    for i in range(8):
+        pq.write_table(pa.table(columns), tmp_path / "year" / f"{i}.parquet")
+    command = [sys.executable, "-m", "propdb", "convert-table", str(tmp_path / "year"), str(tmp_path / "out")]
+    command += ["--species", "methane", "--from", "gas-25C", "--to", "elements-same-T", "--workers", "1"]
+    run = subprocess.Popen(command, stdout=subprocess.PIPE, stderr=subprocess.PIPE, text=True, start_new_session=True)
+    while run.poll() is None and not any(tmp_path.glob(".*.part")):
+        time.sleep(0.02)
+    time.sleep(pause)
+    os.killpg(run.pid, signal.SIGINT)
+    out, err = run.communicate(timeout=60)
+    assert "Traceback" not in err
+    if run.returncode:  # it was not over before
+        assert run.returncode == 130
+        assert [path.name for path in tmp_path.iterdir()] == ["year"]
+
+
 def test_tabulate_shows_phases_and_entries(line: Any) -> None:
     done = line("tabulate water --datum elements-298K --low 80C --high 120C --step 20K")
     assert done.code == 0
@@ -107,3 +134,20 @@ def test_tabulate_refuses_in_one_line(line: Any, tmp_path: Path) -> None:
     assert "watr" in line("tabulate watr --datum elements-298K").problem
     assert "kW" in line("tabulate water --datum elements-298K --unit kW").problem
     assert ".doc" in line("tabulate", "water", "--datum", "elements-298K", "--out", str(tmp_path / "x.doc")).problem
+
+
+def test_tabulate_tells_why_below_the_table(line: Any) -> None:
+    done = line("tabulate iron iron --datum elements-298K --low 300K --high 1900K --step 400K")
+    assert done.code == 0
+    assert max(map(len, done.out.splitlines())) <= 100
+    assert "no data (1)" in done.out
+    assert "\n(1) iron, cr (alpha): the heat capacity does not reach 1100 K" in done.out
+    assert done.out.count("300.00") == 1
+
+
+@pytest.mark.extras
+def test_tabulate_to_a_file_is_summed_up(line: Any, samples: Path) -> None:
+    done = line("tabulate water --datum elements-298K --low 80C --high 120C --step 20K --out water.csv")
+    assert done.out.splitlines()[0] == "water.csv: 5 rows: 5 ok"
+    assert len(done.out.splitlines()) < 6
+    assert (samples / "water.csv").read_text(encoding="utf-8").count("\n") == 6

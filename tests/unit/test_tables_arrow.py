@@ -8,6 +8,7 @@ import math
 import subprocess
 import sys
 from collections.abc import Iterator
+from decimal import Decimal
 from functools import partial
 from pathlib import Path
 from typing import Any
@@ -228,6 +229,21 @@ def test_several_processes_give_the_same_bits(store: propdb.Store, tmp_path: Pat
         store.convert_table(source, tmp_path / "three", to=TO, scheduler="tcp://127.0.0.1:1")
 
 
+@pytest.mark.parametrize("mixture", [False, True])
+def test_workers_report_what_their_rows_stand_on(store: propdb.Store, tmp_path: Path, mixture: bool) -> None:
+    pytest.importorskip("distributed")
+    source = tmp_path / "year"
+    source.mkdir()
+    what = {"x[nitrogen]": [0.5, 1.0], "x[methane]": [0.5, 0.0]} if mixture else {"species": ["nitrogen", "methane"]}
+    pq.write_table(pa.table({**what, "phase": ["g", "g"], "T [K]": [400.0, 700.0]}), source / "a.parquet")
+    one = store.convert_table(source, tmp_path / "one", to=TO).data
+    two = store.convert_table(source, tmp_path / "two", to=TO, workers=1).data
+    assert len(two["kinds"]) == 2
+    assert all(kind["entries"] for kind in two["kinds"])
+    for part in ("kinds", "sources", "rows", "reasons", "datums", "columns", "input"):
+        assert one[part] == two[part], part
+
+
 def test_workers_for_one_file_are_refused(store: propdb.Store, tmp_path: Path) -> None:
     pq.write_table(random_table(5), tmp_path / "in.parquet")
     with pytest.raises(InvalidInput, match="directory of Parquet"):
@@ -334,3 +350,218 @@ def test_excel_refusals(store: propdb.Store, tmp_path: Path) -> None:
         store.convert_table(source, target, to=TO)
     assert not target.exists()
     assert not list(tmp_path.glob(".*"))
+
+
+def test_excel_keeps_values_and_formats(store: propdb.Store, tmp_path: Path) -> None:
+    import datetime as dt
+
+    openpyxl = pytest.importorskip("openpyxl")
+    from openpyxl.styles import Font, PatternFill
+    from openpyxl.worksheet.formula import ArrayFormula
+
+    book = openpyxl.Workbook()
+    page = book.active
+    page.append(["species", "h [kJ/kg]", "when", "n", "calc", "wrong"])
+    page.append(["nitrogen", 1.5, dt.datetime(2026, 1, 2, 3, 4, 5), 0.25, "=B2*2", "#N/A"])
+    page.append(["nitrogen", 2.5, dt.time(1, 2, 3), True, ArrayFormula("E3:E3", "=B2:B2*2"), "#DIV/0!"])
+    page["F2"].data_type = page["F3"].data_type = "e"
+    page["A1"].font = Font(bold=True)
+    page["A2"].fill = PatternFill("solid", fgColor="FFFF00")
+    page["B2"].number_format = "0.000"
+    page["D2"].number_format = "0.0%"
+    page["G3"].fill = PatternFill("solid", fgColor="FF0000")  # a format without a value, beside the table
+    book.save(tmp_path / "in.xlsx")
+    report = store.convert_table(tmp_path / "in.xlsx", tmp_path / "out.xlsx", to=TO, from_="gas-25C")
+    assert report.flags["ok"] == 2
+    assert "column widths" in str(report)
+    out = openpyxl.load_workbook(tmp_path / "out.xlsx").active
+    for row in page["A1:F3"]:
+        for cell in row:
+            new = out[cell.coordinate]
+            if cell.coordinate == "E3":
+                assert (new.value.text, new.value.ref) == ("=B2:B2*2", "E3:E3")
+            else:
+                assert (new.value, new.data_type) == (cell.value, cell.data_type), cell.coordinate
+            assert new.number_format == cell.number_format
+            assert (new.font.b, new.fill.fgColor.rgb) == (cell.font.b, cell.fill.fgColor.rgb)
+
+
+def test_excel_keeps_all_digits(store: propdb.Store, tmp_path: Path) -> None:
+    """Excel stores seventeen digits where a number needs them; so do the cells that are added."""
+    import zipfile
+
+    openpyxl = pytest.importorskip("openpyxl")
+    write_book(tmp_path / "some.xlsx", [["species", "datum", "h [kJ/kg]", "n"], ["methane", "gas-25C", 12.625, 123.75]])
+    with zipfile.ZipFile(tmp_path / "some.xlsx") as old, zipfile.ZipFile(tmp_path / "in.xlsx", "w") as new:
+        for name in old.namelist():
+            data = old.read(name).replace(b"<v>12.625</v>", b"<v>0.30000000000000004</v>")
+            new.writestr(name, data.replace(b"<v>123.75</v>", b"<v>2.0000000000000004</v>"))
+    store.convert_table(tmp_path / "in.xlsx", tmp_path / "out.xlsx", to=TO)
+    row = [cell.value for cell in openpyxl.load_workbook(tmp_path / "out.xlsx").active[2]]
+    assert row[2:4] == [0.30000000000000004, 2.0000000000000004]
+    table = pa.table({"species": ["methane"], "datum": ["gas-25C"], "h [kJ/kg]": [0.30000000000000004]})
+    pq.write_table(table, tmp_path / "in.parquet")
+    store.convert_table(tmp_path / "in.parquet", tmp_path / "out.parquet", to=TO)
+    assert row[4] == pq.read_table(tmp_path / "out.parquet").column(3)[0].as_py()
+
+
+def test_excel_empty_rows_are_none_of_the_table(store: propdb.Store, tmp_path: Path) -> None:
+    openpyxl = pytest.importorskip("openpyxl")
+    rows = [["species", "h [kJ/kg]"], ["methane", 1.0], [None, None], ["methan", 2.0], ["methane", "1,234.5"], [None]]
+    write_book(tmp_path / "in.xlsx", rows)
+    report = store.convert_table(tmp_path / "in.xlsx", tmp_path / "out.xlsx", to=TO, from_="gas-25C")
+    assert report.data["rows"]["total"] == 3
+    assert [sample["row"] for sample in report.data["first_rows_not_ok"]] == [3, 4]
+    assert "is text, not a number" in report.data["first_rows_not_ok"][1]["reason"]
+    out = openpyxl.load_workbook(tmp_path / "out.xlsx").active
+    assert [cell.value for cell in out[3]] == [None] * 7
+    assert out["F4"].value == "bad row"
+
+
+def test_excel_sheets_and_headers(store: propdb.Store, tmp_path: Path) -> None:
+    openpyxl = pytest.importorskip("openpyxl")
+    good: list[list[Any]] = [["species", "datum", "h [kJ/kg]"], ["methane", "gas-25C", 1.0]]
+    write_book(tmp_path / "in.xlsx", good, ("cover", "data"))
+    book = openpyxl.load_workbook(tmp_path / "in.xlsx")
+    book["cover"].sheet_state = "hidden"
+    book.active = 1
+    book.save(tmp_path / "in.xlsx")
+    report = store.convert_table(tmp_path / "in.xlsx", tmp_path / "out.xlsx", to=TO)
+    assert report.clean
+    assert "nor are other sheets (cover)" in report.data["notes"][-1]
+    assert openpyxl.load_workbook(tmp_path / "out.xlsx").sheetnames == ["data"]
+    for above in ([["Data sheet 12"]], [[None]], [["Data sheet 12"], [None]]):
+        write_book(tmp_path / "in.xlsx", above + good)
+        with pytest.raises(InvalidInput, match=f"row {len(above) + 1} does; delete the rows above"):
+            store.convert_table(tmp_path / "in.xlsx", tmp_path / "out.xlsx", to=TO, overwrite=True)
+    with pytest.raises(InvalidInput, match="macros"):
+        store.convert_table(tmp_path / "in.xlsx", tmp_path / "out.xlsm", to=TO)
+    (tmp_path / "old.xlsx").write_bytes(bytes.fromhex("d0cf11e0a1b11ae1") + b"\0" * 512)
+    with pytest.raises(InvalidInput, match=r"\.xls workbook or has a password"):
+        store.convert_table(tmp_path / "old.xlsx", tmp_path / "new.xlsx", to=TO)
+
+
+def test_a_damaged_sheet_is_one_line(store: propdb.Store, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """And nothing else is printed, when the half-written output is thrown away."""
+    import gc
+    import sys
+    import zipfile
+
+    pytest.importorskip("openpyxl")
+    write_book(tmp_path / "some.xlsx", [["species", "datum", "h [kJ/kg]"], *[["methane", "gas-25C", 1.0]] * 100])
+    with zipfile.ZipFile(tmp_path / "some.xlsx") as old, zipfile.ZipFile(tmp_path / "in.xlsx", "w") as new:
+        for name in old.namelist():
+            data = old.read(name)
+            new.writestr(name, data[: len(data) // 2] if name.endswith("sheet1.xml") else data)
+    heard: list[Any] = []
+    monkeypatch.setattr(sys, "unraisablehook", heard.append)
+    with pytest.raises(InvalidInput, match="cannot be read as a workbook"):
+        store.convert_table(tmp_path / "in.xlsx", tmp_path / "out.xlsx", to=TO)
+    gc.collect()
+    assert not heard
+    assert sorted(path.name for path in tmp_path.iterdir()) == ["in.xlsx", "some.xlsx"]
+
+
+HUGE = {
+    "infinite": (pa.array([1.0, math.inf]), "no enthalpy"),
+    "float": (pa.array([1.0, 1e308]), "the enthalpy is too large"),
+    "integer": (pa.array([1, 2**62]), "the enthalpy is too large"),
+    "unsigned": (pa.array([1, 2**64 - 1], pa.uint64()), "the enthalpy is too large"),
+    "decimal": (pa.array([Decimal("1.25"), Decimal("9" * 36 + ".25")], pa.decimal128(38, 2)), "too large"),
+}
+
+
+@pytest.mark.filterwarnings("error")
+@pytest.mark.parametrize("kind", HUGE)
+def test_a_number_that_is_too_large_is_a_bad_row(store: propdb.Store, tmp_path: Path, kind: str) -> None:
+    column, words = HUGE[kind]
+    table = pa.table({"species": ["methane"] * 2, "h [kJ/kg]": column})
+    pq.write_table(table, tmp_path / "in.parquet")
+    report = store.convert_table(tmp_path / "in.parquet", tmp_path / "out.parquet", to=TO, from_="gas-25C")
+    out = pq.read_table(tmp_path / "out.parquet")
+    assert out.select(table.schema.names).equals(table)
+    assert out.column("flag").to_pylist() == ["ok", "bad row"]
+    assert words in out.column("reason")[1].as_py()
+    assert out.column(2)[1].as_py() is None
+    assert report.flags["bad row"] == 1
+
+
+@pytest.mark.filterwarnings("error")
+def test_numbers_that_are_none_in_any_column(store: propdb.Store, tmp_path: Path) -> None:
+    odd = [1.0, math.inf, -math.inf, math.nan, None, 1e308]
+    table = pa.table(
+        {
+            "species": ["water"] * 6, "phase": ["fluid"] * 6, "T [K]": [500.0] * 6, "p [bar]": odd,
+            "flow [kg/h]": odd[::-1], "side": ["in", "out"] * 3,
+        }
+    )  # fmt: skip
+    pq.write_table(table, tmp_path / "in.parquet")
+    report = store.convert_table(tmp_path / "in.parquet", tmp_path / "out.parquet", to=TO, across=True)
+    assert report.flags == {"ok": 1, "extrapolated": 0, "no data": 0, "bad row": 5}
+    assert sum(stream["rows_left_out"] for stream in report.data["streams"]["streams"]) == 6
+    pq.write_table(table.drop_columns(["p [bar]", "side"]), tmp_path / "in.parquet")
+    options: dict[str, Any] = {"to": TO, "phase": None, "pressure": "1bar", "overwrite": True}
+    report = store.convert_table(tmp_path / "in.parquet", tmp_path / "out.parquet", **options)
+    assert report.data["streams"]["streams"][0]["rows_left_out"] == 5
+
+
+@pytest.mark.parametrize("hot", [1e308, 1e-300])
+def test_an_extreme_temperature_spoils_no_other_row(store: propdb.Store, tmp_path: Path, hot: float) -> None:
+    table = pa.table({"species": ["nitrogen", "methane"] * 2, "phase": ["g"] * 4, "T [K]": [500.0, hot, hot, 700.0]})
+    pq.write_table(table, tmp_path / "in.parquet")
+    report = store.convert_table(tmp_path / "in.parquet", tmp_path / "out.parquet", to=TO, extrapolate=True)
+    out = pq.read_table(tmp_path / "out.parquet").to_pylist()
+    assert [row["flag"] for row in out][::3] == ["ok", "ok"]
+    assert report.flags["ok"] == 2
+    for row in (out[0], out[3]):
+        one = store.enthalpy(row["species"], phase="g", temperature=row["T [K]"], datum=TO)
+        assert row[f"h on {TO} [kJ/mol]"] == pytest.approx(one.value, rel=1e-12)
+    assert not any(" K to " in (row["reason"] or "") for row in out)
+
+
+def test_the_type_of_text_does_not_matter(store: propdb.Store, tmp_path: Path) -> None:
+    for kind in (pa.string(), pa.large_string(), pa.string_view()):
+        table = pa.table({"species": pa.array(["methane", None], kind), "h [kJ/kg]": [1.0, 2.0]})
+        pq.write_table(table, tmp_path / "in.parquet")
+        options: dict[str, Any] = {"to": TO, "from_": "gas-25C", "overwrite": True}
+        report = store.convert_table(tmp_path / "in.parquet", tmp_path / "out.parquet", **options)
+        assert report.flags["ok"] == 1
+        assert pq.read_table(tmp_path / "out.parquet").schema.field("species").type == kind
+
+
+def test_a_directory_is_replaced_whole_or_not_at_all(
+    store: propdb.Store, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    import os
+
+    from propdb.tables import output
+
+    (tmp_path / "year").mkdir()
+    pq.write_table(random_table(5), tmp_path / "year" / "a.parquet")
+    (tmp_path / "out").mkdir()
+    (tmp_path / "out" / "old").write_text("old", encoding="utf-8")
+    replace = os.replace
+
+    def full(source: Any, target: Any) -> None:
+        if str(source).endswith(".part") and Path(target).name == "out":
+            raise OSError(28, "No space left on device")
+        replace(source, target)
+
+    monkeypatch.setattr(output.os, "replace", full)
+    with pytest.raises(PropdbError, match="No space left"):
+        store.convert_table(tmp_path / "year", tmp_path / "out", to=TO, overwrite=True)
+    assert sorted(p.name for p in tmp_path.iterdir()) == ["out", "year"]
+    assert [p.name for p in (tmp_path / "out").iterdir()] == ["old"]
+    monkeypatch.undo()
+    store.convert_table(tmp_path / "year", tmp_path / "out", to=TO, overwrite=True)
+    assert sorted(p.name for p in tmp_path.iterdir()) == ["out", "out.propdb.json", "year"]
+    assert [p.name for p in (tmp_path / "out").iterdir()] == ["a.parquet"]
+
+
+@pytest.mark.skipif(sys.platform == "win32", reason="has no named pipes in directories")
+def test_a_pipe_is_refused(store: propdb.Store, tmp_path: Path) -> None:
+    import os
+
+    os.mkfifo(tmp_path / "in.csv")
+    with pytest.raises(InvalidInput, match="neither a file nor a directory"):
+        store.convert_table(tmp_path / "in.csv", tmp_path / "out.csv", to=TO)

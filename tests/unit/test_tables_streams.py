@@ -179,7 +179,7 @@ def test_mass_flows_and_mixtures(store: propdb.Store, tmp_path: Path) -> None:
         x * store.enthalpy(name, phase="g", temperature="525C", datum="gas-25C").value
         for name, x in (("nitrogen", 0.79), ("oxygen", 0.21))
     )
-    molar = 0.79 * 28.0134e-3 + 0.21 * 31.9988e-3
+    molar = 0.79 * 28.014e-3 + 0.21 * 31.9988e-3
     assert found["duty"] == pytest.approx(per_mol / molar, rel=1e-4)
     assert found["streams"][0]["flow_mass"] == pytest.approx(1.0)
 
@@ -259,3 +259,92 @@ def test_the_sidecar_names_what_heats_a_row(store: propdb.Store, tmp_path: Path,
         assert kind["from"] is None
         assert set(kind["entries"]) >= {step.entry for step in one.steps if step.entry}
         assert any(step.what == "heating" for step in one.steps) == (to != "elements-same-T" or name != "oxygen")
+
+
+def run(store: propdb.Store, folder: Path, text: str, **options: Any) -> dict[str, Any]:
+    (folder / "in.csv").write_text(text, encoding="utf-8")
+    report = store.convert_table(folder / "in.csv", folder / "out.csv", overwrite=True, **options)
+    return dict(report.data)
+
+
+def test_the_duty_of_evaluated_rows_is_as_uncertain_as_the_heat_of_reaction(
+    store: propdb.Store, tmp_path: Path
+) -> None:
+    """A stream that is written in two rows is as uncertain as in one: both stand on the same entries."""
+    text = (
+        "side,species,phase,T [C],flow [mol/s]\nin,carbon monoxide,g,25,2\nin,oxygen,g,25,1\n"
+        "out,carbon dioxide,g,25,1\nout,carbon dioxide,g,25,0.5\nout,carbon dioxide,g,25,0.5\n"
+    )
+    found = run(store, tmp_path, text, to="elements-298K")["streams"]
+    one = store.reaction("CO(g) + 1/2 O2(g) -> CO2(g)", temperature="25C")
+    assert found["duty"] == pytest.approx(2 * one.value)
+    assert found["duty_uncertainty"] == pytest.approx(2 * one.uncertainty)
+
+
+@pytest.mark.parametrize("phase, pressure", [("l", ""), ("fluid", "10")])
+def test_what_inlets_and_outlets_share_cancels_in_the_duty(
+    store: propdb.Store, tmp_path: Path, phase: str, pressure: str
+) -> None:
+    text = f"side,species,phase,T [C],p [bar],flow [mol/s]\nin,water,l,25,1,2\nout,water,{phase},70,{pressure or 1},2\n"
+    found = run(store, tmp_path, text, to="elements-298K")["streams"]
+    state = {"phase": phase, "temperature": "70C", "pressure": f"{pressure}bar" if pressure else None}
+    one = store.enthalpy("water", datum="own:l@25C", **state)
+    assert one.uncertainty is not None
+    assert found["duty"] == pytest.approx(2 * one.value, rel=1e-6)
+    assert found["duty_uncertainty"] == pytest.approx(2 * one.uncertainty, rel=0.02)
+
+
+def test_a_mixture_is_as_uncertain_as_its_parts_in_two_streams(store: propdb.Store, tmp_path: Path) -> None:
+    """At the temperature of the state both stand on the heat capacities of the same elements."""
+    mixed = "side,x[carbon dioxide],x[carbon monoxide],phase,T [C],flow [mol/s]\nin,1,0,g,25,1\nout,0.5,0.5,g,25,4\n"
+    apart = (
+        "side,species,phase,T [C],flow [mol/s]\nin,carbon dioxide,g,25,1\n"
+        "out,carbon dioxide,g,25,2\nout,carbon monoxide,g,25,2\n"
+    )
+    first = run(store, tmp_path, mixed, to="elements-298K")["streams"]
+    second = run(store, tmp_path, apart, to="elements-298K")["streams"]
+    assert first["duty"] == pytest.approx(second["duty"])
+    assert first["duty_uncertainty"] == pytest.approx(second["duty_uncertainty"])
+    assert first["duty_uncertainty"] > 0.0
+
+
+def test_sources_without_an_uncertainty_are_named(store: propdb.Store, tmp_path: Path) -> None:
+    text = "side,species,phase,T [C],flow [mol/s]\nin,nitrogen,g,25,1\nout,nitrogen,g,180,1\n"
+    found = run(store, tmp_path, text, to="elements-298K")
+    entry = next(iter(found["kinds"][0]["entries"]))
+    assert found["streams"]["duty_uncertainty"] is None
+    assert found["streams"]["duty_uncertainty_note"] == f"not stated by nasa-tp-2002-211556 [{entry[:8]}]"
+    assert found["kinds"][0]["entries"] == {entry: "nasa-tp-2002-211556"}
+
+
+def test_streams_that_enter_no_total_are_named(store: propdb.Store, tmp_path: Path) -> None:
+    head = "side,species,datum,h [kJ/mol],flow [mol/s]\n"
+    rows = [f"{side},nitrogen,gas-25C,1.0,{flow}" for side, flow in (("in", 2), ("Outlet", 1), ("up", 1), ("", 1))]
+    found = run(store, tmp_path, head + "\n".join([*rows, "in,nitrogen,gas-25C,1.0,-1"]) + "\n", to="gas-25C")[
+        "streams"
+    ]
+    assert (found["total_in"], found["total_out"]) == pytest.approx((1.0, 1.0))
+    assert found["notes"] == [
+        "neither in nor out, and in no total: side 'up'",
+        "streams without a side are in no total",
+        "1 row has a negative flow, which is added up with the sign",
+    ]
+
+
+#: A flow that carries 1 mol/s, in many units. Molar volumes at 0 °C and 1 atm, 60 °F and 1 atm: 22.41397 L/mol,
+#: 379.484 ft3/lbmol; nitrogen has 28.014 g/mol (CIAAW, abridged).
+UNITS = {
+    "kmol/h": 3.6, "mol/min": 60.0, "lbmol/h": 3600 / 453.59237, "kg/h": 3.6 * 28.014, "t/d": 0.0864 * 28.014,
+    "g/s": 28.014, "lb/hr": 3.6 * 28.014 / 0.45359237, "klb/h": 3.6e-3 * 28.014 / 0.45359237,
+    "Nm3/h": 3.6 * 22.41397, "Nm³/h": 3.6 * 22.41397, "kNm3/h": 3.6e-3 * 22.41397,
+    "scf/h": 3600 / 453.59237 * 379.484, "MMSCFD": 86400e-6 / 453.59237 * 379.484,
+    "MMscf/d": 86400e-6 / 453.59237 * 379.484,
+}  # fmt: skip
+
+
+@pytest.mark.parametrize("unit", UNITS)
+def test_units_of_flow(store: propdb.Store, tmp_path: Path, unit: str) -> None:
+    text = f"species,datum,h [kJ/mol],flow [{unit}]\nnitrogen,gas-25C,1000.0,{UNITS[unit]!r}\n"
+    found = run(store, tmp_path, text, to="gas-25C")["streams"]
+    assert found["total"] == pytest.approx(1000.0, rel=2e-5)
+    assert found["streams"][0]["flow_amount"] == pytest.approx(1.0, rel=2e-5)

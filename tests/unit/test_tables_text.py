@@ -14,7 +14,7 @@ from typing import Any
 import pytest
 
 import propdb
-from propdb.errors import InvalidInput, NotFound, PropdbError, UnitError
+from propdb.errors import InvalidInput, NotFound, PressureError, PropdbError, UnitError
 
 pytestmark = pytest.mark.extras
 pytest.importorskip("pyarrow")
@@ -89,7 +89,7 @@ def test_a_shift_that_depends_on_temperature(store: propdb.Store, convert: Conve
         assert float(row["h on elements-same-T [kJ/kg]"]) == pytest.approx(answer.value, abs=0.5001e-4)
     for row in rows:
         if row["flag"] == "no data":
-            assert "outside the data at this temperature" in row["reason"]
+            assert "outside the data" in row["reason"]
             with pytest.raises(PropdbError):
                 store.convert("0", "kJ/kg", species=row["species"], from_=row["datum"], to="elements-same-T",
                               temperature=float(row["T [K]"]), phase="g")  # fmt: skip
@@ -203,7 +203,7 @@ def test_bad_rows_are_flagged_and_kept(convert: Convert) -> None:
     assert "thousands" in reasons[7]
     assert "did you mean methane" in reasons[12]
     assert reasons[13] == "no species"
-    assert "1 fields where the header has 2" in reasons[14]
+    assert "1 field where the header has 2" in reasons[14]
     assert raw.splitlines()[3].startswith(b'methane,"1,234.5",')
     assert not report.clean
     assert report.data["first_rows_not_ok"][0]["row"] == 2
@@ -239,7 +239,7 @@ def test_evaluate(store: propdb.Store, convert: Convert) -> None:
         answer = store.enthalpy(**state, datum="elements-298K", unit="kJ/kg")  # type: ignore[arg-type]
         assert float(rows[i][H]) == pytest.approx(answer.value, abs=0.501e-3)
         assert rows[i]["flag"] == "ok"
-    assert (rows[3]["flag"], rows[3]["reason"]) == ("bad row", "no temperature above 0 K")
+    assert (rows[3]["flag"], rows[3]["reason"]) == ("bad row", "a temperature that is not above 0 K")
     assert rows[4]["flag"] in ("ok", "no data")
     assert "forms" in rows[5]["reason"]
     assert "20000 K" in rows[6]["reason"] or "6000 K" in rows[6]["reason"]
@@ -276,6 +276,96 @@ def test_extrapolated_rows_are_marked(convert: Convert) -> None:
     _, rows, _ = convert(text, extrapolate=True)
     assert [row["flag"] for row in rows] == ["ok", "extrapolated"]
     assert "extrapolated" in rows[1]["reason"]
+
+
+STATES = "T [C],p [bar]\n100,\n,1\n100,1\n-300,1\n-300,\n,-1\n,0\n,\n"
+
+
+def test_rows_that_do_not_say_a_saturated_state(store: propdb.Store, convert: Convert) -> None:
+    """A number below zero is not one that is missing: the other column must not take its place."""
+    report, rows, _ = convert(STATES, species="water", phase="fluid", saturated="vapour")
+    assert [row["flag"] for row in rows] == ["ok", "ok", *["bad row"] * 6]
+    for row, state in zip(rows, ({"temperature": "100C"}, {"pressure": "1bar"}), strict=False):
+        one = store.enthalpy("water", phase="fluid", saturated="vapour", datum="elements-298K", **state)
+        assert float(row["h on elements-298K [kJ/mol]"]) == pytest.approx(one.value, abs=0.501e-3)
+    assert [row["reason"] for row in rows[2:]] == [
+        "a saturated state has a temperature or a pressure, not both",
+        "a temperature that is not above 0 K",
+        "a temperature that is not above 0 K",
+        "a pressure that is not above 0",
+        "a pressure that is not above 0",
+        "neither a temperature nor a pressure",
+    ]
+    assert {r["reason"]: (r["rows"], r["first_row"]) for r in report.data["reasons"]} == {
+        rows[2]["reason"]: (1, 3), rows[3]["reason"]: (2, 4), rows[5]["reason"]: (2, 6), rows[7]["reason"]: (1, 8),
+    }  # fmt: skip
+    assert "(first in row 4)" in str(report)
+    assert all(len(line) <= 100 for line in str(report).splitlines())
+
+
+def test_rows_of_the_real_fluid_need_a_pressure(convert: Convert) -> None:
+    _, rows, _ = convert("T [C],p [bar]\n250,10\n250,\n250,-1\n250,0\n", species="water", phase="fluid")
+    assert [row["flag"] for row in rows] == ["ok", "bad row", "bad row", "bad row"]
+    assert rows[1]["reason"] == "no pressure, which the real fluid needs"
+    assert rows[2]["reason"] == rows[3]["reason"] == "a pressure that is not above 0"
+
+
+def test_liquid_water_under_pressure_is_liquid(store: propdb.Store, convert: Convert) -> None:
+    """Saturated water at 100 °C has 419.1 kJ/kg, steam at 150 °C and 1 bar 2776.6 kJ/kg: steam tables on IAPWS-95."""
+    text = "T [C],p [bar]\n100,1\n100,1.01325\n100,100\n150,1\n150,5\n25,-1\n25,0\n25,\n"
+    options = {"species": "water", "phase": "l", "to": "steam-triple-point", "unit": "kJ/kg"}
+    _, rows, _ = convert(text, **options)
+    assert [row["flag"] for row in rows] == ["ok", "ok", "ok", "no data", "ok", "bad row", "bad row", "ok"]
+    h = [float(row["h on steam-triple-point [kJ/kg]"] or "nan") for row in rows]
+    assert h[0] == pytest.approx(419.1, abs=0.1)
+    assert h[1] == pytest.approx(419.1, abs=0.1)
+    assert 5.0 < h[2] - h[1] < 10.0  # v dp, 0.00104 m3/kg x 99 bar, less its thermal part
+    assert "it has boiled at this pressure" in rows[3]["reason"]
+    with pytest.raises(PropdbError, match=r"no liquid at 423\.15 K and 1 bar: it boils at 372\.7"):
+        store.enthalpy("water", phase="l", temperature="150C", pressure="1bar", datum="steam-triple-point")
+
+
+def test_the_reason_of_a_row_is_its_own(convert: Convert) -> None:
+    """What is known at one temperature only says so, whichever rows stand beside it."""
+    one = "species,phase,T [C]\nammonia,aq,60\n"
+    reasons = {convert(text)[1][0]["reason"] for text in (one, one + "ammonia,aq,25\n", one + "ammonia,aq,70\n")}
+    assert reasons == {"outside the data; known at 298.15 K only"}
+    assert [row["flag"] for row in convert(one + "ammonia,aq,25\n")[1]] == ["no data", "ok"]
+
+
+def test_gauge_pressure_with_its_atmosphere(store: propdb.Store, convert: Convert) -> None:
+    text = "T [C],p [bar(g)]\n250,39\n"
+    _, rows, _ = convert(text, species="water", phase="fluid", units=["pressure=bar(g)+1bar"])
+    one = store.enthalpy("water", phase="fluid", temperature="250C", pressure="40bar", datum="elements-298K")
+    assert float(rows[0]["h on elements-298K [kJ/mol]"]) == pytest.approx(one.value, abs=0.501e-3)
+
+
+@pytest.mark.parametrize("bad", ["", "x"])
+def test_a_temperature_that_no_row_needs_spoils_none(convert: Convert, bad: str) -> None:
+    """Whether a block is read field by field or not: a constant shift does not look at the temperature."""
+    text = f"species,datum,T [K],h [kJ/kg]\nmethane,gas-25C,abc,1.5\nmethane,gas-25C,300,1.5{bad}\n"
+    _, rows, _ = convert(text)
+    assert rows[0]["flag"] == "ok"
+    _, rows, _ = convert(text, to="elements-same-T")
+    assert (rows[0]["flag"], rows[0]["reason"]) == ("bad row", "T [K]: 'abc' is not a number")
+
+
+@pytest.mark.parametrize("bad", ["2", "x"])
+def test_an_empty_line_of_one_column_is_an_empty_cell(convert: Convert, bad: str) -> None:
+    report, _, raw = convert(f"h [kJ/kg]\n1\n\n{bad}\n", from_="gas-25C", species="nitrogen")
+    assert raw.splitlines()[2] == b",,,,bad row,no enthalpy"
+    assert sum(report.flags.values()) == 3
+
+
+def test_dry_compositions(store: propdb.Store, convert: Convert) -> None:
+    text = "x[nitrogen],x[7732-18-5],h [kJ/mol]\n1,0.25,0.000\n0,1,0\n1,1.1,0\n0.9,0.1,0\n"
+    _, rows, _ = convert(text, from_="gas-25C", composition="dry")
+    assert [row["flag"] for row in rows] == ["ok", "ok", "bad row", "bad row"]
+    one = store.convert("0 kJ/mol", species="water", from_="gas-25C", to="elements-298K").value
+    assert float(rows[0]["h on elements-298K [kJ/mol]"]) == pytest.approx(0.25 * one, abs=0.501e-3)
+    assert float(rows[1]["h on elements-298K [kJ/mol]"]) == pytest.approx(one, abs=0.501e-3)
+    assert rows[2]["reason"] == "more water than the whole"
+    assert rows[3]["reason"] == "the fractions sum to 0.9, not to 1"
 
 
 def test_mixtures(store: propdb.Store, convert: Convert) -> None:
@@ -358,6 +448,35 @@ REFUSED: list[tuple[str | bytes, dict[str, Any], type[PropdbError], tuple[str, .
     ('species,"datum,h [kJ/kg]\nmethane,gas-25C,1\n', {}, InvalidInput, ("header", "never closed")),
     ("x[methane],w[water],h [kJ/kg]\n0.5,0.5,1\n", {"from_": "gas-25C"}, InvalidInput, ("one kind",)),
     ("x[methane],x[methane],h [kJ/kg]\n0.5,0.5,1\n", {"from_": "gas-25C"}, InvalidInput, ("two composition",)),
+    ("x[nitrogen],x[N2],h [kJ/kg]\n0.5,0.5,1\n", {"from_": "gas-25C"}, InvalidInput, ("two composition", "x[N2]")),
+    ("species,x[methane],h [kJ/kg]\nwater,1,1\n", {"from_": "gas-25C"}, InvalidInput, ("'species'", "'x[methane]'")),
+    (
+        "x[methane],h [kJ/kg]\n1,1\n",
+        {"from_": "gas-25C", "species": "water"},
+        InvalidInput,
+        ("--species", "'x[methane]'"),
+    ),
+    (
+        "x[methane],h [kJ/kg]\n1,1\n",
+        {"from_": "gas-25C", "composition": "dry"},
+        InvalidInput,
+        ("no column of water", "--composition"),
+    ),
+    (GOOD, {"composition": "dry"}, InvalidInput, ("--composition",)),
+    ("Stream report\n\n" + GOOD, {}, InvalidInput, ("row 3 does", "delete the rows above")),
+    ("species,datum,h [kJ/kg] [kJ/mol]\nmethane,gas-25C,1\n", {}, InvalidInput, ("two units", "[kJ/mol]")),
+    (
+        "species,phase,T [C],p [barg]\nwater,fluid,250,9\n",
+        {},
+        PressureError,
+        ("gauge", "--units pressure=barg+1.01325bar"),
+    ),
+    (
+        "species,datum,h [kJ/kg],flow [m3/h]\nmethane,gas-25C,1,1\n",
+        {},
+        UnitError,
+        ("'m3/h'", "temperature and pressure"),
+    ),
 ]
 
 
@@ -393,6 +512,23 @@ def test_paths_are_refused(store: propdb.Store, tmp_path: Path) -> None:
         store.convert_table(tmp_path / "nowhere.csv", tmp_path / "out.csv", to="elements-298K")
     assert (tmp_path / "there.csv").read_text(encoding="utf-8") == "mine"
     assert sorted(p.name for p in tmp_path.iterdir()) == ["in.csv", "link.csv", "there.csv"]
+
+
+@pytest.mark.parametrize("cell", ["1.5", "x"])
+def test_a_very_long_cell(convert: Convert, cell: str) -> None:
+    long = "a" * 200_000
+    report, _, raw = convert(f"h [kJ/kg],{long}\n{cell},{long}\n2.5,b\n", from_="gas-25C", species="nitrogen")
+    assert report.flags["ok"] == (2 if cell == "1.5" else 1)
+    assert raw.splitlines()[1].startswith(f"{cell},{long},".encode())
+
+
+def test_names_from_a_file_do_not_reach_the_terminal_raw(convert: Convert) -> None:
+    text = (
+        'stream,species,datum,h [kJ/mol],flow [mol/s]\n"\x1b[31mred\n",nitrogen,gas-25C,1.0,1\n,\x1b[0m,gas-25C,1.0,1\n'
+    )
+    report, _, _ = convert(text, to="gas-25C")
+    assert "\x1b" not in str(report)
+    assert "\\x1b[31mred" in str(report)
 
 
 def test_an_interrupt_leaves_nothing(store: propdb.Store, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:

@@ -147,3 +147,10 @@ def test_a_file_that_exists_stays(store: propdb.Store, tmp_path: Path) -> None:
     assert place.read_text(encoding="utf-8") == "mine"
     store.tabulate("nitrogen", datum="gas-25C", out=place, overwrite=True)
     assert "nitrogen" in place.read_text(encoding="utf-8")
+
+
+def test_the_source_of_a_heat_capacity_is_named_where_nothing_is_heated(store: propdb.Store) -> None:
+    table = store.tabulate("ethanol", datum="liquid-25C", phase="l", low="25C", high="50C", step="25K")
+    assert table.lines[0].h == 0.0
+    assert table.lines[0].entries == table.lines[1].entries
+    assert table.lines[0].sources == table.lines[1].sources != ()
