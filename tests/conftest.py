@@ -15,7 +15,7 @@ if TYPE_CHECKING:
 
 ROOT = Path(__file__).resolve().parent.parent
 
-#: Fixtures that read all the files of the chemicals library: half a minute and more for each worker.
+#: Fixtures that read all the files of the chemicals library, a quarter of a minute: one worker runs all that need them.
 OPEN_DATA = {"package", "full_store"}
 
 
@@ -24,11 +24,11 @@ def pytest_addoption(parser: pytest.Parser) -> None:
 
 
 def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item]) -> None:
-    if config.getoption("--full"):
-        return
     for item in items:
-        if "full" in item.keywords or OPEN_DATA & set(getattr(item, "fixturenames", ())):
+        if "full" in item.keywords and not config.getoption("--full"):
             item.add_marker(pytest.mark.skip(reason="long; runs with --full"))
+        if OPEN_DATA & set(getattr(item, "fixturenames", ())):
+            item.add_marker(pytest.mark.xdist_group("open-data"))
 
 
 @pytest.fixture(scope="session")
