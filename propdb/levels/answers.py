@@ -141,7 +141,8 @@ class Derivation:
         keys |= {e.source for e in self.entries().values()}
         return {key: self.levels.data.source(key) for key in sorted(keys)}
 
-    def warnings(self) -> list[str]:
+    def warnings(self, *, judged: bool = True) -> list[str]:
+        """What a reader must mind; ``judged``: also what others contradict, for which all closures are computed."""
         found: list[str] = []
         entries = self.entries()
         for leg in self.legs:
@@ -153,7 +154,8 @@ class Derivation:
             if e.status in ("disputed", "estimate"):
                 reason = f": {e.note}" if e.note else ""
                 found.append(f"{e.species}: {e.quantity} of {e.source} [{e.id[:8]}] is {e.status}{reason}")
-        found += contradictions(self._judged(), self.unit.text)
+        if judged:
+            found += contradictions(self._judged(), self.unit.text)
         pinned = self.levels.policy.pinned
         if pinned:
             off = sorted({leg.source for leg in self.legs if leg.source and leg.source not in pinned})

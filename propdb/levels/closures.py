@@ -8,7 +8,7 @@ from typing import NamedTuple
 
 from propdb.errors import PropdbError
 from propdb.levels.curves import Curve
-from propdb.levels.engine import Levels, Way
+from propdb.levels.engine import Levels, Way, passes
 from propdb.levels.parts import Leg, add_parts, combined, ranking_uncertainty
 from propdb.levels.policy import choose
 from propdb.levels.tree import Move
@@ -42,18 +42,11 @@ def judged_closures(levels: Levels, ways: Way, *, per: float) -> tuple[Judged, .
     """
     found: list[Judged] = []
     for _, name, moves in ways:
-        edges = {id(m.edge) for m in moves if m.edge is not None}
-        tracks = {id(m.track) for m in moves if m.track is not None}
+        used = passes(moves)
         tree = levels.tree(name)
         for edge in tree.unused:
-            loop = tree.way(edge.start, edge.end)
-            if loop is None:
-                continue
-            shared = any(
-                (m.edge is not None and id(m.edge) in edges) or (m.track is not None and id(m.track) in tracks)
-                for m in loop
-            )
-            if not shared and edge.start != edge.end:
+            loop = levels.loop(name, edge)
+            if loop is None or (loop.isdisjoint(used) and edge.start != edge.end):
                 continue
             result = levels.closure_error(name, edge)
             if result is None or not edge.leg.source:

@@ -5,7 +5,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import replace
 from fractions import Fraction
 
@@ -44,6 +44,11 @@ NONMETALS = frozenset(("H", "D", "B", "C", "N", "O", "F", "Si", "P", "S", "Cl", 
 Way = list[tuple[float, str, list[Move]]]  # (coefficient, species, moves)
 
 
+def passes(moves: Iterable[Move]) -> frozenset[int]:
+    """The edges and curves that a way goes along, by their ids: what two ways have in common."""
+    return frozenset(id(x) for m in moves for x in (m.edge, m.track) if x is not None)
+
+
 class Levels(States):
     """Levels of every species of a store. Not thread-safe; build one per thread.
 
@@ -61,6 +66,8 @@ class Levels(States):
         super().__init__(data, policy, extrapolate=extrapolate)
         self._trees: dict[str, SpeciesTree] = {}
         self._tables: dict[str, list[Tabulated]] = {}
+        self._loops: dict[int, frozenset[int] | None] = {}
+        self._errors: dict[int, tuple[float, list[Part]] | None] = {}
 
     # -- trees ----------------------------------------------------------------------------------------------------
 
@@ -78,6 +85,8 @@ class Levels(States):
         record = self.data.species(species)
         entries = self.data.entries(species)
         boiling, critical = self.boiling(species), self.critical(species)
+        # The reference form of an element is its liquid at 1 bar, also where that boils: no pressure along saturation.
+        followed = boiling if self.reference_until(record, "l") <= (boiling or 0.0) else None
         found = [e for e in choose(entries, self.policy) if e.quantity == "Cp" and e.equation == "iapws95"]
         formulation = Formulation(species, found[0], self.policy) if found else None
         tree = SpeciesTree()
@@ -92,7 +101,7 @@ class Levels(States):
                 mine,
                 self.policy,
                 extrapolate=self.extrapolate,
-                boiling=boiling if phase == "l" else None,
+                boiling=followed if phase == "l" else None,
                 critical=critical if phase == "l" else None,
                 transitions=self._transitions(entries, phase, form),
                 changes=self._changes(species, entries, phase),
@@ -361,8 +370,20 @@ class Levels(States):
         """Edges that the tree of a species does not use."""
         return self.tree(species).unused
 
+    def loop(self, species: str, edge: Edge) -> frozenset[int] | None:
+        """What the tree passes between the ends of an unused edge (:func:`passes`); None where they are not joined."""
+        if id(edge) not in self._loops:
+            moves = self.tree(species).way(edge.start, edge.end)
+            self._loops[id(edge)] = None if moves is None else passes(moves)
+        return self._loops[id(edge)]
+
     def closure_error(self, species: str, edge: Edge) -> tuple[float, list[Part]] | None:
         """What an unused edge says less what the tree says [J/mol], with the sensitivities of both."""
+        if id(edge) not in self._errors:
+            self._errors[id(edge)] = self._closure_error(species, edge)
+        return self._errors[id(edge)]
+
+    def _closure_error(self, species: str, edge: Edge) -> tuple[float, list[Part]] | None:
         moves = self.tree(species).way(edge.start, edge.end)
         if moves is None:
             return None

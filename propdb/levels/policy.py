@@ -33,6 +33,7 @@ class Policy:
     source_class: Callable[[str], str]
     pinned: tuple[str, ...] = ()
     _ranks_of: dict[tuple[str, str], int] = field(default_factory=dict, repr=False)
+    _defaults_of: dict[tuple[str, str, bool], tuple[float, str]] = field(default_factory=dict, repr=False)
 
     def rank(self, entry: Entry) -> int:
         """Place of the entry's source for its quantity; smaller is better."""
@@ -55,10 +56,16 @@ class Policy:
 
         For ranking only; never shown as stated.
         """
-        cls = "formulation" if entry.equation == "iapws95" else self.source_class(entry.source)
+        key = (entry.source, entry.quantity, entry.equation == "iapws95")
+        if key not in self._defaults_of:
+            self._defaults_of[key] = self._default(*key)
+        return self._defaults_of[key]
+
+    def _default(self, source: str, quantity: str, formulation: bool) -> tuple[float, str]:
+        cls = "formulation" if formulation else self.source_class(source)
         for row in self.ranks.get("class_default", ()):
-            named = entry.source in row.get("sources", ()) or cls in row.get("classes", ())
-            if entry.quantity in row["quantities"] and named:
+            named = source in row.get("sources", ()) or cls in row.get("classes", ())
+            if quantity in row["quantities"] and named:
                 if "percent" in row:
                     return float(row["percent"]) / 100.0, "%"
                 return float(row["standard"]), ""

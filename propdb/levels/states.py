@@ -15,6 +15,8 @@ __all__ = ["INTERNAL", "States"]
 
 #: The datum whose zero states are the zero of the internal scale.
 INTERNAL = "elements-298K"
+#: The datum that says which form of an element is its reference form at each temperature.
+FORMS = "elements-same-T"
 
 #: A liquid is taken to exist down to this much below its melting point: tables differ by that.
 MELTING_SLACK = 0.05
@@ -80,6 +82,17 @@ class States:
             if z.species == record.name:
                 nodes.append(Node(z.phase, z.form, T_STANDARD))
         return nodes
+
+    def reference_until(self, record: Species, phase: str) -> float:
+        """Up to which temperature [K] a phase of this species is the reference form of its element; 0 if it is none."""
+        try:
+            schedule = self.data.datum(FORMS).schedule
+        except (NotFound, KeyError):
+            return 0.0
+        ends = [
+            end for stages in schedule.values() for end, z in stages if (z.species, z.phase) == (record.name, phase)
+        ]
+        return max(ends, default=0.0)
 
     # -- states ---------------------------------------------------------------------------------------------------
 

@@ -109,8 +109,19 @@ def _cancel(plus: list[Member], minus: list[Member]) -> tuple[list[Member], list
     return kept, rest
 
 
-def _point(levels: Levels, plus: Sequence[Member], minus: Sequence[Member], before: float, after: float) -> Point:
-    """``before + after + levels``, added in the order of the scalar answers, so that the results are the same."""
+def _point(
+    levels: Levels,
+    plus: Sequence[Member],
+    minus: Sequence[Member],
+    before: float,
+    after: float,
+    *,
+    judged: bool = False,
+) -> Point:
+    """``before + after + levels``, added in the order of the scalar answers, so that the results are the same.
+
+    ``judged``: with the warning where other sources contradict it, which takes longer than the rest.
+    """
     derived = Derivation(levels, net(levels, plus, minus), per=1.0, unit=_J_MOL)
     standard, _ = derived.uncertainty()
     ids = [p.entry for p in derived.parts] + [leg.entry for leg in derived.legs]
@@ -122,13 +133,20 @@ def _point(levels: Levels, plus: Sequence[Member], minus: Sequence[Member], befo
         entries=tuple(dict.fromkeys(i for i in ids if i)),
         sources=derived.sources(),
         origins={leg.entry: leg.source for leg in derived.legs if leg.entry},
-        warnings=tuple(derived.warnings()),
+        warnings=tuple(derived.warnings(judged=judged)),
         legs=len(derived.legs),
     )
 
 
 def shift_at(
-    levels: Levels, species: Species, source: Datum, target: Datum, *, phase: str, temperature: float | None
+    levels: Levels,
+    species: Species,
+    source: Datum,
+    target: Datum,
+    *,
+    phase: str,
+    temperature: float | None,
+    judged: bool = False,
 ) -> Point:
     """Z_A - Z_B with h0 of both [J/mol]: what an enthalpy of a species gains when its datum becomes another.
 
@@ -142,7 +160,7 @@ def shift_at(
         )
         for d in (source, target)
     ]
-    return _point(levels, *_cancel(plus, minus), 0.0 - offsets[0] + offsets[1], 0.0)
+    return _point(levels, *_cancel(plus, minus), 0.0 - offsets[0] + offsets[1], 0.0, judged=judged)
 
 
 def enthalpy_at(levels: Levels, species: Species, state: State, target: Datum) -> Point:
@@ -204,7 +222,7 @@ def make_kind(
                 reason = f"{name} has its zero at the temperature of the state, and the table has no temperatures"
                 return Kind(flag=BAD_ROW, reason=reason, **common)  # type: ignore[arg-type]
             return Kind(flag=OK, varying=vary_shift(basis, species, source, target, phase=phase), **common)  # type: ignore[arg-type]
-        point = shift_at(levels, species, source, target, phase=phase, temperature=None)
+        point = shift_at(levels, species, source, target, phase=phase, temperature=None, judged=True)
     except PropdbError as error:
         return Kind(flag=NO_DATA, reason=one_line(error), **common)  # type: ignore[arg-type]
     flag = EXTRAPOLATED if point.extrapolated else OK

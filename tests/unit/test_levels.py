@@ -536,3 +536,37 @@ def test_what_carries_and_what_does_not() -> None:
     assert not carries(World(*hot).levels(), "unium oxide", ("l", "g"))  # what is liquid lies beyond the split
     glass = entry("Htr", "l", 0.0, temperature=550.0, to="l")
     assert carries(World(*hot, glass).levels(), "unium oxide", ("l", "g"))
+
+
+def test_a_reference_liquid_is_followed_at_one_bar_beyond_its_boiling_point() -> None:
+    """The reference form of sulfur is the liquid at 1 bar up to 882 K; it boils at 718 K. No pressure belongs in it."""
+    forms = parse_datums(
+        {
+            "elements": {
+                "U": {
+                    "forms": [
+                        {"species": "unium oxide", "phase": "l", "until": "900K"},
+                        {"species": "unium", "phase": "g"},
+                    ]
+                },
+            },
+            "datum": {
+                "elements-same-T": {
+                    "kind": "elements", "sentence": "x", "source": "common-practice", "temperature": "same",
+                },
+            },
+        },
+        where="the test",
+    )  # fmt: skip
+
+    class Forms(World):
+        def datum(self, name: str) -> Datum:
+            return forms.get(name) or DATUMS[name]
+
+    critical = (entry("Tb", "l", 700.0), entry("Tc", "l", 1200.0), entry("Pc", "l", 1e7), entry("omega", "l", 0.2))
+    entries = (hf("l", -5000.0), cp("l", 30.0, 200, 1100), *critical)
+    state = State("l", 850.0)
+    at_one_bar = sum(leg.value for leg in Forms(*entries).levels().level("unium oxide", state))
+    along = sum(leg.value for leg in World(*entries).levels().level("unium oxide", state))
+    assert at_one_bar == pytest.approx(-5000.0 + 30.0 * (850.0 - 298.15))
+    assert along != pytest.approx(at_one_bar, abs=1.0)
