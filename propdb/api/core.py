@@ -11,7 +11,7 @@ from typing import TYPE_CHECKING, Any, Self, TypeVar
 
 from propdb.errors import DatumError, InvalidInput, NotFound, StoreError
 from propdb.model.crosscheck import EntryCheck
-from propdb.model.records import QUANTITIES, Datum, Entry, Source, Species
+from propdb.model.records import PHASES, QUANTITIES, USABLE_STATUSES, Datum, Entry, Source, Species
 from propdb.model.sheet import SpeciesSheet
 from propdb.store.read import Reader
 from propdb.store.search import Match, find, resolve
@@ -87,7 +87,7 @@ class Core:
     def show(
         self, species: str, *, quantity: str | None = None, phase: str | None = None, source: str | None = None
     ) -> SpeciesSheet:
-        """Every entry of a species, with its sources.
+        """Every entry of a species, with its sources; of each quantity and phase what answers take first stands first.
 
         Raises
         ------
@@ -116,6 +116,7 @@ class Core:
             and (phase is None or e.phase == phase)
             and (source is None or e.source == source)
         )
+        kept = tuple(sorted(kept, key=_by_use(self._policy())))
         return SpeciesSheet(record, kept, {key: self._reader.source(key) for key in sorted({e.source for e in kept})})
 
     def entry_show(self, id: str) -> Entry:
@@ -256,7 +257,6 @@ class Core:
     def _engine(self, source: str | None, extrapolate: bool) -> Levels:
         """The levels for a choice of sources, built once per state of the store."""
         from propdb.levels.engine import Levels
-        from propdb.levels.policy import Policy
 
         stamp = f"content {self._reader.content_hash[:16]}, log {self._reader.head[:16]}"
         if stamp != self._stamp:
@@ -268,14 +268,34 @@ class Core:
         choice = (pinned, extrapolate)
         if choice not in self._levels:
             data = _Data(self)
-            policy = Policy(self._reader.policy("ranks"), lambda key: self._reader.source(key).cls, pinned)
-            self._levels[choice] = Levels(data, policy, extrapolate=extrapolate)
+            self._levels[choice] = Levels(data, self._policy(pinned), extrapolate=extrapolate)
         return self._levels[choice]
+
+    def _policy(self, pinned: tuple[str, ...] = ()) -> Policy:
+        from propdb.levels.policy import Policy
+
+        return Policy(self._reader.policy("ranks"), lambda key: self._reader.source(key).cls, pinned)
 
     def _forget(self) -> None:
         self._levels.clear()
         self._checks = None
         self._datums = {}
+
+
+def _by_use(policy: Policy) -> Callable[[Entry], tuple[Any, ...]]:
+    """Sort key: quantity, phase, form; then as answers choose, heat capacities over temperature before single ones,
+    298.15 K before 0 K, and what they do not use last."""
+    from propdb.levels.policy import order
+
+    place = order(policy)
+
+    def key(entry: Entry) -> tuple[Any, ...]:
+        single = not entry.equation if entry.quantity == "Cp" else entry.temperature == 0.0
+        usable = entry.status in USABLE_STATUSES
+        own = place(entry) if usable else (entry.status, entry.source, entry.id)
+        return (QUANTITIES.index(entry.quantity), PHASES.index(entry.phase), entry.form, not usable, single, own)
+
+    return key
 
 
 class _Data:

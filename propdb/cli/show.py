@@ -31,7 +31,8 @@ def show(
 
     Hf, Gf: enthalpy and Gibbs energy of formation; S: standard entropy; Cp: heat capacity; Hvap, Hfus, Hsub, Htr:
     enthalpy of vaporisation, fusion, sublimation, transition; dH0: H(298.15 K) - H(0 K); Tb, Tm, Tc: boiling, melting
-    and critical temperature; Pc: critical pressure; omega: acentric factor.
+    and critical temperature; Pc: critical pressure; omega: acentric factor. In each phase what answers use first stands
+    first, as far as its range goes.
     """
     from propdb.cli.sheets import sheet_dict, sheet_text
 

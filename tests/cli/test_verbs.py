@@ -222,6 +222,21 @@ def test_store_info_check_path(line: Any, default_store: Path) -> None:
     assert line("store check").code == 0
 
 
+def test_show_begins_with_what_answers_use(line: Any) -> None:
+    """Of each phase; what has no part in answers stands last, and what is at another temperature behind."""
+    for name, phase in (("ammonia", "g"), ("carbon dioxide", "g"), ("water", "l"), ("toluene", "g")):
+        entries = [e for e in data(line("show", name, "--json"))["entries"] if e["phase"] == phase]
+        used = data(
+            line("enthalpy", name, "--phase", phase, "--temperature", "25C", "--datum", "elements-298K", "--json")
+        )
+        first = next(e for e in entries if e["quantity"] == "Hf")
+        assert first["id"] in [step["entry"] for step in used["steps"]]
+        fit = [e["status"] != "quarantined" for e in entries if e["quantity"] == "Hf"]
+        assert fit == sorted(fit, reverse=True)
+    curves = [bool(e["equation"]) for e in entries if e["quantity"] == "Cp" and e["status"] != "quarantined"]
+    assert curves == sorted(curves, reverse=True)
+
+
 def test_store_backup_and_rebuild(line: Any, own_store: Path, tmp_path: Path) -> None:
     copy = tmp_path / "copy.db"
     done = line("store", "backup", str(copy), "--store", str(own_store))
