@@ -67,7 +67,7 @@ class Identifiers(Mapping[int, Any]):
         lines: list[str] = []
         for name in _FILES:
             with (folder / name).open(encoding="utf-8") as file:
-                lines += (line.rstrip("\n") for line in file)
+                lines += file.read().split("\n")
         self._lines = lines
         self._at: dict[int, int] = {}
         self._made: dict[int, Known] = {}
