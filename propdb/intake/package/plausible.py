@@ -35,7 +35,7 @@ _NEAR_CRITICAL: Final = 0.9
 
 
 def implausible(
-    entry: Entry, *, atoms: float, critical: float | None = None, built: dict[str, Any] | None = None
+    entry: Entry, *, atoms: float, critical: float | None = None, built: Mapping[str, Any] | None = None
 ) -> str:
     """Why a heat capacity cannot be one of its species; "" where it can.
 
@@ -47,8 +47,8 @@ def implausible(
         Atoms in the formula.
     critical : float, optional
         Critical temperature [K]: near it the heat capacity of a liquid has no bound.
-    built : dict, optional
-        Entry id to heat capacity, where it has been made; what is missing is added.
+    built : mapping, optional
+        Entry id to heat capacity, where it has been made.
     """
     values = _values(entry, {} if built is None else built)
     if not values or atoms <= 0:
@@ -78,7 +78,7 @@ def implausible(
 
 
 def quarantine_heat_capacities(
-    entries: list[Entry], species: Iterable[Species], built: dict[str, Any] | None = None
+    entries: list[Entry], species: Iterable[Species], built: Mapping[str, Any] | None = None
 ) -> int:
     """Set aside, in place, heat capacities that cannot be. Returns how many were.
 
@@ -112,7 +112,7 @@ def quarantine_heat_capacities(
     return count
 
 
-def _outvoted(entries: list[Entry], built: dict[str, Any]) -> int:
+def _outvoted(entries: list[Entry], built: Mapping[str, Any]) -> int:
     """Set aside liquids' and gases' heat capacities that two others contradict, which agree. Returns how many."""
     groups: dict[tuple[str, str], list[int]] = defaultdict(list)
     for place, entry in enumerate(entries):
@@ -159,7 +159,7 @@ def _shared(one: _Function, two: _Function) -> float | None:
     return None if low > high else 0.5 * (low + high)
 
 
-def _function(entry: Entry, built: dict[str, Any]) -> _Function | None:
+def _function(entry: Entry, built: Mapping[str, Any]) -> _Function | None:
     """Range [K] and heat capacity of an entry."""
     if not entry.equation:
         t, value = entry.temperature or T_STANDARD, entry.value
@@ -177,16 +177,12 @@ def _set_aside(entry: Entry, reason: str) -> Entry:
     return replace(entry, status="quarantined", note="; ".join(filter(None, (entry.note, reason))))
 
 
-def _equation(entry: Entry, built: dict[str, Any]) -> Any:
+def _equation(entry: Entry, built: Mapping[str, Any]) -> Any:
     equation = built.get(entry.id)
-    if equation is None:
-        equation = build_heat_capacity(entry.equation, entry.params)
-        if entry.id:
-            built[entry.id] = equation
-    return equation
+    return build_heat_capacity(entry.equation, entry.params) if equation is None else equation
 
 
-def _values(entry: Entry, built: dict[str, Any]) -> list[tuple[float, float]]:
+def _values(entry: Entry, built: Mapping[str, Any]) -> list[tuple[float, float]]:
     """Temperatures [K] and heat capacities [J/mol/K]: of an equation at its ends and the middle, of a table all."""
     if not entry.equation:
         return [] if entry.value is None else [(entry.temperature or T_STANDARD, entry.value)]
