@@ -87,6 +87,7 @@ class SplineKernel:
 
     __slots__ = (
         "_args",
+        "_cell_arrays",
         "_cell_rows",
         "_cells",
         "_edges",
@@ -169,7 +170,9 @@ class SplineKernel:
             cells = _about(rows[i], from_edge, width)
             cells[~whole] = np.nan
             by_kind.append(cells)
-        self._cell_rows: tuple[list[list[float]], ...] = tuple(cells.tolist() for cells in by_kind)
+        # Of the hundreds of cells a single temperature needs one: they become lists as they are asked for.
+        self._cell_arrays = tuple(by_kind)
+        self._cell_rows: tuple[dict[int, list[float]], ...] = ({}, {})
         # Coefficients in pairs: one look-up of 16 bytes costs what one of 8 bytes does.
         cp, h = by_kind
         self._cells = (_pairs(cp), _pairs(h[:, :4])), np.ascontiguousarray(h[:, 4])
@@ -178,7 +181,10 @@ class SplineKernel:
         scaled = t * self._inverse
         if kind != S and scaled < self._last:
             number = int(scaled)
-            value = _horner(self._cell_rows[kind][number], scaled - number)
+            row = self._cell_rows[kind].get(number)
+            if row is None:
+                row = self._cell_rows[kind][number] = self._cell_arrays[kind][number].tolist()
+            value = _horner(row, scaled - number)
             if value == value:
                 return value
         if kind == S:
@@ -287,13 +293,14 @@ def _cell_width(edges: FloatArray) -> float:
     candidates = {float(edges[-1]) / _MAX_CELLS}
     for base in (float(np.median(spacing)), float(spacing.min()), float(spacing.max())):
         candidates |= {base / parts for parts in (1, 2, 4, 5, 8, 10)}
+    inner: list[float] = edges[1:-1].tolist()
     best, best_share = math.inf, math.inf
     for width in sorted(candidates, reverse=True):
         if edges[-1] / width > _MAX_CELLS:
             continue
-        place = edges[1:-1] / width
-        cut = np.unique(np.floor(place[np.abs(place - np.round(place)) > 1e-9])).size
-        share = cut * width
+        places = [node / width for node in inner]
+        cut = {math.floor(place) for place in places if abs(place - round(place)) > 1e-9}
+        share = len(cut) * width
         if share < best_share:
             best, best_share = width, share
     return best
