@@ -4,11 +4,13 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable, Mapping, Sequence
-from typing import Any
+from typing import Any, Final
 
 from propdb.errors import EquationError
 
 __all__ = ["check_range", "check_touching", "number", "numbers", "only", "rows"]
+
+_PLAIN: Final = frozenset({float, int})
 
 
 def only(params: Mapping[str, Any], required: Iterable[str], optional: Iterable[str] = ()) -> None:
@@ -38,12 +40,25 @@ def number(value: Any, field: str) -> float:
 
 def numbers(values: Any, field: str, *, count: int | None = None) -> tuple[float, ...]:
     """A tuple of finite floats, of the length wanted."""
-    if isinstance(values, (str, bytes, Mapping)) or not isinstance(values, Iterable):
-        raise EquationError(f"{field} must be a list of numbers, not {values!r}")
-    result = tuple(number(value, f"{field}[{position}]") for position, value in enumerate(values))
+    result = _plain(values)
+    if result is None:
+        if isinstance(values, (str, bytes, Mapping)) or not isinstance(values, Iterable):
+            raise EquationError(f"{field} must be a list of numbers, not {values!r}")
+        result = tuple(number(value, f"{field}[{position}]") for position, value in enumerate(values))
     if count is not None and len(result) != count:
         raise EquationError(f"{field} must have {count} numbers, not {len(result)}")
     return result
+
+
+def _plain(values: Any) -> tuple[float, ...] | None:
+    """Finite numbers in a list or tuple, as nearly all are; None for what has to be looked at one by one."""
+    if type(values) not in (list, tuple) or not _PLAIN.issuperset(map(type, values)):
+        return None
+    try:
+        result = tuple(map(float, values))
+    except OverflowError:
+        return None
+    return result if all(map(math.isfinite, result)) else None
 
 
 def rows(value: Any, field: str) -> Sequence[Mapping[str, Any]]:

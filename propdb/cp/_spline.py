@@ -86,8 +86,8 @@ class SplineKernel:
     """
 
     __slots__ = (
-        "_anchors",
         "_args",
+        "_cell_arrays",
         "_cell_rows",
         "_cells",
         "_edges",
@@ -114,29 +114,38 @@ class SplineKernel:
         self._nodes: list[float] = edges.tolist()
         self._h = np.zeros((count, 5))  # quartics of h, constant first
         self._h[:, 1:] = cubics / np.arange(1.0, 5.0)
+        quartics: list[list[float]] = self._h.tolist()
+        h = h0
+        for i, (row, width) in enumerate(zip(quartics, np.diff(edges).tolist(), strict=True)):
+            row[0] = h + steps.get(i, 0.0)
+            h = _horner(row, width)
+        self._h[:, 0] = [row[0] for row in quartics]
+        self._rows: tuple[list[list[float]], ...] = (cubics.tolist(), quartics)
+        self._s: tuple[FloatArray, FloatArray, list[list[float]]] | None = None
+        self._make_cells(breaks)
+
+    def _entropies(self) -> tuple[FloatArray, FloatArray, list[list[float]]]:
+        """Anchors and rows of the entropy, the rows as lists too; made when first asked for, as enthalpies need none.
+
+        Two threads that ask at once make the same.
+        """
+        if self._s is not None:
+            return self._s
+        edges, cubics, steps, _, _, s = self._args
+        nodes = self._nodes
         # One row more at either end, for what lies beyond the table: there a series need not converge.
         beyond = _about(cubics[-1:], edges[-1:] - edges[-2:-1], 1.0)[0].tolist()
-        self._anchors = np.concatenate([edges[:1], edges])
-        self._s = np.array(
-            [
-                _entropy_row(float(edges[0]), cubics[0].tolist(), math.inf),
-                *(_entropy_row(float(edges[i]), cubics[i].tolist(), float(edges[i + 1])) for i in range(count)),
-                _entropy_row(float(edges[-1]), beyond, math.inf),
-            ]
-        )
-        self._s[0, 0] = s0
-        widths = np.diff(edges)
-        h, s = h0, s0
-        for i in range(count):
-            step = steps.get(i, 0.0)
-            h, s = h + step, s + step / edges[i]
-            self._h[i, 0] = h
-            self._s[i + 1, 0] = s
-            h = _horner(self._h[i].tolist(), float(widths[i]))
-            s = _entropy(self._s[i + 1].tolist(), float(edges[i]), float(widths[i]))
-        self._s[-1, 0] = s
-        self._rows: tuple[list[list[float]], ...] = (cubics.tolist(), self._h.tolist(), self._s.tolist())
-        self._make_cells(breaks)
+        rows = [_entropy_row(nodes[0], cubics[0].tolist(), math.inf)]
+        rows[0][0] = s
+        for i, cubic in enumerate(cubics.tolist()):
+            row = _entropy_row(nodes[i], cubic, nodes[i + 1])
+            row[0] = s = s + steps.get(i, 0.0) / nodes[i]
+            s = _entropy(row, nodes[i], nodes[i + 1] - nodes[i])
+            rows.append(row)
+        rows.append(_entropy_row(nodes[-1], beyond, math.inf))
+        rows[-1][0] = s
+        made = self._s = np.concatenate([edges[:1], edges]), np.array(rows), rows
+        return made
 
     def _make_cells(self, breaks: frozenset[int]) -> None:
         edges, (_, cubics, *_) = self._edges, self._args
@@ -161,7 +170,9 @@ class SplineKernel:
             cells = _about(rows[i], from_edge, width)
             cells[~whole] = np.nan
             by_kind.append(cells)
-        self._cell_rows: tuple[list[list[float]], ...] = tuple(cells.tolist() for cells in by_kind)
+        # Of the hundreds of cells a single temperature needs one: they become lists as they are asked for.
+        self._cell_arrays = tuple(by_kind)
+        self._cell_rows: tuple[dict[int, list[float]], ...] = ({}, {})
         # Coefficients in pairs: one look-up of 16 bytes costs what one of 8 bytes does.
         cp, h = by_kind
         self._cells = (_pairs(cp), _pairs(h[:, :4])), np.ascontiguousarray(h[:, 4])
@@ -170,13 +181,16 @@ class SplineKernel:
         scaled = t * self._inverse
         if kind != S and scaled < self._last:
             number = int(scaled)
-            value = _horner(self._cell_rows[kind][number], scaled - number)
+            row = self._cell_rows[kind].get(number)
+            if row is None:
+                row = self._cell_rows[kind][number] = self._cell_arrays[kind][number].tolist()
+            value = _horner(row, scaled - number)
             if value == value:
                 return value
         if kind == S:
             i = bisect_left(self._nodes, t)
             anchor = self._nodes[max(i - 1, 0)]
-            return _entropy(self._rows[S][i], anchor, t - anchor)
+            return _entropy(self._entropies()[2][i], anchor, t - anchor)
         i = bisect_left(self._nodes, t, 1, len(self._nodes) - 1) - 1
         return _horner(self._rows[kind][i], t - self._nodes[i])
 
@@ -216,7 +230,8 @@ class SplineKernel:
     def _by_bisection(self, kind: Kind, x: FloatArray) -> FloatArray:
         if kind == S:
             i = np.searchsorted(self._edges, x, side="left")
-            anchor, rows = self._anchors[i], self._s
+            anchors, rows, _ = self._entropies()
+            anchor = anchors[i]
             u = x - anchor
             total = rows[i, -1] * u
             for column in range(rows.shape[1] - 2, 1, -1):
@@ -278,13 +293,14 @@ def _cell_width(edges: FloatArray) -> float:
     candidates = {float(edges[-1]) / _MAX_CELLS}
     for base in (float(np.median(spacing)), float(spacing.min()), float(spacing.max())):
         candidates |= {base / parts for parts in (1, 2, 4, 5, 8, 10)}
+    inner: list[float] = edges[1:-1].tolist()
     best, best_share = math.inf, math.inf
     for width in sorted(candidates, reverse=True):
         if edges[-1] / width > _MAX_CELLS:
             continue
-        place = edges[1:-1] / width
-        cut = np.unique(np.floor(place[np.abs(place - np.round(place)) > 1e-9])).size
-        share = cut * width
+        places = [node / width for node in inner]
+        cut = {math.floor(place) for place in places if abs(place - round(place)) > 1e-9}
+        share = len(cut) * width
         if share < best_share:
             best, best_share = width, share
     return best

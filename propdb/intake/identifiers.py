@@ -67,7 +67,7 @@ class Identifiers(Mapping[int, Any]):
         lines: list[str] = []
         for name in _FILES:
             with (folder / name).open(encoding="utf-8") as file:
-                lines += (line.rstrip("\n") for line in file)
+                lines += file.read().split("\n")
         self._lines = lines
         self._at: dict[int, int] = {}
         self._made: dict[int, Known] = {}
@@ -120,11 +120,13 @@ class Identifiers(Mapping[int, Any]):
         found: dict[str, int] = {}
         among = None if wanted is None else frozenset(wanted)
         for at, line in enumerate(self._lines):
-            names = line.lower().split("\t")
+            if not line:
+                continue
+            names = line.split("\t", _NAMES_FROM)[_NAMES_FROM].lower().split("\t")
             if among is None:
-                found.update(dict.fromkeys(names[_NAMES_FROM:], at))
+                found.update(dict.fromkeys(names, at))
             elif not among.isdisjoint(names):
-                found.update((name, at) for name in names[_NAMES_FROM:] if name in among)
+                found.update((name, at) for name in names if name in among)
         return found
 
 

@@ -17,6 +17,7 @@ from collections.abc import Collection, Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
 from typing import Final
 
+from propdb.cp import Equation
 from propdb.cp.registry import build_heat_capacity
 from propdb.cp.trc import TrcGas
 from propdb.datum.hypotheses import Facts, elements_increment, to_298
@@ -141,7 +142,13 @@ def element_increments(content: Content) -> dict[str, float]:
     return increments
 
 
-def resolve(content: Content, *, withheld: Collection[str] = (), alone: bool = False) -> Resolution:
+def resolve(
+    content: Content,
+    *,
+    withheld: Collection[str] = (),
+    alone: bool = False,
+    built: Mapping[str, Equation] | None = None,
+) -> Resolution:
     """Decide every formation enthalpy of the source that came in as datum-unknown.
 
     Parameters
@@ -152,6 +159,8 @@ def resolve(content: Content, *, withheld: Collection[str] = (), alone: bool = F
         Keys of sources that are not heard: to measure how often the others decide right.
     alone : bool
         Decide also where the constant of integration stands alone.
+    built : mapping, optional
+        Entry id to heat capacity, where it has been made.
 
     Returns
     -------
@@ -164,7 +173,7 @@ def resolve(content: Content, *, withheld: Collection[str] = (), alone: bool = F
     ours = [entry for entry in content.entries if entry.source == SOURCE]
     waiting = [e for e in ours if e.quantity == "Hf" and e.status == "datum-unknown" and e.value is not None]
     curves = {(e.species, e.locator): e for e in ours if e.quantity == "Cp" and e.equation == TrcGas.name}
-    above = {key: found for key, entry in curves.items() if (found := _increment(entry)) is not None}
+    above = {key: found for key, entry in curves.items() if (found := _increment(entry, built or {})) is not None}
     witnesses = _witnesses(content.entries, {entry.species for entry in waiting}, withheld)
     decisions: list[Decision] = []
     changed: dict[str, Entry] = {}
@@ -195,9 +204,9 @@ def undecided(content: Content) -> Content:
     return replace(content, entries=entries)
 
 
-def _increment(curve: Entry) -> float | None:
+def _increment(curve: Entry, built: Mapping[str, Equation]) -> float | None:
     try:
-        equation = build_heat_capacity(curve.equation, curve.params)
+        equation = built.get(curve.id) or build_heat_capacity(curve.equation, curve.params)
     except EquationError:
         return None
     return equation.increment if isinstance(equation, TrcGas) else None

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 import re
-from collections.abc import Callable, Mapping
+from collections.abc import Collection, Mapping
 from dataclasses import dataclass
 from fractions import Fraction
 from types import MappingProxyType
@@ -32,6 +32,8 @@ _LARGEST: Final = 10**9 - 1  # atoms of one element (numerator and denominator),
 _SUBSCRIPTS: Final = str.maketrans("₀₁₂₃₄₅₆₇₈₉", "0123456789")
 _DOTS: Final = ".·⋅•∙*"
 _SYMBOL: Final = re.compile(r"[A-Z][a-z]?")
+_PLAIN: Final = re.compile(r"(?:[A-Z][a-z]?[0-9]{0,9})+")
+_ATOMS: Final = re.compile(r"([A-Z][a-z]?)([0-9]*)")
 _COUNT: Final = re.compile(r"([0-9]+)(?:/([0-9]+)|\.([0-9]+))?")
 _SOLVATE: Final = re.compile(r"\.[0-9]*(?:[./][0-9]+)?(?:H2O|D2O|NH3)(?![a-z0-9])")
 _CHARGE: Final = re.compile(
@@ -75,8 +77,12 @@ class Formula:
         if abs(self.charge) > _LARGEST:
             raise FormulaError("a charge is too large to be one")
         tidy: dict[str, Count] = {}
-        for element in sorted(self.counts, key=_hill_order("C" in self.counts)):
-            count = Fraction(self.counts[element])
+        for element in _in_hill_order(self.counts):
+            count = self.counts[element]
+            if type(count) is int and 0 < count <= _LARGEST and element in _KNOWN:  # nearly always
+                tidy[element] = count
+                continue
+            count = Fraction(count)
             if element not in _KNOWN:
                 raise FormulaError(f"{element!r} is not an element", hint=_element_hint(element))
             if not (0 < count.numerator <= _LARGEST and count.denominator <= _LARGEST):
@@ -114,12 +120,28 @@ def parse_formula(text: str) -> Formula:
     raised = _RAISED.search(plain)
     if raised:
         plain = f"{plain[: raised.start()]}^{raised.group().translate(_RAISED_TO_PLAIN)}"
+    counts = _plain(plain)
+    if counts:
+        return Formula(counts)
     offset = len(text) - len(text.lstrip())
     charge, end = _charge(plain)
     if plain[:end] == "e" and charge == -1:
         return Formula({}, -1)
     reader = _Reader(text, plain[:end], offset)
     return Formula(reader.read(), charge)
+
+
+def _plain(text: str) -> dict[str, Count]:
+    """Atoms of a formula that is symbols and whole numbers only, as most are; empty for any other."""
+    if _PLAIN.fullmatch(text) is None:
+        return {}
+    counts: dict[str, Count] = {}
+    for symbol, digits in _ATOMS.findall(text):
+        count = int(digits or 1)
+        if symbol not in _KNOWN or not count:  # what is wrong, and where, the reader says
+            return {}
+        counts[symbol] = counts.get(symbol, 0) + count
+    return counts
 
 
 def _charge(plain: str) -> tuple[int, int]:
@@ -249,10 +271,16 @@ def _element_hint(symbol: str) -> str:
     return "symbols are those of the periodic table, and D"
 
 
-def _hill_order(carbon: bool) -> Callable[[str], tuple[int, str]]:
-    """Sort key: with carbon C, H, then the alphabet; without, the alphabet (Hill, J. Am. Chem. Soc. 1900, 22, 478)."""
-    first = {"C": 0, "H": 1} if carbon else {}
-    return lambda element: (first.get(element, 2), element)
+def _in_hill_order(elements: Collection[str]) -> list[str]:
+    """With carbon C, H, then the alphabet; without, the alphabet (Hill, J. Am. Chem. Soc. 1900, 22, 478)."""
+    found = sorted(elements)
+    if "C" in elements:
+        found.remove("C")
+        found.insert(0, "C")
+        if "H" in elements:
+            found.remove("H")
+            found.insert(1, "H")
+    return found
 
 
 def hill(counts: Mapping[str, Count], charge: int = 0) -> str:
@@ -265,7 +293,7 @@ def hill(counts: Mapping[str, Count], charge: int = 0) -> str:
     charge : int
         In elementary charges [e]; 0 gives the formula as :class:`~propdb.model.records.Species` keeps it.
     """
-    body = "".join(f"{e}{_count_text(counts[e])}" for e in sorted(counts, key=_hill_order("C" in counts)))
+    body = "".join(f"{e}{'' if (n := counts[e]) == 1 else _count_text(n)}" for e in _in_hill_order(counts))
     if not charge:
         return body
     size = abs(charge)

@@ -5,17 +5,28 @@ from __future__ import annotations
 import json
 import math
 import unicodedata
-from collections.abc import Callable, Iterable, Mapping, Sequence
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from dataclasses import dataclass, field, replace
 from fractions import Fraction
 from hashlib import sha256
+from itertools import islice
 from operator import attrgetter
 from typing import Any
 
 from propdb.errors import InvalidInput, NotFound
 from propdb.model.records import KIND_TO_STANDARD, PHASES, QUANTITIES, STATUSES, Carrier, Entry, Source, Species
 
-__all__ = ["Content", "Member", "canonical", "content_hash", "entry_id", "identity", "validate_entry", "with_id"]
+__all__ = [
+    "Content",
+    "Member",
+    "canonical",
+    "canonical_lines",
+    "content_hash",
+    "entry_id",
+    "identity",
+    "validate_entry",
+    "with_id",
+]
 
 _ID_LENGTH = 20
 _NUMBERS = ("temperature", "value", "tmin", "tmax", "uncertainty")
@@ -126,17 +137,17 @@ _ENCODER = json.JSONEncoder(
 )
 
 
-def _encoder() -> Callable[[object], str]:
+def _encoder(comma: str) -> Callable[[object], str]:
     """``_ENCODER.encode``, without making the compiled encoder anew at each call: that takes longer than a row.
 
     Where the json module has no such thing, or another than expected, ``_ENCODER.encode`` itself.
     """
     try:
         chunks = json.encoder.c_make_encoder(  # type: ignore[attr-defined]
-            None, _plain, json.encoder.encode_basestring_ascii, None, ":", ",", True, False, False
+            None, _plain, json.encoder.encode_basestring_ascii, None, ":", comma, True, False, False
         )
         sample = ["\u00e9\n", None, True, -0.5, 1, {"b": [], "a": {"": 1e-20}}, Fraction(1, 3)]
-        if "".join(chunks(sample, 0)) != _ENCODER.encode(sample):
+        if "".join(chunks(sample, 0)).replace(comma, ",") != _ENCODER.encode(sample):
             return _ENCODER.encode
     except (AttributeError, TypeError):
         return _ENCODER.encode
@@ -144,7 +155,11 @@ def _encoder() -> Callable[[object], str]:
     return lambda value: join(chunks(value, 0))
 
 
-_encode = _encoder()
+_encode = _encoder(",")
+_quoted = json.encoder.encode_basestring_ascii
+#: No text in JSON holds a line end as such, so that it shows where one value ends.
+_encode_many = _encoder(",\n")
+_BLOCK = 4096
 
 
 def canonical(value: object) -> str:
@@ -163,6 +178,25 @@ def canonical(value: object) -> str:
         ) from error
 
 
+def canonical_lines(rows: Iterable[Sequence[object]]) -> Iterator[str]:
+    """:func:`canonical` of each of many rows; together they take half the time.
+
+    Raises
+    ------
+    InvalidInput
+        As :func:`canonical`.
+    """
+    todo = iter(rows)
+    while block := list(islice(todo, _BLOCK)):
+        try:
+            text = _encode_many(block)
+        except (TypeError, ValueError, RecursionError):
+            yield from map(canonical, block)  # says it in words
+            continue
+        lines = text[1:-1].replace("],\n[", "]\n[").replace(",\n", ",").split("\n")
+        yield from lines if len(lines) == len(block) else map(canonical, block)  # lists within a row
+
+
 def identity(species: Species) -> str:
     """What makes a species this one: CAS RN, else InChIKey, else name; with formula and charge."""
     return mark_of(species.cas or species.inchikey or species.name, species.formula, species.charge)
@@ -170,6 +204,8 @@ def identity(species: Species) -> str:
 
 def mark_of(number: str, formula: str, charge: int) -> str:
     """:func:`identity` from its parts: CAS RN, else InChIKey, else name; formula without charge; charge."""
+    if type(charge) is int:  # as canonical, which takes longer
+        return f"[{_quoted(number)},{_quoted(formula)},{charge}]"
     return canonical([number, formula, charge])
 
 
@@ -252,7 +288,7 @@ def parts_hash(
         ("sources", sources),
         ("datums", map(canonical, datums)),
         ("policy", map(canonical, policy)),
-        ("entries", (canonical((entry, status, note, bool(printed))) for entry, status, note, printed in entries)),
+        ("entries", canonical_lines((entry, status, note, bool(printed)) for entry, status, note, printed in entries)),
     ):
         digest.update(f"{title}\n".encode())
         digest.update(joined(part))

@@ -95,8 +95,6 @@ def add_own_all(
         As :func:`propdb.store.content.validate_entry`.
     StoreError, StoreBusy, StoreReadOnly
     """
-    if species or sources:
-        import sqlite_utils  # noqa: F401  (takes a while: before other writers are made to wait)
     with writing(target) as conn:
         sealing = seal.Seal(conn)
         _put(conn, species, sources, {}, {})
@@ -213,19 +211,16 @@ def _put(
 ) -> None:
     if not (species or sources or datums or policy):
         return
-    from sqlite_utils import Database
-
-    db = Database(conn, execute_plugins=False)
-    put_sources(db, sources, own=1)
-    put_bodies(db, "datum", "name", "body", {name: canonical(body) for name, body in datums.items()}, own=1)
-    put_bodies(db, "policy", "key", "value", {key: canonical(value) for key, value in policy.items()}, own=1)
+    put_sources(conn, sources, own=1)
+    put_bodies(conn, "datum", "name", "body", {name: canonical(body) for name, body in datums.items()}, own=1)
+    put_bodies(conn, "policy", "key", "value", {key: canonical(value) for key, value in policy.items()}, own=1)
     for one in species:
         row = species_row(one)
         old = conn.execute(
             "SELECT id FROM species WHERE own = 1 AND (identity = ? OR name = ?)", (row["identity"], one.name)
         ).fetchone()
         if old is None:
-            insert_species(db, [(one, row)], own=1)
+            insert_species(conn, [(one, row)], own=1)
         else:
             sets = ", ".join(f"{column} = :{column}" for column in row)
             conn.execute(f"UPDATE species SET {sets} WHERE id = :id", {**row, "id": old[0]})

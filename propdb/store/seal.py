@@ -14,7 +14,7 @@ from collections.abc import Iterable, Mapping
 from hashlib import sha256
 from typing import Any, Final
 
-from propdb.store.content import canonical, joined
+from propdb.store.content import canonical_lines, joined
 
 __all__ = ["BASE_PARTS", "Seal", "carried", "member_hash", "members_hash", "state"]
 
@@ -55,7 +55,7 @@ BASE_PARTS: Final = frozenset(f"base {what}" for what in _LISTS if what != "name
 def rows_hash(rows: Iterable[tuple[Any, ...]]) -> str:
     """SHA-256 over rows, whatever their order."""
     digest = sha256(b"propdb rows 1\n")
-    digest.update(joined(map(canonical, rows)))
+    digest.update(joined(canonical_lines(rows)))
     return digest.hexdigest()
 
 

@@ -9,7 +9,7 @@ from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from contextlib import closing
 from dataclasses import dataclass
 from itertools import islice
-from typing import TYPE_CHECKING, Any
+from typing import Any
 
 from propdb.model.crosscheck import Crosscheck
 from propdb.model.records import Carrier, Source, Species
@@ -32,9 +32,6 @@ from propdb.store.content import (
 from propdb.store.migrate import immediate
 from propdb.store.open import mapped, open_store
 from propdb.store.rows import name_rows, source_row, species_row
-
-if TYPE_CHECKING:
-    from sqlite_utils import Database
 
 __all__ = ["BuildReport", "Content", "build", "content_hash", "entry_id", "members", "with_id"]
 
@@ -142,14 +139,11 @@ def _write(
     before: log.Event | None,
     tell: Progress,
 ) -> BuildReport:
-    from sqlite_utils import Database
-
-    db = Database(conn, execute_plugins=False)
     sealing = seal.Seal(conn)
-    sources_changed = put_sources(db, content.sources, own=0)
-    put_bodies(db, "datum", "name", "body", {name: canonical(body) for name, body in content.datums.items()}, own=0)
-    put_bodies(db, "policy", "key", "value", {key: canonical(value) for key, value in content.policy.items()}, own=0)
-    rows, added, changed = _put_base_species(db, content.species)
+    sources_changed = put_sources(conn, content.sources, own=0)
+    put_bodies(conn, "datum", "name", "body", {name: canonical(body) for name, body in content.datums.items()}, own=0)
+    put_bodies(conn, "policy", "key", "value", {key: canonical(value) for key, value in content.policy.items()}, own=0)
+    rows, added, changed = _put_base_species(conn, content.species)
     entries_before = conn.execute("SELECT count(*) FROM entry").fetchone()[0]
     # In the order of their ids, which is that of the index: a third faster than as they come.
     numbers = put_entries(conn, [held[number] for number in sorted(held)], {s.name: s for s in content.species}, tell)
@@ -189,21 +183,20 @@ def _write(
     )
 
 
-def put_sources(db: Database, sources: Sequence[Source], *, own: int) -> int:
+def put_sources(conn: sqlite3.Connection, sources: Sequence[Source], *, own: int) -> int:
     """Insert or replace sources; with ``own=0`` those that are not listed become inactive. How many changed."""
-    old = {source.key: source_row(source) | {"lineage": source.lineage} for source in _stored_sources(db.conn, own)}
+    old = {source.key: source_row(source) | {"lineage": source.lineage} for source in _stored_sources(conn, own)}
     changed = [s for s in sources if old.get(s.key) != source_row(s) | {"lineage": tuple(map(tuple, s.lineage))}]
-    db.conn.executemany("INSERT OR IGNORE INTO source_key (key) VALUES (?)", [(s.key,) for s in sources])
-    if changed:
-        db.table("source").upsert_all([{**source_row(s), "own": own, "active": 1} for s in changed], pk=("key", "own"))
+    conn.executemany("INSERT OR IGNORE INTO source_key (key) VALUES (?)", [(s.key,) for s in sources])
+    _upsert(conn, "source", "key", [{**source_row(s), "own": own, "active": 1} for s in changed])
     for source in changed:
-        db.table("lineage").delete_where("source = ? AND own = ?", [source.key, own])
-        db.table("lineage").insert_all(
-            {"source": source.key, "own": own, "position": i, "copies": copies, "evidence": evidence}
-            for i, (copies, evidence) in enumerate(source.lineage)
+        conn.execute("DELETE FROM lineage WHERE source = ? AND own = ?", (source.key, own))
+        conn.executemany(
+            "INSERT INTO lineage (source, own, position, copies, evidence) VALUES (?, ?, ?, ?, ?)",
+            [(source.key, own, i, copies, evidence) for i, (copies, evidence) in enumerate(source.lineage)],
         )
     if not own:
-        _deactivate(db, "source", "key", {s.key for s in sources})
+        _deactivate(conn, "source", "key", {s.key for s in sources})
     return len(changed)
 
 
@@ -213,30 +206,42 @@ def _stored_sources(conn: sqlite3.Connection, own: int) -> Iterator[Source]:
     return sources_of(conn, "own = ? AND active = 1", (own,))
 
 
-def put_bodies(db: Database, table: str, key: str, body: str, texts: Mapping[str, str], *, own: int) -> None:
-    """Insert or replace datums or policy; with ``own=0`` those that are not listed become inactive."""
-    old = dict(db.conn.execute(f"SELECT {key}, {body} FROM {table} WHERE own = ? AND active = 1", (own,)))
-    rows = [{key: k, "own": own, "active": 1, body: text} for k, text in texts.items() if old.get(k) != text]
+def _upsert(conn: sqlite3.Connection, table: str, key: str, rows: Sequence[Mapping[str, Any]]) -> None:
+    """Insert rows, or replace what those with their key hold; one key for each of what the base and the user have."""
     if rows:
-        db.table(table).upsert_all(rows, pk=(key, "own"))
+        columns = list(rows[0])
+        new = ", ".join(f"{column} = excluded.{column}" for column in columns if column not in (key, "own"))
+        conn.executemany(
+            f"INSERT INTO {table} ({', '.join(columns)}) VALUES ({', '.join(f':{column}' for column in columns)})"
+            f" ON CONFLICT ({key}, own) DO UPDATE SET {new}",
+            rows,
+        )
+
+
+def put_bodies(
+    conn: sqlite3.Connection, table: str, key: str, body: str, texts: Mapping[str, str], *, own: int
+) -> None:
+    """Insert or replace datums or policy; with ``own=0`` those that are not listed become inactive."""
+    old = dict(conn.execute(f"SELECT {key}, {body} FROM {table} WHERE own = ? AND active = 1", (own,)))
+    rows = [{key: k, "own": own, "active": 1, body: text} for k, text in texts.items() if old.get(k) != text]
+    _upsert(conn, table, key, rows)
     if not own:
-        _deactivate(db, table, key, set(texts))
+        _deactivate(conn, table, key, set(texts))
 
 
-def _deactivate(db: Database, table: str, key: str, kept: set[str]) -> None:
-    present = {row[0] for row in db.conn.execute(f"SELECT {key} FROM {table} WHERE own = 0 AND active = 1")}
-    db.conn.executemany(
+def _deactivate(conn: sqlite3.Connection, table: str, key: str, kept: set[str]) -> None:
+    present = {row[0] for row in conn.execute(f"SELECT {key} FROM {table} WHERE own = 0 AND active = 1")}
+    conn.executemany(
         f"UPDATE {table} SET active = 0 WHERE own = 0 AND {key} = ?", [(k,) for k in sorted(present - kept)]
     )
 
 
-def _put_base_species(db: Database, species: Sequence[Species]) -> tuple[dict[str, int], int, int]:
+def _put_base_species(conn: sqlite3.Connection, species: Sequence[Species]) -> tuple[dict[str, int], int, int]:
     """Bring the base's species up to ``species``: (name to row id, how many are new, how many changed).
 
     A row is the same species by identity; failing that by name, when the identity that it had is gone (a CAS RN was
     added or corrected), so that own entries stay with it.
     """
-    conn = db.conn
     columns = [*species_row(species[0]), "active"] if species else ["identity", "name", "active"]
     stored = {
         row[0]: dict(zip(columns, row[1:], strict=True))
@@ -270,15 +275,16 @@ def _put_base_species(db: Database, species: Sequence[Species]) -> tuple[dict[st
         conn.executemany(
             f"UPDATE species SET {sets} WHERE id = :id", [{**row, "id": number} for number, _, row in changed]
         )
-    rows |= insert_species(db, new, own=0)
+    rows |= insert_species(conn, new, own=0)
     set_names(conn, [(number, one) for number, one, _ in changed])
     settle_species(conn)
     return rows, len(new), len(changed)
 
 
-def insert_species(db: Database, new: Sequence[tuple[Species, Mapping[str, Any]]], *, own: int) -> dict[str, int]:
+def insert_species(
+    conn: sqlite3.Connection, new: Sequence[tuple[Species, Mapping[str, Any]]], *, own: int
+) -> dict[str, int]:
     """Insert species with their names: name to row id."""
-    conn = db.conn
     start = conn.execute("SELECT coalesce(max(id), 0) + 1 FROM species").fetchone()[0]
     rows = {one.name: start + i for i, (one, _) in enumerate(new)}
     if new:

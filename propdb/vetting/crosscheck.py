@@ -57,6 +57,7 @@ class Checker:
         }
         self._limits = {quantity: row for row in policy.get("limit", ()) for quantity in row["quantities"]}
         self._done: dict[str, tuple[Crosscheck, ...]] = {}
+        self._functions: dict[tuple[str, ...], tuple[Function, ...]] = {}
 
     def __call__(self, entry: Entry, species: Species) -> tuple[Crosscheck, ...]:
         """What the compilations say of an entry: independent ones first. Empty where none has the quantity."""
@@ -81,13 +82,19 @@ class Checker:
         listed: str = self._forms.get((species.name, entry.form, entry.quantity), species.cas)
         return listed
 
-    def functions(self, entry: Entry, species: Species) -> Iterator[Function]:
+    def functions(self, entry: Entry, species: Species) -> tuple[Function, ...]:
         """Functions of temperature that stand beside an entry."""
         cas = self.cas(entry, species)
         if cas and entry.quantity == "Cp":
-            yield from heat_capacities(self._library, species, phase=entry.phase, form=entry.form, cas=cas)
+            # Several entries of a species have the same beside them, and a table is made into a curve once.
+            key = (cas, entry.phase, entry.form, species.name, species.formula)
+            if key not in self._functions:
+                found = heat_capacities(self._library, species, phase=entry.phase, form=entry.form, cas=cas)
+                self._functions[key] = tuple(found)
+            return self._functions[key]
         if cas and entry.quantity == "Hvap" and not _to_ideal_gas(entry):
-            yield from latent_heats(self._library, cas=cas)
+            return tuple(latent_heats(self._library, cas=cas))
+        return ()
 
     def _checks(self, entry: Entry, species: Species) -> Iterator[Crosscheck]:
         if not self.cas(entry, species):  # no compilation lists it, and the library need not be read

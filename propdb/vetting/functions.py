@@ -98,14 +98,14 @@ def latent_heats(library: Library, *, cas: str) -> Iterator[Function]:
         yield Function("perry-8", row["Tmin"], row["Tmax"], perry)
     row = library.rows("phase_change.phase_change_data_VDI_PPDS_4").get(cas)
     if row is not None:
-        tc = row["Tc"]
+        critical = row["Tc"]  # not tc: perry reads that when it is called
         a, b, c, d, e = (row[name] for name in "ABCDE")
 
         def vdi(t: float) -> float:
-            x = max(1.0 - t / tc, 0.0)
-            return float(R_GAS * tc * (a * x ** (1 / 3) + b * x ** (2 / 3) + c * x + d * x * x + e * x**6))
+            x = max(1.0 - t / critical, 0.0)
+            return float(R_GAS * critical * (a * x ** (1 / 3) + b * x ** (2 / 3) + c * x + d * x * x + e * x**6))
 
-        yield Function("vdi-2010", 0.4 * tc, tc, vdi)
+        yield Function("vdi-2010", 0.4 * critical, critical, vdi)
 
 
 def _trc(library: Library, cas: str) -> Iterator[Function]:

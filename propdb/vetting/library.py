@@ -11,6 +11,7 @@ import json
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from functools import cache, cached_property
+from math import nan
 from pathlib import Path
 from typing import Any
 
@@ -155,12 +156,52 @@ _COLUMNS: Mapping[tuple[str, str], tuple[_Column, ...]] = {
 COMPILATIONS = tuple(dict.fromkeys(column.compilation for columns in _COLUMNS.values() for column in columns))
 
 
+#: Where the library keeps its tables. It would load them into data frames, with many more that are not asked for here.
+_FILES: Mapping[str, str] = {
+    "JANAF": "Reactions/JANAF_1998.tsv",
+    "critical.critical_data_CRC": "Critical Properties/CRCCriticalOrganics.tsv",
+    "critical.critical_data_IUPAC": "Critical Properties/IUPACOrganicCriticalProps.tsv",
+    "critical.critical_data_Matthews": "Critical Properties/Mathews1972InorganicCriticalProps.tsv",
+    "critical.critical_data_PSRKR4": "Critical Properties/Appendix to PSRK Revision 4.tsv",
+    "heat_capacity.CRC_standard_data": "Heat Capacity/CRC Standard Thermodynamic Properties of Chemical Substances.tsv",
+    "heat_capacity.Cp_data_Perry_Table_153_100": "Heat Capacity/Perry_Table_2-153_DIPPR_100.tsv",
+    "heat_capacity.Cp_data_Perry_Table_153_114": "Heat Capacity/Perry_Table_2-153_DIPPR_114.tsv",
+    "heat_capacity.Cp_data_Poling": "Heat Capacity/PolingDatabank.tsv",
+    "heat_capacity.TRC_gas_data": "Heat Capacity/TRC Thermodynamics of Organic Compounds in the Gas State.tsv",
+    "ions": "Electrolytes/CRC Thermodynamic Properties of Aqueous Ions.tsv",
+    "miscdata.CRC_inorganic_data": "Misc/Physical Constants of Inorganic Compounds.csv",
+    "miscdata.CRC_organic_data": "Misc/Physical Constants of Organic Compounds.csv",
+    "phase_change.Hfus_data_CRC": "Phase Change/CRC Handbook Heat of Fusion.tsv",
+    "phase_change.Hsub_data_Gharagheizi": "Phase Change/Ghazerati Appendix Sublimation Enthalpy.tsv",
+    "phase_change.Hvap_data_CRC": "Phase Change/CRC Handbook Heat of Vaporization.tsv",
+    "phase_change.Hvap_data_Gharagheizi": "Phase Change/Ghazerati Appendix Vaporization Enthalpy.tsv",
+    "phase_change.phase_change_data_Perrys2_150": (
+        "Phase Change/Table 2-150 Heats of Vaporization of Inorganic and Organic Liquids.tsv"
+    ),
+    "phase_change.phase_change_data_VDI_PPDS_4": "Phase Change/VDI PPDS Enthalpies of vaporization.tsv",
+    "reaction.Hfg_API_TDB_data": "Reactions/API TDB Albahri Hf (g).tsv",
+    "reaction.Hfg_ATcT_data": "Reactions/ATcT 1.112 (g).tsv",
+    "reaction.Hfg_S0g_YAWS_data": "Reactions/Yaws Hf S0 (g).tsv",
+    "reaction.Hfl_ATcT_data": "Reactions/ATcT 1.112 (l).tsv",
+    "triple.triple_data_Staveley": "Triple Properties/Staveley 1981.tsv",
+}
+#: What stands in these tables where there is no number.
+_BLANK = frozenset({"", "nan", "NaN", "NA", "N/A", "n/a", "None", "NULL", "null"})
+
+
+@dataclass(frozen=True, slots=True)
+class _Sheet:
+    """A table as its file has it."""
+
+    cas: tuple[str, ...]  # of each row
+    columns: Mapping[str, tuple[Any, ...]]  # numbers where all cells are, else text; None for a blank cell
+
+
 class Library:
     """The tables of the library, each read when it is first asked for."""
 
     def __init__(self) -> None:
-        self._frames: dict[str, Any] = {}
-        self._indexes: dict[str, list[str]] = {}
+        self._sheets: dict[str, _Sheet] = {}
         self._columns: dict[tuple[str, str], dict[str, Any]] = {}
         self._rows: dict[str, Mapping[str, Mapping[str, Any]]] = {}
 
@@ -187,42 +228,20 @@ class Library:
         """A column by CAS RN, without blanks and without numbers that stand for two rows which differ."""
         key = (frame, column)
         if key not in self._columns:
-            cells = self.frame(frame)[column]
+            sheet = self._sheet(frame)
             found: dict[str, Any] = {}
             twice = set()
-            for cas, cell, there in zip(self._numbers(frame), cells.tolist(), cells.notna().tolist(), strict=True):
-                if there and found.setdefault(cas, cell) != cell:
+            for cas, cell in zip(sheet.cas, sheet.columns[column], strict=True):
+                if cell is not None and found.setdefault(cas, cell) != cell:
                     twice.add(cas)
             self._columns[key] = {cas: cell for cas, cell in found.items() if cas not in twice}
         return self._columns[key]
 
-    def _numbers(self, frame: str) -> list[str]:
-        """The CAS RNs of the rows of a table."""
-        if frame not in self._indexes:
-            self._indexes[frame] = [str(cas).strip() for cas in self.frame(frame).index.tolist()]
-        return self._indexes[frame]
-
-    def frame(self, name: str) -> Any:
-        """A table of the library as it loads it; ``JANAF`` and ``ions`` have no name of their own there."""
-        if name not in self._frames:
-            self._frames[name] = self._load(name)
-        return self._frames[name]
-
-    @staticmethod
-    def _load(name: str) -> Any:
-        from importlib import import_module
-
-        if name == "JANAF":
-            from chemicals.reaction import Hfg_sources
-
-            return Hfg_sources["JANAF"]
-        if name == "ions":
-            import pandas as pd
-
-            file = _folder("Electrolytes") / "CRC Thermodynamic Properties of Aqueous Ions.tsv"
-            return pd.read_csv(file, sep="\t", index_col=0)
-        module, _, attribute = name.partition(".")
-        return getattr(import_module(f"chemicals.{module}"), attribute)
+    def _sheet(self, name: str) -> _Sheet:
+        if name not in self._sheets:
+            folder, _, file = _FILES[name].partition("/")
+            self._sheets[name] = _read(_folder(folder) / file)
+        return self._sheets[name]
 
     @cached_property
     def janaf(self) -> Mapping[str, Mapping[str, tuple[tuple[float, ...], tuple[float, ...]]]]:
@@ -249,13 +268,29 @@ class Library:
 
     def zabransky(self, kind: str, shape: str) -> Mapping[str, Any]:
         """CAS RN to heat capacity: ``iso``, ``sat`` or ``const``; ``s`` spline or ``p`` quasi-polynomial."""
-        key = f"zabransky {kind} {shape}"
-        if key not in self._frames:
-            from chemicals import heat_capacity
+        return self._zabransky[kind, shape]
 
-            models = getattr(heat_capacity, f"zabransky_dict_{kind}_{shape}")
-            self._frames[key] = {str(cas).strip(): model for cas, model in models.items()}
-        return self._frames[key]  # type: ignore[no-any-return]
+    @cached_property
+    def _zabransky(self) -> Mapping[tuple[str, str], Mapping[str, Any]]:
+        """As the library makes them of the rows of its file."""
+        from chemicals.heat_capacity import PiecewiseHeatCapacity, ZabranskyQuasipolynomial, ZabranskySpline
+
+        kinds = {"C": "const", "sat": "sat", "p": "iso"}
+        splines: dict[tuple[str, str], dict[str, list[Any]]] = {(kind, "s"): {} for kind in kinds.values()}
+        quasi: dict[tuple[str, str], dict[str, Any]] = {(kind, "p"): {} for kind in kinds.values()}
+        sheet = _read(_folder("Heat Capacity") / "Zabransky.tsv")
+        names = ("Data Type", "Tmin", "Tmax", "Tc", *(f"A{i}-spline" for i in range(1, 5)))
+        columns = [sheet.columns[name] for name in (*names, *(f"A{i}-quasi" for i in range(1, 7)))]
+        for cas, kind, tmin, tmax, tc, *a in zip(sheet.cas, *columns, strict=True):
+            if a[0]:
+                model = ZabranskySpline(tuple(a[:4]), tmin, tmax)
+                splines[kinds[kind], "s"].setdefault(cas, []).append(model)
+            else:
+                quasi[kinds[kind], "p"][cas] = ZabranskyQuasipolynomial(tuple(a[4:]), tc, tmin, tmax)
+        joined = {
+            key: {cas: PiecewiseHeatCapacity(models) for cas, models in found.items()} for key, found in splines.items()
+        }
+        return {**joined, **quasi}
 
     @cached_property
     def crc_solids(self) -> Mapping[str, tuple[tuple[float, ...], tuple[float, ...]]]:
@@ -271,15 +306,34 @@ class Library:
         return found
 
     def rows(self, frame: str) -> Mapping[str, Mapping[str, Any]]:
-        """Rows of a table by CAS RN, the first where there are several; NaN stays."""
+        """Rows of a table by CAS RN, the first where there are several; NaN for a blank cell."""
         if frame not in self._rows:
-            table = self.frame(frame)
-            columns = list(table.columns)
+            sheet = self._sheet(frame)
             found: dict[str, Mapping[str, Any]] = {}
-            for cas, row in zip(self._numbers(frame), table.itertuples(index=False, name=None), strict=True):
-                found.setdefault(cas, dict(zip(columns, row, strict=True)))
+            for cas, *cells in zip(sheet.cas, *sheet.columns.values(), strict=True):
+                if cas not in found:
+                    filled = (nan if cell is None else cell for cell in cells)
+                    found[cas] = dict(zip(sheet.columns, filled, strict=True))
             self._rows[frame] = found
         return self._rows[frame]
+
+
+def _read(path: Path) -> _Sheet:
+    """A table whose first column is the CAS RN."""
+    with path.open(encoding="utf-8", newline="") as file:
+        lines = csv.reader(file, delimiter="\t")
+        _, *titles = next(lines)
+        rows = [row for row in lines if row]
+    columns = zip(*rows, strict=True)
+    cas = tuple(cell.strip() for cell in next(columns))
+    return _Sheet(cas, {title: _cells(cells) for title, cells in zip(titles, columns, strict=True)})
+
+
+def _cells(texts: tuple[str, ...]) -> tuple[Any, ...]:
+    try:
+        return tuple(None if text in _BLANK else float(text) for text in texts)
+    except ValueError:
+        return tuple(None if text in _BLANK else text for text in texts)
 
 
 def _folder(name: str) -> Path:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 import tempfile
 from collections.abc import Iterator
 from contextlib import contextmanager, suppress
@@ -18,7 +19,7 @@ from store_samples import BOOK, REPORT, SEED, WATER, content, entry
 from propdb.errors import Ambiguous, InvalidInput, NotFound
 from propdb.model.records import KIND_TO_STANDARD, PHASES, QUANTITIES, STATUSES, Carrier, Entry, Source, Species
 from propdb.store.backup import check
-from propdb.store.content import Content, content_hash, hashed_row, identity, with_id
+from propdb.store.content import Content, canonical, canonical_lines, content_hash, hashed_row, identity, with_id
 from propdb.store.read import Reader
 from propdb.store.rows import fold
 from propdb.store.search import find, resolve
@@ -258,3 +259,22 @@ def test_no_number_that_is_none_gets_in(name: str, number: str) -> None:
 def test_the_samples_are_sound() -> None:
     assert {BOOK.key, REPORT.key} == {source.key for source in content().sources}
     assert SEED in content().entries[0].carriers
+
+
+@pytest.mark.parametrize(
+    "rows",
+    [
+        [],
+        [(1, 'a],\n["b', None, True), ("\u00e9", -0.5, 1e-20, "],\\n[")],
+        [([1], [2]), ("lists", ["within"])],
+        [("x", float("inf"))],
+    ],
+)
+def test_many_rows_are_encoded_as_each_would_be(rows: list[tuple[object, ...]]) -> None:
+    try:
+        each = [canonical(row) for row in rows]
+    except InvalidInput as error:
+        with pytest.raises(InvalidInput, match=re.escape(error.problem)):
+            list(canonical_lines(rows))
+    else:
+        assert list(canonical_lines(rows)) == each

@@ -254,6 +254,9 @@ def test_latent_heats_of_water() -> None:
     found = {f.compilation: f.at(298.15) for f in latent_heats(library(), cas=WATER.cas)}
     assert set(found) == {"perry-8", "vdi-2010"}
     assert all(value == pytest.approx(44_004.0, rel=0.01) for value in found.values())
+    later = {f.compilation: f for f in tuple(latent_heats(library(), cas="67-64-1"))}  # each keeps its own Tc
+    at_once = {f.compilation: f.at(300.0) for f in latent_heats(library(), cas="67-64-1")}
+    assert {key: f.at(300.0) for key, f in later.items()} == at_once
 
 
 # -- how far apart is too far ---------------------------------------------------------------------------------------

@@ -144,7 +144,7 @@ def load_package(
         progress(f"read {len(reports)} files of chemicals {version}: {rows} rows, {refused} of them refused")
     species = registry.finished({entry.species for entry in context.entries})
     ruled_out = quarantine(context.entries, seed.entries)
-    ruled_out += quarantine_heat_capacities(context.entries, species)
+    ruled_out += quarantine_heat_capacities(context.entries, species, context.built)
     ruled_out += quarantine_enthalpies(context.entries, seed.entries)
     if progress is not None and ruled_out:
         progress(f"set aside {ruled_out} values that what else is known of their species rules out")
@@ -158,7 +158,7 @@ def load_package(
         statuses=seed.statuses,
         notes=seed.notes,
     )
-    resolution = resolve(content)
+    resolution = resolve(content, built=context.built)
     for report in reports:
         if report.key == "trc-gas" and not report.trouble:
             report.remark = "; ".join(filter(None, (report.remark, resolution.line())))

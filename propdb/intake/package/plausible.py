@@ -34,7 +34,9 @@ _COLD: Final = 150.0  # [K], below it the heat capacity of a liquid of light mol
 _NEAR_CRITICAL: Final = 0.9
 
 
-def implausible(entry: Entry, *, atoms: float, critical: float | None = None) -> str:
+def implausible(
+    entry: Entry, *, atoms: float, critical: float | None = None, built: Mapping[str, Any] | None = None
+) -> str:
     """Why a heat capacity cannot be one of its species; "" where it can.
 
     Parameters
@@ -45,8 +47,10 @@ def implausible(entry: Entry, *, atoms: float, critical: float | None = None) ->
         Atoms in the formula.
     critical : float, optional
         Critical temperature [K]: near it the heat capacity of a liquid has no bound.
+    built : mapping, optional
+        Entry id to heat capacity, where it has been made.
     """
-    values = _values(entry)
+    values = _values(entry, {} if built is None else built)
     if not values or atoms <= 0:
         return ""
     coldest = values[0]
@@ -73,22 +77,28 @@ def implausible(entry: Entry, *, atoms: float, critical: float | None = None) ->
     return ""
 
 
-def quarantine_heat_capacities(entries: list[Entry], species: Iterable[Species]) -> int:
+def quarantine_heat_capacities(
+    entries: list[Entry], species: Iterable[Species], built: Mapping[str, Any] | None = None
+) -> int:
     """Set aside, in place, heat capacities that cannot be. Returns how many were.
 
-    Where a crystal's table is of another formula unit, so are the other condensed data of its source.
+    Where a crystal's table is of another formula unit, so are the other condensed data of its source. ``built`` as for
+    :func:`implausible`.
     """
+    made = {} if built is None else built
     atoms = {s.name: sum(float(n) for _, n in s.composition) for s in species}
     critical: dict[str, float] = {}
     for e in entries:
         if e.quantity == "Tc" and e.value is not None and e.status != "quarantined":
             critical[e.species] = min(e.value, critical.get(e.species, e.value))
-    count = _outvoted(entries)
+    count = _outvoted(entries, made)
     units: dict[tuple[str, str], str] = {}
     for place, entry in enumerate(entries):
         if entry.quantity != "Cp" or entry.phase not in ("cr", "l", "g") or entry.status == "quarantined":
             continue
-        reason = implausible(entry, atoms=atoms.get(entry.species, 0.0), critical=critical.get(entry.species))
+        reason = implausible(
+            entry, atoms=atoms.get(entry.species, 0.0), critical=critical.get(entry.species), built=made
+        )
         if reason:
             entries[place] = _set_aside(entry, reason)
             count += 1
@@ -102,7 +112,7 @@ def quarantine_heat_capacities(entries: list[Entry], species: Iterable[Species])
     return count
 
 
-def _outvoted(entries: list[Entry]) -> int:
+def _outvoted(entries: list[Entry], built: Mapping[str, Any]) -> int:
     """Set aside liquids' and gases' heat capacities that two others contradict, which agree. Returns how many."""
     groups: dict[tuple[str, str], list[int]] = defaultdict(list)
     for place, entry in enumerate(entries):
@@ -112,7 +122,7 @@ def _outvoted(entries: list[Entry]) -> int:
     for places in groups.values():
         if len(places) < 3 or not any(entries[place].equation for place in places):
             continue
-        functions = {place: _function(entries[place]) for place in places}
+        functions = {place: _function(entries[place], built) for place in places}
         for place in places:
             reason = _against(
                 entries[place], functions[place], [(entries[i], functions[i]) for i in places if i != place]
@@ -149,7 +159,7 @@ def _shared(one: _Function, two: _Function) -> float | None:
     return None if low > high else 0.5 * (low + high)
 
 
-def _function(entry: Entry) -> _Function | None:
+def _function(entry: Entry, built: Mapping[str, Any]) -> _Function | None:
     """Range [K] and heat capacity of an entry."""
     if not entry.equation:
         t, value = entry.temperature or T_STANDARD, entry.value
@@ -157,7 +167,7 @@ def _function(entry: Entry) -> _Function | None:
     if entry.tmin is None or entry.tmax is None:
         return None
     try:
-        equation: Any = build_heat_capacity(entry.equation, entry.params)
+        equation = _equation(entry, built)
     except PropdbError:
         return None
     return entry.tmin, entry.tmax, lambda t: float(equation.cp(t))
@@ -167,7 +177,12 @@ def _set_aside(entry: Entry, reason: str) -> Entry:
     return replace(entry, status="quarantined", note="; ".join(filter(None, (entry.note, reason))))
 
 
-def _values(entry: Entry) -> list[tuple[float, float]]:
+def _equation(entry: Entry, built: Mapping[str, Any]) -> Any:
+    equation = built.get(entry.id)
+    return build_heat_capacity(entry.equation, entry.params) if equation is None else equation
+
+
+def _values(entry: Entry, built: Mapping[str, Any]) -> list[tuple[float, float]]:
     """Temperatures [K] and heat capacities [J/mol/K]: of an equation at its ends and the middle, of a table all."""
     if not entry.equation:
         return [] if entry.value is None else [(entry.temperature or T_STANDARD, entry.value)]
@@ -177,7 +192,7 @@ def _values(entry: Entry) -> list[tuple[float, float]]:
     if entry.tmin is None or entry.tmax is None:
         return []
     try:
-        equation: Any = build_heat_capacity(entry.equation, params)
+        equation = _equation(entry, built)
         at = sorted(
             {entry.tmin, 0.5 * (entry.tmin + entry.tmax), min(max(T_STANDARD, entry.tmin), entry.tmax), entry.tmax}
         )

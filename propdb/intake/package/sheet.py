@@ -47,6 +47,8 @@ class Context:
     critical: dict[str, tuple[str, float]] = field(default_factory=dict)  # CAS RN to Tc [K] of Perry's table 2-150
     #: CAS RN to the points of JANAF's table of the liquid [K, J/mol/K], as the file has them.
     liquids: dict[str, list[tuple[float, float]]] = field(default_factory=dict)
+    #: Entry id, which hashes them, to the heat capacity that its equation and params make.
+    built: dict[str, Any] = field(default_factory=dict)
 
 
 class Sheet:
@@ -233,13 +235,14 @@ class Sheet:
         check: bool = True,
     ) -> None:
         """An entry for an equation or a table; ``uncertainty`` is a fraction."""
+        made = None
         if check:
             try:
-                build(equation, params)
+                made = build(equation, params)
             except EquationError as error:
                 self.refuse("no equation", error.problem)
                 return
-        self._add(
+        number = self._add(
             draft,
             (
                 quantity,
@@ -267,16 +270,19 @@ class Sheet:
             status,
             note,
         )
+        if quantity == "Cp" and number and made is not None:
+            self.context.built[number] = made
 
     @property
     def locator(self) -> str:
         """Table and name, as the file lists them."""
         return f"{self.title}: {self._name}"
 
-    def _add(self, draft: Draft, row: tuple[Any, ...], params: Mapping[str, Any], status: str, note: str) -> None:
+    def _add(self, draft: Draft, row: tuple[Any, ...], params: Mapping[str, Any], status: str, note: str) -> str:
+        """The id of the entry; "" where it is refused."""
         if draft.charge and row[1] not in ("g", "aq"):
             self.refuse("ion in a condensed phase", f"{row[0]} of an ion as {row[1]}: another species must be meant")
-            return
+            return ""
         number = row_id(draft.mark, row)
         carrier = self._carrier
         if carrier is None:  # one for all entries of the row
@@ -286,3 +292,4 @@ class Sheet:
         self.context.entries.append(
             Entry(number, draft.name, *row[:10], params, *row[11:], False, status, note, (carrier,))  # type: ignore[call-arg]
         )
+        return number
