@@ -11,7 +11,7 @@ A plan can be pickled; where it arrives, the store is opened anew.
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass
 from threading import Lock
 from typing import Any, NamedTuple
@@ -134,6 +134,13 @@ class Plan:
         if missing:
             self.oracle.ask(lambda basis: self._resolve(basis, missing))
         return np.array([index[key] for key in keys], np.int32)
+
+    def adopt(self, kinds: Iterable[Kind]) -> None:
+        """Take over kinds of rows that another plan on the same store has resolved."""
+        for kind in kinds:
+            if kind.key not in self._index:
+                self.kinds.append(kind)
+                self._index[kind.key] = len(self.kinds) - 1
 
     def _resolve(self, basis: Any, keys: Sequence[Key]) -> None:
         settings = self.settings

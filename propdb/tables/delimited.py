@@ -22,7 +22,8 @@ if TYPE_CHECKING:
 
 __all__ = ["Delimited", "open_delimited"]
 
-_AHEAD = 3
+_AHEAD = 4
+_THREADS = 3  # one waits for the interpreter now and then; more of them take memory and give little
 _LOOK = 10_000  # rows that the decimals of a column are taken from
 
 
@@ -65,7 +66,7 @@ def convert_delimited(given: Delimited, plan: Plan, out: HashedWriter, tally: Ta
     if first is None:
         return digits
     block_of = BlockWork(plan, dialect, digits, tally)
-    pool = ThreadPoolExecutor(2, "propdb-table")
+    pool = ThreadPoolExecutor(_THREADS, "propdb-table")
     waiting: deque[Future[Part]] = deque()
     row = 1
     try:

@@ -12,7 +12,7 @@ from propdb.tables.output import HashedReader
 
 __all__ = ["BLOCK", "Dialect", "Head", "blocks", "decode", "physical_rows", "read_head"]
 
-BLOCK = 1 << 20
+BLOCK = 3 << 18
 _LONGEST = 16 << 20  # a row longer than this is a quote that was never closed
 csv.field_size_limit(max(csv.field_size_limit(), 4 * _LONGEST))  # else 128 kB, and an error
 _BOMS = ((b"\xff\xfe", "UTF-16"), (b"\xfe\xff", "UTF-16"), (b"\x00\x00\xfe\xff", "UTF-32"))

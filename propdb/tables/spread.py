@@ -18,7 +18,7 @@ from uuid import uuid4
 from propdb.errors import IntegrityError, PropdbError
 from propdb.tables.core import Plan
 from propdb.tables.extras import need
-from propdb.tables.kinds import Key
+from propdb.tables.kinds import Key, Kind
 from propdb.tables.progress import Progress
 from propdb.tables.tally import Sample, Tally
 from propdb.tables.varying import Used
@@ -32,6 +32,7 @@ class Counts(NamedTuple):
     rows: int
     verdicts: list[tuple[str, str, int, tuple[str, int]]]  # as Tally.counts gives them
     kinds: list[tuple[Key, int]]
+    settled: list[Kind]  # those of them that do not depend on T, resolved
     samples: list[Sample]
     used: list[tuple[Key, Used]]  # what kinds of rows that depend on T stand on
     read: str  # SHA-256 of the input
@@ -61,10 +62,10 @@ def convert_file(plan: Plan, stamp: str, source: str, target: str, name: str) ->
         convert_parquet(Path(source), plan, out, tally, Progress(None), share=float, file=name, overlap=False)
         out.close()
     kinds = [(plan.kinds[n].key, times) for n, times in tally.kinds.items()]
-    used = [(kind.key, kind.used()) for kind in plan.kinds]
-    return Counts(
-        tally.rows, tally.counts(), kinds, tally.first_samples(), used, sha256_of(Path(source)), out.hexdigest()
-    )
+    settled = [kind for n in tally.kinds if (kind := plan.kinds[n]).varying is None]
+    used = [(kind.key, kind.used()) for kind in plan.kinds if kind.varying is not None]
+    hashes = sha256_of(Path(source)), out.hexdigest()
+    return Counts(tally.rows, tally.counts(), kinds, settled, tally.first_samples(), used, *hashes)
 
 
 _plans: dict[str, Plan] = {}
@@ -160,6 +161,7 @@ def spread(
             if isinstance(counts, PropdbError):
                 client.cancel(futures)
                 raise counts
+            plan.adopt(counts.settled)
             tally.merge(counts.rows, counts.verdicts, counts.kinds, counts.samples, counts.used)
             hashes[files[done - 1][0]], hashes[files[done - 1][1]] = counts.read, counts.written
             progress.step(counts.rows, done / len(files))
