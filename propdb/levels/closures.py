@@ -7,7 +7,7 @@ from math import hypot
 from typing import NamedTuple
 
 from propdb.errors import PropdbError
-from propdb.levels.curves import Curve
+from propdb.levels.curves import PRINTED_SLACK, Curve
 from propdb.levels.engine import Levels, Way, passes
 from propdb.levels.parts import Leg, add_parts, combined, ranking_uncertainty
 from propdb.levels.policy import choose
@@ -97,7 +97,7 @@ def _other_curves(levels: Levels, name: str, moves: Sequence[Move], per: float) 
         ]
         low, high = min(move.start, move.end), max(move.start, move.end)
         for e in others:
-            if e.tmin is None or e.tmax is None or e.tmin > low + 0.155 or e.tmax < high - 0.155:
+            if e.tmin is None or e.tmax is None or e.tmin > low + PRINTED_SLACK or e.tmax < high - PRINTED_SLACK:
                 continue
             from propdb.cp.registry import build_heat_capacity
 

@@ -218,7 +218,7 @@ def _direct_first(edges: list[Edge]) -> None:
         direct = edge.end._replace(temperature=T_STANDARD)
         place = (edge.pin, edge.status, edge.rank)
         better = [o.size for o in formation if o.end == direct and (o.pin, o.status, o.rank) <= place]
-        edge.size = max(edge.size, *(size + 1e-6 for size in better), 0.0)
+        edge.size = max([edge.size, *(size + 1e-6 for size in better)])
 
 
 #: Taking a latent heat to another temperature costs the uncertainty of two heat capacities: about 1 % of 250 J/mol/K.

@@ -9,10 +9,15 @@ from typing import Final
 
 from propdb.model.records import Entry
 
-__all__ = ["quarantine"]
+__all__ = ["quarantine", "set_aside"]
 
 #: A melting point this far from one that was typed [1] belongs to another species: no two tables differ by so much.
 _FAR: Final = 0.2
+
+
+def set_aside(entry: Entry, reason: str) -> Entry:
+    """The entry as one that is never used, with the reason beside what its note says already."""
+    return replace(entry, status="quarantined", note="; ".join(filter(None, (entry.note, reason))))
 
 
 def quarantine(entries: list[Entry], seed: Iterable[Entry]) -> int:
@@ -42,6 +47,6 @@ def quarantine(entries: list[Entry], seed: Iterable[Entry]) -> int:
             if far and len(far) == len(known):
                 reason = f"another species' melting point: {far[0].source} has {far[0].value:.7g} K"
         if reason:
-            entries[place] = replace(entry, status="quarantined", note="; ".join(filter(None, (entry.note, reason))))
+            entries[place] = set_aside(entry, reason)
             count += 1
     return count

@@ -8,9 +8,9 @@ from __future__ import annotations
 
 from collections import defaultdict
 from collections.abc import Iterable, Mapping, Sequence
-from dataclasses import replace
 from typing import Final
 
+from propdb.intake.package.contradictions import set_aside
 from propdb.model.records import T_STANDARD, USABLE_STATUSES, Entry
 
 __all__ = ["contradiction", "quarantine_enthalpies"]
@@ -94,8 +94,7 @@ def quarantine_enthalpies(entries: list[Entry], seed: Iterable[Entry]) -> int:
         if not reason and rival is not None and abs((entry.value or 0.0) - rival) > _GROSS:
             reason = f"{_BETTER} has {rival / 1e3:.6g} kJ/mol; where a third source decides, it is nearer"
         if reason:
-            note = "; ".join(filter(None, (entry.note, reason)))
-            entries[place] = replace(entry, status="quarantined", note=note)
+            entries[place] = set_aside(entry, reason)
             count += 1
     return count
 

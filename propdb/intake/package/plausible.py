@@ -9,11 +9,11 @@ from __future__ import annotations
 
 from collections import defaultdict
 from collections.abc import Callable, Iterable, Mapping, Sequence
-from dataclasses import replace
 from typing import Any, Final
 
 from propdb.cp.registry import build_heat_capacity
 from propdb.errors import PropdbError
+from propdb.intake.package.contradictions import set_aside
 from propdb.model.records import R_GAS, T_STANDARD, Entry, Species
 
 __all__ = ["implausible", "quarantine_heat_capacities"]
@@ -100,14 +100,14 @@ def quarantine_heat_capacities(
             entry, atoms=atoms.get(entry.species, 0.0), critical=critical.get(entry.species), built=made
         )
         if reason:
-            entries[place] = _set_aside(entry, reason)
+            entries[place] = set_aside(entry, reason)
             count += 1
             if "formula unit" in reason and entry.equation == "table":
                 units[entry.species, entry.source] = "the heat capacity of its crystal is of another formula unit"
     for place, entry in enumerate(entries) if units else ():
         reason = units.get((entry.species, entry.source), "")
         if reason and entry.phase in ("cr", "l") and entry.status != "quarantined":
-            entries[place] = _set_aside(entry, reason)
+            entries[place] = set_aside(entry, reason)
             count += 1
     return count
 
@@ -128,7 +128,7 @@ def _outvoted(entries: list[Entry], built: Mapping[str, Any]) -> int:
                 entries[place], functions[place], [(entries[i], functions[i]) for i in places if i != place]
             )
             if reason:
-                entries[place] = _set_aside(entries[place], reason)
+                entries[place] = set_aside(entries[place], reason)
                 count += 1
     return count
 
@@ -171,10 +171,6 @@ def _function(entry: Entry, built: Mapping[str, Any]) -> _Function | None:
     except PropdbError:
         return None
     return entry.tmin, entry.tmax, lambda t: float(equation.cp(t))
-
-
-def _set_aside(entry: Entry, reason: str) -> Entry:
-    return replace(entry, status="quarantined", note="; ".join(filter(None, (entry.note, reason))))
 
 
 def _equation(entry: Entry, built: Mapping[str, Any]) -> Any:
